@@ -1,0 +1,125 @@
+/* The syntax tree of a mechanism file.
+ *
+ * The parser looks nothing up and decides no meaning: whether a name is a unit,
+ * a constant or a function is found in model/lower.c.  Nodes live in an arena
+ * and die after lowering; strings are UTF-8, terminated, without quotes. */
+#ifndef LIMBECK_TEXT_SYNTAX_H
+#define LIMBECK_TEXT_SYNTAX_H
+
+#include <stdbool.h>
+
+#include "text/source.h"
+
+typedef enum syntax_expression_kind {
+    SYNTAX_NUMBER,          /* number, text */
+    SYNTAX_NAME,            /* text: constant, reading, unit, T, R */
+    SYNTAX_CONCENTRATION,   /* text: the species of [X] */
+    SYNTAX_FEED,            /* text: the species of [X]in */
+    SYNTAX_CALL,            /* text: the function; first: arguments */
+    SYNTAX_JUXTAPOSED,      /* left, right: `1.0 M^-1` is (1.0 M^-1); right is a NAME or a POWER of one */
+    SYNTAX_ADD, SYNTAX_SUBTRACT, SYNTAX_MULTIPLY, SYNTAX_DIVIDE, SYNTAX_POWER, /* left, right */
+    SYNTAX_NEGATE,          /* left */
+    SYNTAX_GROUP            /* left: in parentheses, kept since print decides what is ambiguous */
+} syntax_expression_kind;
+
+typedef struct syntax_expression syntax_expression;
+typedef struct syntax_range syntax_range;
+
+/* Argument of a function (`A = 1e13 s^-1`, or without a name: name is NULL), or
+ * setting of a reaction (`kf = ...`). */
+typedef struct syntax_argument {
+    const char *name;
+    span name_where;
+    syntax_expression *value;
+    syntax_range *range;            /* NULL when none */
+    struct syntax_argument *next;
+} syntax_argument;
+
+struct syntax_expression {
+    syntax_expression_kind kind;
+    span where;                     /* first line of the expression when it spans several */
+    span operator_where;            /* of a binary operator */
+    const char *text;
+    double number;
+    syntax_expression *left, *right;
+    syntax_argument *first;
+    int depth;                      /* 1 + depth of the deepest child */
+};
+
+struct syntax_range {
+    span where;
+    bool is_factor;                 /* `within factor F`: low holds F, high is NULL */
+    syntax_expression *low, *high;
+};
+
+/* A name in a list (`retained A, B`), or a species of a term. */
+typedef struct syntax_name {
+    const char *text;
+    bool is_quoted;
+    span where;
+    struct syntax_name *next;
+} syntax_name;
+
+typedef struct syntax_term {
+    const char *coefficient;        /* text of a plain number; NULL when none is written */
+    double number;                  /* its value; 1 when none is written */
+    syntax_expression *expression;  /* coefficient in parentheses; else NULL */
+    span coefficient_where;
+    syntax_name species;
+    struct syntax_term *next;
+} syntax_term;
+
+typedef enum syntax_statement_kind {
+    SYNTAX_TITLE,                   /* text */
+    SYNTAX_UNITS,                   /* value: a JUXTAPOSED chain such as `molecule/cm^3 s`; NULL: `units none` */
+    SYNTAX_DEFINE_NAME,             /* text = value, range: constants, readings, temperature, residence */
+    SYNTAX_DEFINE_CONCENTRATION,    /* [text] = value: held */
+    SYNTAX_DEFINE_INITIAL,          /* [text]0 = value */
+    SYNTAX_DEFINE_FEED,             /* [text]in = value */
+    SYNTAX_RETAINED,                /* names */
+    SYNTAX_SIGNED,                  /* names */
+    SYNTAX_FORMULA,                 /* formula text = formula: the raw text behind `=`, trimmed */
+    SYNTAX_REACTION
+} syntax_statement_kind;
+
+typedef struct syntax_statement {
+    syntax_statement_kind kind;
+    span where;                     /* of the whole statement's first line */
+    const char *text;
+    bool is_quoted;                 /* the name was quoted */
+    span text_where;                /* of the title, name or species */
+    syntax_expression *value;
+    syntax_range *range;
+    syntax_name *names;
+    const char *formula;
+    span formula_where;
+    /* reactions */
+    const char *label;              /* NULL when none is written */
+    span label_where;
+    bool is_reversible;
+    span arrow_where;
+    syntax_term *left, *right;      /* NULL: an empty side */
+    syntax_argument *settings;      /* k, kf, kr, K, v, as written */
+    struct syntax_statement *next;
+} syntax_statement;
+
+/* The value of `units` is what the expression grammar makes of it: `M s` is
+ * JUXTAPOSED(M, s), `molecule/cm^3 s` is DIVIDE(molecule, JUXTAPOSED(cm^3, s)).
+ * Lowering takes the last factor as the unit of time, the rest as the unit of
+ * concentration. */
+
+typedef struct syntax_tree {
+    struct arena *arena;
+    syntax_statement *first, *last;
+    int statement_count;
+} syntax_tree;
+
+/* Text to tree.  Faults of syntax go to the list; the tree then holds the
+ * statements that could be read.  LB_OK also when there are faults; LB_E_NOMEM. */
+lb_status syntax_parse(lb_diagnostics *diagnostics, syntax_tree **out);
+
+/* One expression alone (the value of a setting): its text is the whole source. */
+lb_status syntax_parse_value(lb_diagnostics *diagnostics, syntax_tree **tree, syntax_expression **out);
+void syntax_free(syntax_tree *tree);
+
+#endif
