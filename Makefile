@@ -32,7 +32,7 @@ LIBRARY_OBJECTS = $(LIBRARY_SOURCES:%.c=$(BUILD)/%.o) $(GENERATED)
 CLI_OBJECTS     = $(CLI_SOURCES:%.c=$(BUILD)/%.o)
 TEST_OBJECTS    = $(TEST_SOURCES:%.c=$(BUILD)/%.o)
 
-.PHONY: all deps demo test test-long bench fuzz install clean
+.PHONY: all deps demo demo-run test test-run test-sanitized test-long valgrind coverage bench fuzz install clean
 all: $(BUILD)/limbeck $(BUILD)/liblimbeck.so
 
 $(BUILD)/limbeck: $(CLI_OBJECTS) $(BUILD)/liblimbeck.a
@@ -73,5 +73,81 @@ $(BUILD)/tests/%.o: ALL_CFLAGS += -Itests -I$(BUILD)/tests
 
 $(BUILD)/tests/run: $(TEST_OBJECTS) $(BUILD)/liblimbeck.a
 	$(CC) $(ALL_CFLAGS) $(LDFLAGS) -o $@ $(TEST_OBJECTS) $(BUILD)/liblimbeck.a $(shell pkg-config --libs check) $(LIBS)
+
+# ---- what people type ------------------------------------------------------
+
+# Names of Debian packages that are not installed; apt is asked only when there are any.
+deps:
+	@missing=$$(for p in $(PACKAGES); do \
+	    dpkg-query -W -f '$${Status}' $$p 2>/dev/null | grep -q 'install ok installed' || echo $$p; done); \
+	if [ -n "$$missing" ]; then \
+	    echo "installing: $$missing"; \
+	    if [ $$(id -u) -eq 0 ]; then run=; else run=sudo; fi; \
+	    $$run apt-get update -qq && \
+	    DEBIAN_FRONTEND=noninteractive $$run apt-get install -y -qq --no-install-recommends $$missing >/dev/null; \
+	fi
+
+demo: deps
+	@$(MAKE) --no-print-directory all
+	@$(MAKE) --no-print-directory demo-run
+
+# From a mechanism file to the one-page answer, and to an emitted model that runs.
+demo-run:
+	@sh networks/demo.sh $(BUILD)
+
+test: deps
+	@$(MAKE) --no-print-directory all $(BUILD)/tests/run
+	@$(MAKE) --no-print-directory test-run
+
+test-run:
+	$(BUILD)/tests/run
+	sh tests/commands/run.sh $(BUILD)/limbeck
+	sh tests/faults/run.sh $(BUILD)/limbeck
+
+SANITIZE = -fsanitize=address,undefined -fno-omit-frame-pointer -fno-sanitize-recover=undefined
+test-sanitized: deps
+	@$(MAKE) --no-print-directory BUILD=$(BUILD)-sanitized CFLAGS="-O1 -g $(SANITIZE)" all $(BUILD)-sanitized/tests/run
+	@$(MAKE) --no-print-directory BUILD=$(BUILD)-sanitized test-run
+
+test-long: deps
+	@$(MAKE) --no-print-directory all $(BUILD)/tests/run
+	CK_DEFAULT_TIMEOUT=3600 LB_TEST_LONG=1 $(BUILD)/tests/run
+	@$(MAKE) --no-print-directory valgrind test-sanitized
+
+# The commands on every mechanism of networks/, under Valgrind.
+valgrind: all
+	sh tests/valgrind.sh $(BUILD)/limbeck
+
+coverage: deps
+	@$(MAKE) --no-print-directory BUILD=$(BUILD)-coverage CFLAGS="-O0 -g --coverage" all $(BUILD)-coverage/tests/run
+	@$(MAKE) --no-print-directory BUILD=$(BUILD)-coverage test-run
+	sh tests/coverage.sh $(BUILD)-coverage
+
+bench: deps
+	@$(MAKE) --no-print-directory all $(BUILD)/tests/bench/bench
+	$(BUILD)/tests/bench/bench $(BUILD)
+
+$(BUILD)/tests/bench/bench: $(BUILD)/tests/bench/bench.o $(BUILD)/liblimbeck.a
+	$(CC) $(ALL_CFLAGS) $(LDFLAGS) -o $@ $^ $(LIBS) -ldl
+
+SECONDS ?= 600
+fuzz: deps
+	sh tests/fuzz/run.sh $(SECONDS)
+
+install: all
+	install -d $(DESTDIR)$(prefix)/bin $(DESTDIR)$(prefix)/lib/pkgconfig $(DESTDIR)$(prefix)/include \
+	    $(DESTDIR)$(prefix)/share/man/man1 $(DESTDIR)$(prefix)/share/limbeck/networks
+	install -m 755 $(BUILD)/limbeck $(DESTDIR)$(prefix)/bin/limbeck
+	install -m 644 $(BUILD)/liblimbeck.a $(DESTDIR)$(prefix)/lib/liblimbeck.a
+	install -m 755 $(BUILD)/liblimbeck.so $(DESTDIR)$(prefix)/lib/liblimbeck.so.0
+	ln -sf liblimbeck.so.0 $(DESTDIR)$(prefix)/lib/liblimbeck.so
+	install -m 644 include/limbeck.h $(DESTDIR)$(prefix)/include/limbeck.h
+	sed -e 's|@prefix@|$(prefix)|' -e 's|@version@|$(VERSION)|' -e 's|@libs@|$(LIBS)|' src/limbeck.pc.in \
+	    > $(DESTDIR)$(prefix)/lib/pkgconfig/limbeck.pc
+	install -m 644 docs/limbeck.1 $(DESTDIR)$(prefix)/share/man/man1/limbeck.1
+	install -m 644 networks/*.mech $(DESTDIR)$(prefix)/share/limbeck/networks
+
+clean:
+	rm -rf $(BUILD) $(BUILD)-sanitized $(BUILD)-coverage
 
 -include $(LIBRARY_OBJECTS:.o=.d) $(CLI_OBJECTS:.o=.d) $(TEST_OBJECTS:.o=.d)
