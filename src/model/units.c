@@ -8,7 +8,6 @@
  * Values: the SI brochure (9th edition, 2019) for mole and thermochemical calorie. */
 #include "model/units.h"
 
-#include <limits.h>
 #include <math.h>
 #include <stdint.h>
 #include <stdio.h>
@@ -54,7 +53,10 @@ static int64_t common_divisor(int64_t a, int64_t b)
     return a < 0 ? -a : a;
 }
 
-/* Lowest terms with a positive denominator; false beyond int. */
+/* No honest exponent is beyond a million, and products of such stay in 64 bits. */
+enum { EXPONENT_LIMIT = 1000000 };
+
+/* Lowest terms with a positive denominator; false beyond the limit. */
 static bool store(int64_t num, int64_t den, int *num_out, int *den_out)
 {
     int64_t divisor = common_divisor(num, den);
@@ -62,7 +64,7 @@ static bool store(int64_t num, int64_t den, int *num_out, int *den_out)
         divisor = -divisor;
     num /= divisor;
     den /= divisor;
-    if (num > INT_MAX || num < -INT_MAX || den > INT_MAX)
+    if (num > EXPONENT_LIMIT || num < -EXPONENT_LIMIT || den > EXPONENT_LIMIT)
         return false;
     *num_out = (int)num;
     *den_out = (int)den;

@@ -52,7 +52,7 @@ bool dimension_is_none(const dimension *d);
 bool dimension_equal(const dimension *a, const dimension *b);
 /* amount/length^3 to the power num/den, for some num/den: *num = 0 when it has neither. */
 bool dimension_is_concentration_power(const dimension *d, int *num, int *den);
-/* The four below return false when an exponent leaves the range of int. */
+/* The four below return false when an exponent is beyond a million. */
 bool dimension_multiply(const dimension *a, const dimension *b, dimension *out);
 bool dimension_divide(const dimension *a, const dimension *b, dimension *out);
 bool dimension_power(const dimension *a, int num, int den, dimension *out);
@@ -63,7 +63,7 @@ bool unit_find(const char *name, unit *out);
 /* All names, for the nearest one; *count of them. */
 const char *const *unit_names(size_t *count);
 unit unit_one(void);
-/* The three below return false when an exponent leaves the range of int. */
+/* The three below return false when an exponent is beyond a million. */
 bool unit_multiply(const unit *a, const unit *b, unit *out);
 bool unit_divide(const unit *a, const unit *b, unit *out);
 bool unit_power(const unit *a, int num, int den, unit *out);
