@@ -6,12 +6,13 @@
 
 #include "limbeck.h"
 
-/* LU with partial pivoting of A [n*n], column-major, in place; pivot [n].
- * False when A is singular or not finite. */
+/* LU with partial pivoting of A [n*n], column-major, in place; pivot [n], for
+ * linalg_solve alone.  False when A is singular or not finite. */
 bool linalg_factor(int n, double *A, int *pivot);
 /* Solve with the factors, `columns` right-hand sides B [n*columns] in place. */
 void linalg_solve(int n, const double *LU, const int *pivot, int columns, double *B);
-/* Estimated reciprocal condition number in the 1-norm from the factors. */
+/* Estimated reciprocal condition number in the 1-norm from the factors and the
+ * 1-norm of A before it was factored; 0 also without memory. */
 double linalg_rcond(int n, const double *LU, const int *pivot, double norm1);
 
 /* Eigenvalues of A [n*n] (destroyed), sorted: falling real part, then falling
@@ -23,10 +24,12 @@ lb_status linalg_eigenvalues(int n, double *A, lb_complex *values, double *vecto
  * [rows*columns] destroyed, b [max(rows,columns)] overwritten by x); rank out. */
 lb_status linalg_least_squares(int rows, int columns, double *A, double *b, double rcond, int *rank, lb_error *err);
 
-/* Number of roots with positive real part of det(A - z I), by Hessenberg form,
- * characteristic polynomial and Routh array; -1 when a leading entry vanishes
- * within rounding.  A [n*n] is destroyed; n <= 8. */
-int linalg_routh_unstable(int n, double *A);
+/* Number of eigenvalues of A with positive real part, by Hessenberg form,
+ * characteristic polynomial and Routh array (routh.c); -1 when a leading entry
+ * of the array is zero within its rounding error, as it is with eigenvalues on
+ * the imaginary axis, and when A is not finite.  A [n*n]; n up to the limit. */
+#define LINALG_ROUTH_LIMIT 20
+int linalg_routh_unstable(int n, const double *A);
 
 double linalg_norm1(int n, const double *A);
 

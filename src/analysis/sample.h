@@ -5,9 +5,9 @@
 
 #include <stdint.h>
 
-/* Point i of a scrambled low-discrepancy sequence in (0,1)^dimensions (additive
- * recurrence of a generalised golden ratio, shifted by the seed; any number of
- * dimensions). */
+/* Point i of a scrambled low-discrepancy sequence in (0,1)^dimensions: Halton's
+ * points with nested scrambling by the seed, any number of dimensions.  point
+ * [dimensions]. */
 void sample_point(uint64_t seed, uint64_t i, int dimensions, double *point);
 
 /* Uniform in (0,1) and standard normal from a counter. */
