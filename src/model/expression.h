@@ -1,9 +1,12 @@
 /* Rate laws and derived values as one shared graph of expressions.
  *
  * Nodes are numbered and hash-consed: equal expressions have equal numbers, a
- * node's operands have smaller numbers than the node.  Building simplifies
- * (constants folded, neutral elements dropped, x^1, double signs); sums and
- * products keep the order in which they were written.
+ * node's operands have smaller numbers than the node.  Building simplifies:
+ * numbers are folded where the result is finite, neutral elements and double
+ * signs dropped, signs moved out of products, x^1 and x^0 resolved.  Each of
+ * these leaves every finite value bit for bit as it was (0*x, 0/x and x - x are
+ * 0 also where x is not finite); sums and products keep the order in which they
+ * were written.  No function recurses, so an expression may be 10^6 deep.
  *
  * Meaning of the partial operations, here, in the tables and in emitted C alike
  * (docs/language.md, "Powers and roots"):
@@ -11,7 +14,8 @@
  *   SLOPE      n x^(n-1), the derivative of x^n by x, but 0 where that is infinite
  *              or undefined (x <= 0 and n not whole, or x = 0 and n < 1)
  *   POWER_LOG  x^n ln x, the derivative of x^n by n, but 0 where x <= 0
- * A root is x^0.5.  LN and LOG10 of what is not positive are not finite, and
+ * A root is x^0.5: the builder turns SQRT into POWER, so that no node is of that
+ * kind.  LN and LOG10 of what is not positive are not finite, and
  * that is found where the value is used. */
 #ifndef LIMBECK_MODEL_EXPRESSION_H
 #define LIMBECK_MODEL_EXPRESSION_H
@@ -38,8 +42,9 @@ typedef enum expression_kind {
 
 typedef struct expression_node {
     expression_kind kind;
-    int left, right;        /* operands, or left = index of a constant or state */
-    double value;
+    int left, right;        /* operands, or left = index of a constant or state; -1: none */
+    bool has_state, has_constant; /* itself or below */
+    double value;           /* of a NUMBER */
 } expression_node;
 
 typedef struct expression_graph {
@@ -51,6 +56,9 @@ typedef struct expression_graph {
 
 void expression_graph_init(expression_graph *g);
 void expression_graph_clear(expression_graph *g);
+/* Copy a node of another graph, whose operands are copied already: map [from->count]
+ * gives the numbers in g, and gets the new one.  LB_OK or LB_E_NOMEM. */
+lb_status expression_import(expression_graph *g, const expression_graph *from, expression e, int *map);
 
 /* Builders.  An operand EXPRESSION_NONE gives EXPRESSION_NONE, so that a chain
  * is checked once at its end; the only cause is lack of memory. */
@@ -61,8 +69,9 @@ expression expression_binary(expression_graph *g, expression_kind kind, expressi
 expression expression_unary(expression_graph *g, expression_kind kind, expression operand);
 
 bool expression_is_number(const expression_graph *g, expression e, double *value);
-/* Does e contain a state (or a constant), directly or below? */
+/* Does e contain a state, directly or below? */
 bool expression_has_state(const expression_graph *g, expression e);
+/* Does it contain this leaf?  True without memory. */
 bool expression_depends(const expression_graph *g, expression e, expression_kind leaf, int index);
 
 /* Exact derivative of e by one constant or state (leaf: EXPRESSION_CONSTANT or
@@ -70,7 +79,11 @@ bool expression_depends(const expression_graph *g, expression e, expression_kind
  * nodes below e: results are shared through the graph. */
 expression expression_derivative(expression_graph *g, expression e, expression_kind leaf, int index);
 
-/* Marks the nodes that the roots need: `needed` [count] zeroed on entry. */
+/* The nodes below e, itself included, in ascending order: *list (the caller's, to
+ * memory_free), *length.  O(length log length).  LB_OK or LB_E_NOMEM. */
+lb_status expression_below(const expression_graph *g, expression e, int **list, size_t *length);
+
+/* Marks the nodes that a root needs: `needed` [count] zeroed before the first root. */
 void expression_mark(const expression_graph *g, expression root, unsigned char *needed);
 
 /* Value of every node numbered first..last (those with needed[i] when needed is
@@ -85,8 +98,15 @@ double expression_power(double x, double n);
 double expression_slope(double x, double n);
 double expression_power_log(double x, double n);
 
-/* Text in the notation of the mechanism language, parentheses only where needed.
+/* Shortest text among 15, 16 and 17 digits that reads back as the same number. */
+void expression_write_number(double value, buffer *out);
+
+/* Text in the notation of the mechanism language, parentheses only where needed
+ * to read it back as the same tree.  The derivatives' own operations are written
+ * out.  Beyond EXPRESSION_TEXT_NODES operations, which only repeated use of shared
+ * parts can reach, the rest is "...".
  * name(context, leaf kind, index) gives the text of a leaf. */
+#define EXPRESSION_TEXT_NODES 100000
 typedef const char *expression_namer(const void *context, expression_kind leaf, int index);
 void expression_write(const expression_graph *g, expression e, expression_namer *name, const void *context, buffer *out);
 
