@@ -1,0 +1,325 @@
+/* A closed orbit: closed, measured, judged.
+ *
+ * Order of work: one loose loop gives the amplitudes that scale everything; the
+ * method is the explicit one unless it needs far more steps than the stiff one;
+ * the start moves along the loop to a well-conditioned phase; shooting closes it;
+ * a repeat within the period is looked for; a last loop without tangents measures
+ * extrema and closure. */
+#include "analysis/closed.h"
+
+#include <math.h>
+#include <string.h>
+
+#include "base/memory.h"
+#include "base/status.h"
+
+#define LOOSE 1e-7                /* tolerance of the loops that only show the way */
+#define GOAL 1e-8                 /* residual of the shooting, in amplitudes */
+#define CLOSED 1e-9               /* closure of an orbit that is reported, in amplitudes */
+#define COLLAPSED 0.05            /* an orbit this much smaller than the guess is another thing */
+#define STIFF_RATIO 12            /* the stiff method does this many times the work of a step */
+
+static lb_status prepare(closed_orbit *c, lb_evaluator *evaluator, const double *x, lb_error *err)
+{
+    memset(c, 0, sizeof *c);
+    lb_status status = space_init(&c->s, evaluator, x, err);
+    if (status != LB_OK)
+        return status;
+    size_t n = (size_t)c->s.n;
+    c->x = memory_array(4 * n, sizeof *c->x);
+    c->multipliers = memory_array((size_t)c->s.rank, sizeof *c->multipliers);
+    if (!c->x || !c->multipliers)
+        return status_no_memory(err);
+    c->low = c->x + n;
+    c->high = c->x + 2 * n;
+    c->scale = c->x + 3 * n;
+    memcpy(c->x, x, n * sizeof *x);
+    return LB_OK;
+}
+
+void closed_clear(closed_orbit *c)
+{
+    space_clear(&c->s);
+    memory_free(c->x);
+    memory_free(c->multipliers);
+    shooting_clear(&c->shot);
+    memset(c, 0, sizeof *c);
+}
+
+/* A failed integration means only that there is no orbit to be had here. */
+static bool is_fatal(lb_status status)
+{
+    return status == LB_E_NOMEM || status == LB_E_STOPPED;
+}
+
+static orbit_options with(const closed_orbit *c, double tolerance, const lb_monitor *monitor)
+{
+    return (orbit_options){.tolerance = tolerance, .method = c->method, .monitor = monitor};
+}
+
+/* The range of the loop from c->x, and which method goes around it for less. */
+static lb_status survey(closed_orbit *c, const lb_monitor *monitor, lb_error *err)
+{
+    size_t steps;
+    orbit_options options = {.tolerance = LOOSE, .method = LB_METHOD_STIFF, .monitor = monitor};
+    lb_status status = orbit_measure(&c->s, c->x, c->period, &options, c->low, c->high, NULL, &steps, err);
+    if (status != LB_OK)
+        return status;
+    orbit_scale(&c->s, c->low, c->high, c->scale);
+    options.method = LB_METHOD_EXPLICIT;
+    options.max_steps = STIFF_RATIO * steps;
+    status = orbit_measure(&c->s, c->x, c->period, &options, c->low, c->high, NULL, NULL, err);
+    c->method = status == LB_OK ? LB_METHOD_EXPLICIT : LB_METHOD_STIFF;
+    return is_fatal(status) ? status : LB_OK;
+}
+
+static lb_status shoot(closed_orbit *c, const lb_monitor *monitor, lb_error *err)
+{
+    orbit_options options = with(c, c->tolerance, monitor);
+    shooting_clear(&c->shot);
+    lb_status status = shooting_close(&c->s, c->x, &c->period, c->scale, GOAL, &options, &c->shot, err);
+    c->converged = status == LB_OK && c->shot.converged;
+    return status;
+}
+
+/* Replace the period by the least one. */
+static lb_status reduce_period(closed_orbit *c, const lb_monitor *monitor, lb_error *err)
+{
+    int divisor;
+    orbit_options options = with(c, LOOSE, monitor);
+    lb_status status = orbit_divisor(&c->s, c->x, c->period, c->scale, &options, &divisor, err);
+    if (status != LB_OK || divisor == 1)
+        return status;
+    c->period /= divisor;
+    return shoot(c, monitor, err);
+}
+
+/* Extrema and closure of the orbit found; false into converged when it has shrunk to
+ * a point or does not close. */
+static lb_status measure(closed_orbit *c, const lb_monitor *monitor, lb_error *err)
+{
+    double *end = memory_array((size_t)c->s.n, sizeof *end);
+    if (!end)
+        return status_no_memory(err);
+    orbit_options options = with(c, c->tolerance, monitor);
+    lb_status status = orbit_measure(&c->s, c->x, c->period, &options, c->low, c->high, end, &c->steps, err);
+    if (status == LB_OK) {
+        double size = 0;
+        for (int k = 0; k < c->s.core; k++) {
+            int i = c->s.system->core_state[k];
+            size = fmax(size, (c->high[i] - c->low[i]) / c->scale[i]);
+        }
+        orbit_scale(&c->s, c->low, c->high, c->scale);
+        c->closure = space_distance(&c->s, end, c->x, c->scale);
+        c->converged = size > COLLAPSED && c->closure < CLOSED;
+    }
+    memory_free(end);
+    return status;
+}
+
+static lb_status judge(closed_orbit *c, lb_error *err)
+{
+    double trivial_error;
+    lb_status status = shooting_multipliers(&c->shot, c->s.rank, c->multipliers, &trivial_error, err);
+    if (status != LB_OK)
+        return status;
+    c->multiplier_error = fmax(1e-7, 10 * trivial_error);
+    c->stable = LB_YES;
+    for (int i = 0; i < c->s.rank - 1; i++) {
+        double size = hypot(c->multipliers[i].re, c->multipliers[i].im);
+        if (size > 1 + c->multiplier_error)
+            c->stable = LB_NO;
+        else if (size > 1 - c->multiplier_error && c->stable == LB_YES)
+            c->stable = LB_UNDECIDED;
+    }
+    return LB_OK;
+}
+
+static lb_status close_and_judge(closed_orbit *c, const lb_monitor *monitor, lb_error *err)
+{
+    lb_status status = survey(c, monitor, err);
+    if (status == LB_OK) {
+        orbit_options options = with(c, c->tolerance, monitor);
+        status = orbit_phase(&c->s, c->x, c->period, c->scale, &options, err);
+    }
+    if (status == LB_OK)
+        status = shoot(c, monitor, err);
+    if (status == LB_OK && c->converged)
+        status = reduce_period(c, monitor, err);
+    if (status == LB_OK && c->converged)
+        status = measure(c, monitor, err);
+    if (status == LB_OK && c->converged)
+        status = judge(c, err);
+    return status;
+}
+
+lb_status closed_find(closed_orbit *c, lb_evaluator *evaluator, const double *x, double period,
+                      double tolerance, const lb_monitor *monitor, lb_error *err)
+{
+    lb_status status = prepare(c, evaluator, x, err);
+    if (status != LB_OK)
+        return status;
+    c->period = period;
+    c->tolerance = tolerance;
+    if (c->s.rank < 2)
+        return LB_OK;
+    status = close_and_judge(c, monitor, err);
+    if (status != LB_OK)
+        c->converged = false;
+    return is_fatal(status) ? status : LB_OK;
+}
+
+/* ---- A second path ----------------------------------------------------------------- */
+
+#define PUSH 0.02                 /* in amplitudes */
+#define OTHER_TOLERANCE 100       /* times the first one */
+
+/* c->x moved by PUSH amplitudes, species in turn up and down, halved until inside. */
+static void push(const closed_orbit *c, double *y, double *x)
+{
+    double size = PUSH;
+    do {
+        space_take(&c->s, c->x, y);
+        for (int i = 0; i < c->s.rank; i++)
+            y[i] += (i % 2 ? -size : size) * c->scale[space_state(&c->s, i)];
+        space_place(&c->s, y, x);
+        size *= 0.5;
+    } while (!space_is_inside(&c->s, x) && size > 1e-6);
+}
+
+/* From the pushed state x: let it fall back for two periods, then close. */
+static lb_status second_path(const closed_orbit *c, double *x, const orbit_options *options,
+                             double *period, lb_error *err)
+{
+    integrator *it = NULL;
+    shooting shot = {.converged = false};
+    integrator_options how = {.tolerance = options->tolerance, .method = options->method,
+                              .max_steps = options->max_steps, .allow_negative = true,
+                              .monitor = options->monitor};
+    lb_status status = integrator_new(c->s.evaluator, &how, &it, err);
+    if (status == LB_OK && c->stable == LB_YES) {
+        integrator_start(it, 0, x);
+        status = integrator_to(it, 2 * c->period, err);
+        if (status == LB_OK)
+            memcpy(x, integrator_state(it), (size_t)c->s.n * sizeof *x);
+    }
+    *period = c->period;
+    if (status == LB_OK)
+        status = shooting_close(&c->s, x, period, c->scale, 100 * GOAL, options, &shot, err);
+    if (status != LB_OK || !shot.converged)
+        *period = NAN;
+    shooting_clear(&shot);
+    integrator_free(it);
+    return is_fatal(status) ? status : LB_OK;
+}
+
+lb_status closed_confirm(const closed_orbit *c, const lb_monitor *monitor, double *difference, lb_error *err)
+{
+    double *x = memory_array((size_t)(c->s.n + c->s.rank), sizeof *x), period;
+    *difference = NAN;
+    if (!x)
+        return status_no_memory(err);
+    orbit_options options = {.tolerance = OTHER_TOLERANCE * c->tolerance, .method = LB_METHOD_STIFF,
+                             .monitor = monitor};
+    push(c, x + c->s.n, x);
+    lb_status status = second_path(c, x, &options, &period, err);
+    if (status == LB_OK)
+        *difference = fabs(period - c->period) / c->period;
+    memory_free(x);
+    return status;
+}
+
+/* ---- Families ---------------------------------------------------------------------- */
+
+#define FAMILY_STEP 0.1           /* in amplitudes */
+#define FAMILY_KEPT 0.5           /* of the step must be left after closing */
+
+/* Close from a place `step` amplitudes along the neutral direction; kept: how much
+ * of the step is left, 0 when it does not close. */
+static lb_status neighbour(const closed_orbit *c, const double *direction, double step,
+                           const lb_monitor *monitor, double *kept, lb_error *err)
+{
+    double *y = memory_array((size_t)(c->s.rank + c->s.n), sizeof *y), period = c->period;
+    shooting shot = {.converged = false};
+    *kept = 0;
+    if (!y)
+        return status_no_memory(err);
+    double *x = y + c->s.rank;
+    space_take(&c->s, c->x, y);
+    for (int i = 0; i < c->s.rank; i++)
+        y[i] += step * direction[i] * c->scale[space_state(&c->s, i)];
+    space_place(&c->s, y, x);
+    orbit_options options = with(c, c->tolerance, monitor);
+    lb_status status = shooting_close(&c->s, x, &period, c->scale, CLOSED, &options, &shot, err);
+    if (status == LB_OK && shot.converged)
+        for (int i = 0; i < c->s.rank; i++) {
+            int state = space_state(&c->s, i);
+            *kept += (x[state] - c->x[state]) / c->scale[state] * direction[i] / step;
+        }
+    shooting_clear(&shot);
+    memory_free(y);
+    return status;
+}
+
+lb_status closed_is_family(const closed_orbit *c, const lb_monitor *monitor, bool *is_family, lb_error *err)
+{
+    double nearest = INFINITY, kept = 0;
+    *is_family = false;
+    for (int i = 0; i < c->s.rank - 1; i++)
+        nearest = fmin(nearest, hypot(c->multipliers[i].re - 1, c->multipliers[i].im));
+    if (!(nearest <= fmax(1e-6, c->multiplier_error)))
+        return LB_OK;
+    double *direction = memory_array((size_t)c->s.rank, sizeof *direction);
+    if (!direction)
+        return status_no_memory(err);
+    lb_status status = shooting_neutral(&c->shot, c->s.rank, direction, err);
+    if (status == LB_OK)
+        status = neighbour(c, direction, FAMILY_STEP, monitor, &kept, err);
+    if (status == LB_OK && kept > FAMILY_KEPT)
+        status = neighbour(c, direction, -FAMILY_STEP, monitor, &kept, err);
+    *is_family = status == LB_OK && kept > FAMILY_KEPT;
+    memory_free(direction);
+    return status;
+}
+
+/* ---- The record ---------------------------------------------------------------------- */
+
+static lb_status fill(const closed_orbit *c, lb_cycle *cycle, lb_error *err)
+{
+    size_t n = (size_t)c->s.n;
+    cycle->states = c->s.n;
+    cycle->multiplier_count = c->s.rank - 1;
+    cycle->x = memory_array(n, sizeof(double));
+    cycle->low = memory_array(n, sizeof(double));
+    cycle->high = memory_array(n, sizeof(double));
+    cycle->multipliers = memory_array((size_t)cycle->multiplier_count, sizeof(lb_complex));
+    if (!cycle->x || !cycle->low || !cycle->high || !cycle->multipliers)
+        return status_no_memory(err);
+    memcpy(cycle->x, c->x, n * sizeof(double));
+    memcpy(cycle->low, c->low, n * sizeof(double));
+    memcpy(cycle->high, c->high, n * sizeof(double));
+    memcpy(cycle->multipliers, c->multipliers, (size_t)cycle->multiplier_count * sizeof(lb_complex));
+    return LB_OK;
+}
+
+lb_status closed_record(const closed_orbit *c, double confirmed, lb_cycle **out, lb_error *err)
+{
+    lb_cycle *cycle = memory_zeroed(1, sizeof *cycle);
+    *out = NULL;
+    if (!cycle)
+        return status_no_memory(err);
+    cycle->period = c->period;
+    cycle->stable = c->stable;
+    cycle->closure = c->closure;
+    cycle->confirmed = confirmed;
+    cycle->steps = c->steps;
+    cycle->method = c->method == LB_METHOD_EXPLICIT
+                        ? "Newton shooting with an explicit Runge-Kutta method, confirmed with a stiff one"
+                        : "Newton shooting with a stiff Rosenbrock method, confirmed at another tolerance";
+    lb_status status = fill(c, cycle, err);
+    if (status == LB_OK)
+        *out = cycle;
+    else
+        lb_cycle_free(cycle);
+    return status;
+}

@@ -1,0 +1,491 @@
+/* Periodic orbits: follow a trajectory until it rests, closes or runs away.
+ *
+ * The exploring integration is loose and only shows the way.  In epochs of growing
+ * length the ranges of all species are taken; the species that turns and swings
+ * most, relative to its size, carries a Poincare section, and once a return
+ * repeats an older one (up to SECTION_LOOPS loops back) the orbit between them is
+ * handed to closed.c.  An attempt that fails, or an orbit that is not attracting,
+ * makes the next attempt ask for a closer repeat.  Every few steps rest.c is asked
+ * whether a stable steady state has the trajectory. */
+#include "analysis/cycle.h"
+
+#include <math.h>
+#include <string.h>
+
+#include "analysis/closed.h"
+#include "analysis/integrate.h"
+#include "analysis/rest.h"
+#include "analysis/section.h"
+#include "analysis/swings.h"
+#include "base/memory.h"
+#include "base/status.h"
+
+enum {
+    DEFAULT_RETURNS = 2000,
+    DEFAULT_STEPS = 200000,
+    FIRST_EPOCH = 128,            /* steps */
+    EPOCH_RETURNS = 6,            /* an epoch with fewer was too short */
+    REST_EVERY = 32,              /* steps between questions about rest */
+    SHARPEN_AFTER = 300           /* returns without success: integrate more closely */
+};
+
+#define DEFAULT_TOLERANCE 1e-11
+#define EXPLORE 1e-7              /* tolerance of the exploring integration */
+#define EXPLORE_SHARPER 1e-9
+#define FIRST_REPEAT 1e-2         /* amplitudes; the first closing attempt */
+#define LEAST_REPEAT 1e-7
+#define PERIOD_AGREES 1e-6        /* relative, between the two paths */
+#define NEAR_REST 1e-2
+#define AT_REST 1e-5
+#define STARTS_AT_REST 1e-10
+#define STILL 1e-6
+#define RUNAWAY 1e60
+#define RUNAWAY_GROWTH 1e6
+
+typedef struct explorer {
+    space s;
+    const double *x0;
+    const cycle_options *options;
+    cycle_report *report;
+    double closing_tolerance;
+    integrator *it;
+    section section;
+    swings swings;
+    rest rest;
+    orbit_turning turning;
+    double *block;
+    double *before, *after;       /* [n] rates at the ends of the last step */
+    double *low, *high;           /* [n] range of the epoch */
+    double *reach;                /* [n] largest magnitude so far */
+    double *scale, *x;            /* [n] scratch */
+    size_t *turns;                /* [n] turning points when the epoch began */
+    size_t epoch_end, epoch_length, epoch_returns, max_returns, max_steps;
+    double repeat;                /* how close the next repeat must be */
+    double first_distance;        /* from the stable steady state, when first near it; else infinite */
+    double elapsed;               /* before the integrator's last start */
+    bool is_sharp, is_done;
+} explorer;
+
+/* ---- Setting up ---------------------------------------------------------------------- */
+
+static lb_status start_integrator(explorer *e, const double *x, double tolerance, lb_error *err)
+{
+    integrator_options how = {.tolerance = tolerance, .method = LB_METHOD_AUTO,
+                              .monitor = e->options->monitor};
+    integrator_free(e->it);
+    e->it = NULL;
+    lb_status status = integrator_new(e->s.evaluator, &how, &e->it, err);
+    if (status != LB_OK)
+        return status;
+    integrator_start(e->it, 0, x);
+    e->turning.it = e->it;
+    lb_rhs(e->s.evaluator, x, e->after);
+    return LB_OK;
+}
+
+static void start_epoch(explorer *e, const double *x)
+{
+    for (int i = 0; i < e->s.n; i++) {
+        e->low[i] = e->high[i] = x[i];
+        e->turns[i] = swings_turns(&e->swings, i);
+    }
+    e->epoch_end = e->report->steps + e->epoch_length;
+    e->epoch_returns = 0;
+}
+
+static lb_status take_memory(explorer *e, lb_error *err)
+{
+    size_t n = (size_t)e->s.n;
+    e->block = memory_zeroed(9 * n, sizeof *e->block);
+    e->turns = memory_zeroed(n, sizeof *e->turns);
+    if (!e->block || !e->turns)
+        return status_no_memory(err);
+    e->before = e->block;
+    e->after = e->block + n;
+    e->low = e->block + 2 * n;
+    e->high = e->block + 3 * n;
+    e->reach = e->block + 4 * n;
+    e->scale = e->block + 5 * n;
+    e->x = e->block + 6 * n;
+    e->turning = (orbit_turning){.evaluator = e->s.evaluator, .x = e->block + 7 * n, .f = e->block + 8 * n};
+    return LB_OK;
+}
+
+static lb_status explorer_init(explorer *e, lb_evaluator *evaluator, const double *x0,
+                               const cycle_options *options, cycle_report *report, lb_error *err)
+{
+    memset(e, 0, sizeof *e);
+    e->x0 = x0;
+    e->options = options;
+    e->report = report;
+    e->closing_tolerance = options->tolerance > 0 ? options->tolerance : DEFAULT_TOLERANCE;
+    e->max_returns = options->max_returns ? options->max_returns : DEFAULT_RETURNS;
+    e->max_steps = options->max_steps ? options->max_steps : DEFAULT_STEPS;
+    e->epoch_length = FIRST_EPOCH;
+    e->repeat = FIRST_REPEAT;
+    e->first_distance = INFINITY;
+    lb_status status = space_init(&e->s, evaluator, x0, err);
+    if (status == LB_OK)
+        status = take_memory(e, err);
+    if (status == LB_OK)
+        status = section_init(&e->section, e->s.n, err);
+    if (status == LB_OK)
+        status = swings_init(&e->swings, &e->s, err);
+    if (status == LB_OK)
+        status = rest_init(&e->rest, &e->s, err);
+    if (status == LB_OK)
+        status = start_integrator(e, x0, EXPLORE, err);
+    if (status == LB_OK) {
+        for (int i = 0; i < e->s.n; i++)
+            e->reach[i] = fabs(x0[i]);
+        start_epoch(e, x0);
+    }
+    return status;
+}
+
+static void explorer_clear(explorer *e)
+{
+    integrator_free(e->it);
+    section_clear(&e->section);
+    swings_clear(&e->swings);
+    rest_clear(&e->rest);
+    space_clear(&e->s);
+    memory_free(e->block);
+    memory_free(e->turns);
+}
+
+/* ---- Outcomes ------------------------------------------------------------------------- */
+
+static void finish(explorer *e, cycle_outcome outcome, const char *why)
+{
+    e->report->outcome = outcome;
+    e->report->why = why;
+    e->is_done = true;
+}
+
+static lb_status settle(explorer *e, const double *where, const char *why, lb_error *err)
+{
+    cycle_report *report = e->report;
+    size_t n = (size_t)e->s.n;
+    report->rest = memory_array(n, sizeof *report->rest);
+    if (!report->rest)
+        return status_no_memory(err);
+    memcpy(report->rest, where, n * sizeof *where);
+    swings_summary(&e->swings, e->reach, &report->swings, &report->swing_decay, &report->swing_species);
+    finish(e, CYCLE_SETTLED, why);
+    return LB_OK;
+}
+
+/* A point of the orbit as a state to start from: species set aside take what the
+ * laws say, else what they have at x0. */
+static void complete(const explorer *e, double *x)
+{
+    system_complete(e->s.system, e->x0, x);
+    for (int i = 0; i < e->s.n; i++)
+        if (e->s.system->core_index[i] < 0 && !isfinite(x[i]))
+            x[i] = e->x0[i];
+}
+
+static lb_status report_orbit(explorer *e, const closed_orbit *orbit, double confirmed, cycle_outcome outcome,
+                              const char *why, lb_error *err)
+{
+    lb_status status = closed_record(orbit, confirmed, &e->report->cycle, err);
+    if (status != LB_OK)
+        return status;
+    complete(e, e->report->cycle->x);
+    if (outcome == CYCLE_CENTRE)
+        e->report->cycle->stable = LB_NO;
+    finish(e, outcome, why);
+    return LB_OK;
+}
+
+/* ---- Rest and runaway -------------------------------------------------------------------- */
+
+static lb_status look_for_rest(explorer *e, lb_error *err)
+{
+    const double *x = integrator_state(e->it);
+    rest *r = &e->rest;
+    lb_status status = rest_near(r, &e->s, x, e->reach, NEAR_REST, err);
+    if (status != LB_OK)
+        return status;
+    if (!r->found || r->distance >= NEAR_REST || r->stable == LB_NO) {
+        e->first_distance = INFINITY;
+    } else if (r->distance < AT_REST && r->stable == LB_YES) {
+        return settle(e, r->x, "it comes to rest at a stable steady state", err);
+    } else if (!isfinite(e->first_distance)) {
+        e->first_distance = r->distance;
+    }
+    bool is_still;
+    status = rest_is_still(r, &e->s, x, e->reach, e->elapsed + integrator_time(e->it), STILL, &is_still, err);
+    if (status == LB_OK && is_still)
+        return settle(e, x, "it comes to rest: as much time again would not move it", err);
+    return status;
+}
+
+static lb_status look_at_start(explorer *e, lb_error *err)
+{
+    lb_status status = rest_near(&e->rest, &e->s, e->x0, e->reach, NEAR_REST, err);
+    if (status == LB_OK && e->rest.found && e->rest.distance < STARTS_AT_REST)
+        return settle(e, e->rest.x, "it starts at a steady state", err);
+    return status;
+}
+
+/* Largest core magnitude now, relative to the largest at the start. */
+static double growth(const explorer *e, double *largest)
+{
+    double start = 0;
+    *largest = 0;
+    for (int k = 0; k < e->s.core; k++) {
+        int i = e->s.system->core_state[k];
+        *largest = fmax(*largest, e->reach[i]);
+        start = fmax(start, fabs(e->x0[i]));
+    }
+    return start > 0 ? *largest / start : 0;
+}
+
+static void look_for_runaway(explorer *e)
+{
+    double largest;
+    growth(e, &largest);
+    if (largest > RUNAWAY)
+        finish(e, CYCLE_UNBOUNDED, "it grows without bound");
+}
+
+/* The integration could not go on.  A blow-up in finite time is an answer; so is
+ * leaving the orthant. */
+static lb_status stop_at_failure(explorer *e, lb_status status)
+{
+    double largest;
+    if (status == LB_E_STEP || status == LB_E_FINITE || status == LB_E_NUMERIC) {
+        if (growth(e, &largest) > RUNAWAY_GROWTH)
+            finish(e, CYCLE_UNBOUNDED, "it grows without bound in finite time");
+        else
+            finish(e, CYCLE_UNDECIDED, "the integration could not go on");
+        return LB_OK;
+    }
+    if (status == LB_E_NEGATIVE) {
+        finish(e, CYCLE_UNDECIDED, "a concentration falls below zero");
+        return LB_OK;
+    }
+    return status;
+}
+
+static lb_status give_up(explorer *e, lb_error *err)
+{
+    const rest *r = &e->rest;
+    if (r->found && r->stable == LB_YES && r->distance < 0.5 * e->first_distance)
+        return settle(e, r->x, "it approaches a stable steady state, slowly", err);
+    finish(e, CYCLE_UNDECIDED, e->report->returns > SECTION_LOOPS
+               ? "it keeps moving and recurs without closing"
+               : "it neither rests nor recurs within the effort");
+    return LB_OK;
+}
+
+/* ---- Closing ------------------------------------------------------------------------------ */
+
+/* The orbit through x0 of a family; the one at hand where that does not close. */
+static lb_status report_centre(explorer *e, const closed_orbit *orbit, lb_error *err)
+{
+    const char *why = "closed orbits of several amplitudes: a centre";
+    closed_orbit own;
+    lb_status status = closed_find(&own, e->s.evaluator, e->x0, orbit->period, e->closing_tolerance,
+                                   e->options->monitor, err);
+    if (status == LB_OK)
+        status = report_orbit(e, own.converged ? &own : orbit, NAN, CYCLE_CENTRE, why, err);
+    closed_clear(&own);
+    return status;
+}
+
+static lb_status judge_orbit(explorer *e, const closed_orbit *orbit, lb_error *err)
+{
+    const lb_monitor *monitor = e->options->monitor;
+    if (orbit->stable == LB_YES) {
+        double difference;
+        lb_status status = closed_confirm(orbit, monitor, &difference, err);
+        if (status == LB_OK && difference < PERIOD_AGREES)
+            status = report_orbit(e, orbit, difference, CYCLE_CLOSED, "an attracting closed orbit", err);
+        return status;
+    }
+    bool is_family;
+    lb_status status = closed_is_family(orbit, monitor, &is_family, err);
+    return status == LB_OK && is_family ? report_centre(e, orbit, err) : status;
+}
+
+static lb_status try_to_close(explorer *e, int loops, lb_error *err)
+{
+    const section_return *newest = section_back(&e->section, 0);
+    double period = newest->t - section_back(&e->section, (size_t)loops)->t;
+    closed_orbit orbit;
+    lb_status status = closed_find(&orbit, e->s.evaluator, newest->x, period, e->closing_tolerance,
+                                   e->options->monitor, err);
+    if (status == LB_OK && orbit.converged)
+        status = judge_orbit(e, &orbit, err);
+    closed_clear(&orbit);
+    e->repeat = fmax(0.1 * e->repeat, LEAST_REPEAT);
+    return status;
+}
+
+/* Restart the exploring integration with a smaller tolerance: the noise of the
+ * loose one may hide the repeats of a small orbit. */
+static lb_status sharpen(explorer *e, lb_error *err)
+{
+    memcpy(e->x, integrator_state(e->it), (size_t)e->s.n * sizeof *e->x);
+    e->elapsed += integrator_time(e->it);
+    e->is_sharp = true;
+    e->section.is_placed = false;
+    return start_integrator(e, e->x, EXPLORE_SHARPER, err);
+}
+
+static lb_status watch_section(explorer *e, lb_error *err)
+{
+    bool returned;
+    if (!e->section.is_placed)
+        return LB_OK;
+    lb_status status = section_watch(&e->section, e->it, &returned, err);
+    if (status != LB_OK || !returned)
+        return status;
+    e->epoch_returns++;
+    e->report->returns++;
+    double distance;
+    int loops = section_repeats(&e->section, &e->s, e->repeat, e->scale, &distance);
+    if (loops > 0)
+        return try_to_close(e, loops, err);
+    if (!e->is_sharp && e->report->returns >= SHARPEN_AFTER)
+        return sharpen(e, err);
+    return LB_OK;
+}
+
+/* ---- Epochs --------------------------------------------------------------------------------- */
+
+/* The species that turned at least twice in the epoch and swings most for its size;
+ * -1 when none turned. */
+static int liveliest(const explorer *e)
+{
+    int best = -1;
+    double most = 0;
+    for (int k = 0; k < e->s.core; k++) {
+        int i = e->s.system->core_state[k];
+        double swing = (e->high[i] - e->low[i]) / fmax(fabs(e->high[i]), fabs(e->low[i]));
+        if (swings_turns(&e->swings, i) >= e->turns[i] + 2 && swing > 1.001 * most) {
+            most = swing;
+            best = i;
+        }
+    }
+    return best;
+}
+
+static bool section_still_fits(const explorer *e)
+{
+    const section *c = &e->section;
+    if (!c->is_placed || e->epoch_returns < EPOCH_RETURNS)
+        return false;
+    double place = (c->level - e->low[c->state]) / (e->high[c->state] - e->low[c->state]);
+    return place > 0.25 && place < 0.75;
+}
+
+static void end_epoch(explorer *e)
+{
+    if (!section_still_fits(e)) {
+        int state = liveliest(e);
+        if (state >= 0)
+            section_place(&e->section, state, e->low[state], e->high[state]);
+        if (e->epoch_returns < EPOCH_RETURNS)
+            e->epoch_length *= 2;
+    }
+    start_epoch(e, integrator_state(e->it));
+}
+
+/* One step and what follows from it. */
+static lb_status advance(explorer *e, lb_error *err)
+{
+    lb_status status = integrator_step(e->it, INFINITY, err);
+    if (status != LB_OK)
+        return stop_at_failure(e, status);
+    const double *x = integrator_state(e->it);
+    double *swap = e->before;
+    e->before = e->after;
+    e->after = swap;
+    lb_rhs(e->s.evaluator, x, e->after);
+    e->report->steps++;
+    for (int i = 0; i < e->s.n; i++) {
+        e->low[i] = fmin(e->low[i], x[i]);
+        e->high[i] = fmax(e->high[i], x[i]);
+        e->reach[i] = fmax(e->reach[i], fabs(x[i]));
+    }
+    return swings_watch(&e->swings, &e->turning, e->before, e->after, err);
+}
+
+static lb_status explore(explorer *e, lb_error *err)
+{
+    lb_status status = look_at_start(e, err);
+    while (status == LB_OK && !e->is_done) {
+        status = advance(e, err);
+        if (status == LB_OK && !e->is_done)
+            status = watch_section(e, err);
+        if (status == LB_OK && !e->is_done && e->report->steps % REST_EVERY == 0) {
+            look_for_runaway(e);
+            if (!e->is_done)
+                status = look_for_rest(e, err);
+        }
+        if (status == LB_OK && !e->is_done && e->report->steps >= e->epoch_end)
+            end_epoch(e);
+        if (status == LB_OK && !e->is_done &&
+            (e->report->steps >= e->max_steps || e->report->returns >= e->max_returns))
+            status = give_up(e, err);
+    }
+    return status;
+}
+
+/* ---- Interface ------------------------------------------------------------------------------- */
+
+lb_status cycle_find(lb_evaluator *evaluator, const double *x0, const cycle_options *options,
+                     cycle_report *report, lb_error *err)
+{
+    static const cycle_options defaults = {.tolerance = 0};
+    explorer e;
+    memset(report, 0, sizeof *report);
+    report->outcome = CYCLE_UNDECIDED;
+    report->swing_species = -1;
+    report->why = "";
+    lb_status status = explorer_init(&e, evaluator, x0, options ? options : &defaults, report, err);
+    if (status == LB_OK)
+        status = explore(&e, err);
+    explorer_clear(&e);
+    return status;
+}
+
+void cycle_report_clear(cycle_report *report)
+{
+    lb_cycle_free(report->cycle);
+    memory_free(report->rest);
+    report->cycle = NULL;
+    report->rest = NULL;
+}
+
+lb_status cycle_close(lb_evaluator *evaluator, const double *x0, double period, const cycle_options *options,
+                      lb_cycle **out, lb_error *err)
+{
+    const lb_monitor *monitor = options ? options->monitor : NULL;
+    double tolerance = options && options->tolerance > 0 ? options->tolerance : DEFAULT_TOLERANCE;
+    double confirmed = NAN;
+    closed_orbit orbit;
+    *out = NULL;
+    lb_status status = closed_find(&orbit, evaluator, x0, period, tolerance, monitor, err);
+    if (status == LB_OK && orbit.converged)
+        status = closed_confirm(&orbit, monitor, &confirmed, err);
+    if (status == LB_OK && orbit.converged)
+        status = closed_record(&orbit, confirmed, out, err);
+    closed_clear(&orbit);
+    return status;
+}
+
+void lb_cycle_free(lb_cycle *cycle)
+{
+    if (!cycle)
+        return;
+    memory_free(cycle->x);
+    memory_free(cycle->low);
+    memory_free(cycle->high);
+    memory_free(cycle->multipliers);
+    memory_free(cycle);
+}

@@ -1,0 +1,31 @@
+/* Is a trajectory going to rest here? */
+#ifndef LIMBECK_ANALYSIS_REST_H
+#define LIMBECK_ANALYSIS_REST_H
+
+#include "analysis/space.h"
+#include "limbeck.h"
+
+typedef struct rest {
+    bool found;                   /* Newton from the state led to a steady state */
+    lb_answer stable;             /* of that state */
+    double distance;              /* of the state from it, relative (see rest_near) */
+    double *x;                    /* [n] the steady state */
+    double *work;                 /* scratch */
+    int *pivot;
+} rest;
+
+lb_status rest_init(rest *r, const space *s, lb_error *err);
+void rest_clear(rest *r);
+
+/* Newton in the reaction space from x [n].  The distance is measured in each
+ * species' steady value or a thousandth of reach [n] (its largest magnitude so
+ * far), whichever is larger.  Stability is asked only where the distance is
+ * below `close`; it is undecided otherwise. */
+lb_status rest_near(rest *r, const space *s, const double *x, const double *reach, double close, lb_error *err);
+
+/* As much time again as `elapsed` would move no core species by more than
+ * `fraction` of its reach, and no eigenvalue at x says that it is leaving. */
+lb_status rest_is_still(rest *r, const space *s, const double *x, const double *reach, double elapsed,
+                        double fraction, bool *is_still, lb_error *err);
+
+#endif
