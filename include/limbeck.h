@@ -370,9 +370,12 @@ lb_status lb_csv_run(const lb_system *system, const lb_run *run, lb_text *out);
 
 /* One JSON object (docs/json.md), ending in a newline. */
 lb_status lb_json_check(const lb_network *network, const lb_diagnostics *diagnostics, lb_text *out);
-lb_status lb_json_run(const lb_system *system, const lb_diagnostics *diagnostics, const lb_run *run, lb_text *out);
+/* error: why the run ended early, beside the rows so far; NULL when it did not. */
+lb_status lb_json_run(const lb_system *system, const lb_diagnostics *diagnostics, const lb_run *run, const lb_error *error, lb_text *out);
 lb_status lb_json_steady(const lb_system *system, const lb_diagnostics *diagnostics, const lb_steady *steady, lb_text *out);
 lb_status lb_json_oscillate(const lb_system *system, const lb_diagnostics *diagnostics, const lb_oscillate *oscillate, lb_text *out);
+/* The keys of check, steady and oscillate in one object. */
+lb_status lb_json_page(const lb_system *system, const lb_diagnostics *diagnostics, const lb_oscillate *oscillate, lb_text *out);
 lb_status lb_json_emit(const lb_network *network, const lb_diagnostics *diagnostics, const char *header_path, const char *source_path, lb_text *out);
 /* {"limbeck": ..., "command": ..., "file": ..., "error": {"code", "message", "remedy", "faults": [...]}} */
 lb_status lb_json_error(const char *command, const char *file, const lb_error *error, const lb_diagnostics *diagnostics, lb_text *out);

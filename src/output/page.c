@@ -1,0 +1,38 @@
+/* The one-page answer of `limbeck FILE`: what the mechanism is, what it
+ * conserves, where it rests, whether it oscillates. */
+#include "limbeck.h"
+#include "output/describe.h"
+#include "output/layout.h"
+#include "output/text_oscillate.h"
+#include "output/text_steady.h"
+#include "system/system.h"
+
+/* A scope that was not asked, although the file has ranges, is pointed out. */
+static void write_ranges_hint(buffer *out, const lb_layout *layout, const lb_network *net, const lb_oscillate *oscillate)
+{
+    int ranges = 0;
+    for (int i = 0; i < net->constant_count; i++)
+        ranges += net->constants[i].has_range;
+    for (size_t i = 0; i < oscillate->count; i++)
+        if (oscillate->answer[i].scope == LB_SCOPE_RANGES)
+            return;
+    if (ranges == 0)
+        return;
+    buffer_char(out, '\n');
+    layout_printf(out, layout, 0, "%d constant%s a range, not searched here: limbeck oscillate %s", ranges,
+                  ranges == 1 ? " has" : "s have", net->file);
+}
+
+lb_status lb_text_page(const lb_system *system, const lb_oscillate *oscillate, const lb_layout *layout, lb_text *out)
+{
+    const lb_network *net = system->network;
+    describe_opening(out, layout, net);
+    if (oscillate->steady) {
+        describe_conserved(out, layout, system, oscillate->steady->total);
+        steady_write(out, layout, system, oscillate->steady, true);
+    }
+    for (size_t i = 0; i < oscillate->count; i++)
+        oscillate_write_answer(out, layout, system, &oscillate->answer[i]);
+    write_ranges_hint(out, layout, net, oscillate);
+    return buffer_status(out);
+}

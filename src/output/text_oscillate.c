@@ -1,0 +1,203 @@
+/* The verdict on oscillation for a person, with its evidence.
+ *
+ * Three words are kept apart: "proved" (no proof is built, so it does not
+ * occur here), "witnessed" (constants and an orbit that anyone can run) and
+ * "searched" (nothing found, in so many tries, which excludes nothing). */
+#include "output/text_oscillate.h"
+
+#include <math.h>
+#include <string.h>
+
+#include "output/describe.h"
+#include "output/grid.h"
+#include "output/layout.h"
+#include "system/system.h"
+
+enum { DIGITS = 6, MULTIPLIERS_SHOWN = 8 };
+
+static const char *scope_heading(lb_scope scope)
+{
+    return scope == LB_SCOPE_GIVEN ? "Oscillation, with the constants given"
+                                   : "Oscillation, with constants anywhere in their ranges";
+}
+
+static const char *attraction_text(lb_answer stable)
+{
+    switch (stable) {
+    case LB_YES: return "attracting limit cycle";
+    case LB_NO: return "repelling closed orbit";
+    case LB_UNDECIDED: break;
+    }
+    return "closed orbit whose attraction is undecided";
+}
+
+static void write_verdict(buffer *out, const lb_layout *layout, const lb_network *net, const lb_oscillate_answer *answer)
+{
+    const char *word = answer->verdict == LB_OSCILLATES ? "Oscillates"
+                     : answer->verdict == LB_IS_CENTRE  ? "Centre"
+                                                        : "Not found";
+    buffer period;
+    buffer_init(&period);
+    if (answer->cycle)
+        layout_quantity(&period, answer->cycle->period, DIGITS, describe_time_unit(net));
+    buffer_append(out, "  ");
+    layout_strong(out, layout, word);
+    if (answer->verdict == LB_OSCILLATES && answer->cycle)
+        buffer_printf(out, " (witnessed): %s, period %s\n", attraction_text(answer->cycle->stable), buffer_get(&period));
+    else if (answer->verdict == LB_IS_CENTRE && answer->cycle)
+        buffer_printf(out, " (witnessed): closed orbits of every size; period of this one %s\n", buffer_get(&period));
+    else
+        buffer_append(out, " (searched): no sustained oscillation was found, which does not prove that there is none\n");
+    buffer_clear(&period);
+}
+
+static void write_amplitudes(buffer *out, const lb_layout *layout, const lb_network *net, const lb_cycle *cycle)
+{
+    grid g;
+    grid_init(&g, "lnn", true);
+    grid_cell(&g, "%s", describe_concentration_unit(net));
+    grid_cell(&g, "lowest");
+    grid_cell(&g, "highest");
+    for (int i = 0; i < cycle->states; i++) {
+        if (isnan(cycle->low[i]) || isnan(cycle->high[i]))
+            continue;
+        grid_cell(&g, "[%s]", lb_network_state_name(net, i));
+        grid_number(&g, cycle->low[i], DIGITS);
+        grid_number(&g, cycle->high[i], DIGITS);
+    }
+    buffer_char(out, '\n');
+    grid_write(&g, layout, 4, out);
+    buffer_char(out, '\n');
+}
+
+static void write_multipliers(buffer *out, const lb_layout *layout, const lb_cycle *cycle)
+{
+    if (cycle->multiplier_count == 0)
+        return;
+    buffer text;
+    buffer_init(&text);
+    int shown = cycle->multiplier_count < MULTIPLIERS_SHOWN ? cycle->multiplier_count : MULTIPLIERS_SHOWN;
+    bool is_first = true;
+    for (int i = 0; i < shown; i++) {
+        if (cycle->multipliers[i].im < 0)
+            continue;
+        char one[LAYOUT_COMPLEX];
+        layout_complex(cycle->multipliers[i], 4, one);
+        buffer_printf(&text, "%s%s", is_first ? "" : ", ", one);
+        is_first = false;
+    }
+    if (shown < cycle->multiplier_count)
+        buffer_printf(&text, " and %d smaller", cycle->multiplier_count - shown);
+    const char *judgement = cycle->stable == LB_YES ? ", all inside the unit circle" : "";
+    layout_printf(out, layout, 2, "Floquet multipliers, the one along the orbit left out%s: %s.", judgement, buffer_get(&text));
+    buffer_clear(&text);
+}
+
+static void write_confirmation(buffer *out, const lb_layout *layout, const lb_cycle *cycle)
+{
+    char closure[LAYOUT_NUMBER], confirmed[LAYOUT_NUMBER];
+    layout_number(cycle->closure, 2, closure);
+    layout_number(cycle->confirmed, 2, confirmed);
+    buffer text;
+    buffer_init(&text);
+    buffer_printf(&text, "The orbit closes to %s of its swing", closure);
+    if (cycle->method && *cycle->method)
+        buffer_printf(&text, " (%s)", cycle->method);
+    if (isnan(cycle->confirmed))
+        buffer_append(&text, "; it was not confirmed by a second method.");
+    else
+        buffer_printf(&text, "; a second method and tolerance gives the same period to %s.", confirmed);
+    layout_printf(out, layout, 2, "%s", buffer_get(&text));
+    buffer_clear(&text);
+}
+
+/* The constants that a search may turn: the witness's, the file's, the range. */
+static void write_constants(buffer *out, const lb_layout *layout, const lb_network *net, const double *k)
+{
+    grid g;
+    grid_init(&g, "lnlnl", true);
+    grid_cell(&g, "constant");
+    grid_cell(&g, "witness");
+    grid_cell(&g, "unit");
+    grid_cell(&g, "in the file");
+    grid_cell(&g, "range");
+    for (int i = 0; i < net->constant_count; i++) {
+        const network_constant *constant = &net->constants[i];
+        if (!constant->has_range)
+            continue;
+        char low[LAYOUT_NUMBER], high[LAYOUT_NUMBER];
+        layout_number(constant->low, DIGITS, low);
+        layout_number(constant->high, DIGITS, high);
+        grid_cell(&g, "%s", constant->name);
+        grid_number(&g, k[i], DIGITS);
+        grid_cell(&g, "%s", constant->unit ? constant->unit : "");
+        grid_number(&g, constant->value, DIGITS);
+        grid_cell(&g, "%s .. %s", low, high);
+    }
+    buffer_char(out, '\n');
+    grid_write(&g, layout, 4, out);
+}
+
+static void write_transient(buffer *out, const lb_layout *layout, const lb_network *net, const lb_oscillate_answer *answer)
+{
+    if (answer->swings <= 0)
+        return;
+    const char *species = answer->swing_species >= 0 ? lb_network_state_name(net, answer->swing_species) : NULL;
+    buffer text;
+    buffer_init(&text);
+    buffer_printf(&text, "Transient oscillation: on its way to rest %s%s%s swings %d time%s", species ? "[" : "",
+                  species ? species : "the mixture", species ? "]" : "", answer->swings, answer->swings == 1 ? "" : "s");
+    if (answer->swing_decay > 0) {
+        char decay[LAYOUT_NUMBER];
+        layout_number(answer->swing_decay, 3, decay);
+        buffer_printf(&text, ", each swing %s times the last", decay);
+    }
+    layout_printf(out, layout, 2, "%s. It dies out.", buffer_get(&text));
+    buffer_clear(&text);
+}
+
+static void write_effort(buffer *out, const lb_layout *layout, const lb_oscillate_answer *answer)
+{
+    buffer text;
+    buffer_init(&text);
+    buffer_append(&text, "Looked at ");
+    describe_count(&text, answer->samples, "set");
+    buffer_append(&text, " of constants, ");
+    describe_count(&text, answer->steady, "steady state");
+    buffer_printf(&text, " (%zu unstable), ", answer->unstable);
+    describe_count(&text, answer->integrations, "trajectory");
+    buffer_append(&text, ".");
+    if (answer->method && *answer->method)
+        buffer_printf(&text, " Method: %s", answer->method);
+    if (answer->interrupted)
+        buffer_append(&text, " The search was interrupted, and is not complete.");
+    layout_printf(out, layout, 2, "%s", buffer_get(&text));
+    buffer_clear(&text);
+    if (answer->verdict == LB_NOT_FOUND && answer->limits && *answer->limits)
+        layout_printf(out, layout, 2, "%s", answer->limits);
+}
+
+void oscillate_write_answer(buffer *out, const lb_layout *layout, const lb_system *system, const lb_oscillate_answer *answer)
+{
+    const lb_network *net = system->network;
+    layout_heading(out, layout, scope_heading(answer->scope));
+    write_verdict(out, layout, net, answer);
+    if (answer->cycle) {
+        write_amplitudes(out, layout, net, answer->cycle);
+        write_multipliers(out, layout, answer->cycle);
+        write_confirmation(out, layout, answer->cycle);
+        if (answer->scope == LB_SCOPE_RANGES)
+            write_constants(out, layout, net, answer->k);
+        describe_fast_constants(out, layout, net, answer->k);
+    }
+    write_transient(out, layout, net, answer);
+    write_effort(out, layout, answer);
+}
+
+lb_status lb_text_oscillate(const lb_system *system, const lb_oscillate *oscillate, const lb_layout *layout, lb_text *out)
+{
+    describe_opening(out, layout, system->network);
+    for (size_t i = 0; i < oscillate->count; i++)
+        oscillate_write_answer(out, layout, system, &oscillate->answer[i]);
+    return buffer_status(out);
+}
