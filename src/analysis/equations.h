@@ -1,0 +1,90 @@
+/* The steady-state equations of the core, or of what is left of it on a face
+ * where some species are zero, in one compatibility class.
+ *
+ * Unknowns u [count]: ln x of an unsigned species, x/unit of a signed one.
+ * Rows: one balance per unknown, then one per conservation law; there are more
+ * rows than unknowns when there are laws, and they are consistent at a root. */
+#ifndef LIMBECK_ANALYSIS_EQUATIONS_H
+#define LIMBECK_ANALYSIS_EQUATIONS_H
+
+#include <stdbool.h>
+
+#include "limbeck.h"
+#include "system/system.h"
+
+/* Conservation laws in numbers, with their values in the class. */
+typedef struct equations_laws {
+    int count, width;       /* width: core species */
+    int basis;              /* the first `basis` rows are independent and span the rest */
+    double *law;            /* [count*width], row after row */
+    double *total;          /* [count] */
+    double *size;           /* [count] sum of |coefficient * x0|: what rounding of the total is measured by */
+    bool *is_positive;      /* [count] no negative coefficient, and no signed species in it */
+} equations_laws;
+
+/* One step's part in one balance. */
+typedef struct equations_term {
+    int step;
+    double coefficient;
+} equations_term;
+
+typedef struct equations {
+    lb_evaluator *evaluator;        /* borrowed */
+    const lb_system *system;
+    const equations_laws *laws;     /* borrowed */
+    int count;                      /* unknowns */
+    int *state;                     /* [count] state of each */
+    int *unknown;                   /* [n] place in state, or -1 */
+    bool *is_signed;                /* [count] */
+    double *unit;                   /* [count] of a signed unknown; 1 for the others */
+    int *law;                       /* [law_count] rows of laws with an unknown in them */
+    int law_count;
+    int rows;                       /* count + law_count */
+    bool *is_alive;                 /* [steps] takes part, and its rate does not vanish on the face */
+    int *start;                     /* [count+1] terms of each balance */
+    equations_term *term;
+    bool *is_ratio;                 /* [count] balance of power laws: ln(gain/loss), else (gain - loss)/size */
+    bool is_general;                /* some balance is not of that form: the Jacobian is needed */
+    bool is_inconsistent;           /* a total cannot be met on this face */
+    bool is_unbalanced;             /* a species is only made or only used at positive rates: no root */
+    double *size;                   /* [count] scale of each plain balance, of the last equations_matrix */
+    double *law_size;               /* [law_count] the same for laws with signs */
+    double *x;                      /* [n] state in hand: zero on the face, x0 for species set aside */
+    double *rate;                   /* [steps] */
+    double *jacobian;               /* [nonzeros] */
+} equations;
+
+/* Laws of the core (of the steps that are alive at the bound constants) with
+ * the totals of x0 [n]. */
+lb_status equations_laws_init(equations_laws *laws, lb_evaluator *evaluator, const double *x0, lb_error *err);
+void equations_laws_clear(equations_laws *laws);
+
+/* Which steps of the core have a rate that does not vanish identically when the
+ * states with is_zero [n] are zero: by evaluation at several points. */
+lb_status equations_find_alive(lb_evaluator *evaluator, const bool *is_zero, bool *is_alive, lb_error *err);
+
+/* is_zero [n]: the face; NULL: none.  x0 [n] gives the values of species set
+ * aside and the unit of signed ones. */
+lb_status equations_new(lb_evaluator *evaluator, const equations_laws *laws, const double *x0, const bool *is_zero,
+                        equations **out, lb_error *err);
+void equations_free(equations *eq);
+
+/* Sets eq->x from u. */
+void equations_place(equations *eq, const double *u);
+/* u of a state x [n] with positive unsigned entries. */
+void equations_take(const equations *eq, const double *x, double *u);
+
+/* Residuals F [rows] at u, plain rows scaled by the sizes of the last
+ * equations_matrix.  False when something is not finite. */
+bool equations_values(equations *eq, const double *u, double *F);
+
+/* Residuals and their derivatives A [rows*count], column-major, with fresh
+ * sizes.  inertia > 0: one implicit Euler step of 1/inertia instead, all
+ * balances plain. */
+bool equations_matrix(equations *eq, const double *u, double inertia, double *F, double *A);
+
+/* max_i |f_i| / (sum of the magnitudes of its terms), laws included, after
+ * equations_matrix at the same u. */
+double equations_residual(const equations *eq, const double *F);
+
+#endif

@@ -1,0 +1,336 @@
+/* Newton's method on the steady-state equations.
+ *
+ * Each step solves the linearised equations: by LU where there are as many
+ * balances as unknowns, else by least squares over all balances and laws (they
+ * are consistent at a root, so convergence stays quadratic, and no balance with
+ * small terms is lost to one with large ones).  A singular step falls back to
+ * the least-norm solution.  Steps are cut to STEP_LIMIT in log concentration and
+ * halved until the residual falls.
+ *
+ * Known roots are deflated with m(u) = prod (1/|u - r|^2 + 1); the step of the
+ * deflated system is a multiple of Newton's own (P. E. Farrell, A. Birkisson and
+ * S. W. Funke, SIAM J. Sci. Comput. 37 (2015) A2026; the scalar form follows
+ * from Sherman and Morrison's formula).  Pseudo-transient continuation with
+ * switched evolution relaxation: C. T. Kelley and D. E. Keyes, SIAM J. Numer.
+ * Anal. 35 (1998) 508. */
+#include "analysis/newton.h"
+
+#include <math.h>
+#include <string.h>
+
+#include "analysis/linalg.h"
+#include "base/memory.h"
+#include "base/status.h"
+
+enum { MOST_ITERATIONS = 60, MOST_HALVINGS = 10, MOST_POLISHING = 6, MOST_RELAXATIONS = 80, ALL_ROWS_LIMIT = 40 };
+
+static const double STEP_LIMIT = 5;             /* e^5: two decades */
+static const double RESIDUAL_TOLERANCE = 1e-11; /* a root, before polishing */
+static const double STEP_TOLERANCE = 1e-3;      /* and well placed: not on its way to zero or infinity */
+static const double RANK_TOLERANCE = 1e-10;
+
+/* ---- Workspace -------------------------------------------------------------------- */
+
+/* Which rows make the square form: the independent balances and the laws, when
+ * the equations are those of the whole core. */
+static bool choose_rows(newton *w)
+{
+    const equations *eq = w->eq;
+    const lb_system *system = eq->system;
+    if (eq->law_count == 0) {
+        for (int i = 0; i < eq->count; i++)
+            w->row[i] = i;
+        return true;
+    }
+    if (eq->count <= ALL_ROWS_LIMIT || eq->count != system->core || system->rank + eq->law_count != system->core)
+        return false;
+    for (int i = 0; i < system->rank; i++)
+        w->row[i] = eq->unknown[system->core_state[system->independent[i]]];
+    for (int l = 0; l < eq->law_count; l++)
+        w->row[system->rank + l] = eq->count + l;
+    return true;
+}
+
+lb_status newton_init(newton *w, equations *eq, lb_error *err)
+{
+    size_t count = (size_t)eq->count, rows = (size_t)eq->rows;
+    memset(w, 0, sizeof *w);
+    w->eq = eq;
+    w->row = memory_array(count, sizeof *w->row);
+    w->F = memory_array(rows, sizeof *w->F);
+    w->trial_F = memory_array(rows, sizeof *w->trial_F);
+    w->A = memory_array(rows * count, sizeof *w->A);
+    w->work = memory_array(rows * count, sizeof *w->work);
+    w->right = memory_array(rows, sizeof *w->right);
+    w->step = memory_array(count, sizeof *w->step);
+    w->trial = memory_array(count, sizeof *w->trial);
+    w->pivot = memory_array(count, sizeof *w->pivot);
+    if (!w->row || !w->F || !w->trial_F || !w->A || !w->work || !w->right || !w->step || !w->trial || !w->pivot) {
+        newton_clear(w);
+        return status_no_memory(err);
+    }
+    w->is_square = choose_rows(w);
+    return LB_OK;
+}
+
+void newton_clear(newton *w)
+{
+    memory_free(w->row);
+    memory_free(w->F);
+    memory_free(w->trial_F);
+    memory_free(w->A);
+    memory_free(w->work);
+    memory_free(w->right);
+    memory_free(w->step);
+    memory_free(w->trial);
+    memory_free(w->pivot);
+    memset(w, 0, sizeof *w);
+}
+
+/* ---- One step ----------------------------------------------------------------------- */
+
+static double largest(int count, const double *a)
+{
+    double value = 0;
+    for (int i = 0; i < count; i++)
+        value = fmax(value, fabs(a[i]));
+    return value;
+}
+
+static double norm2(int count, const double *a)
+{
+    double sum = 0;
+    for (int i = 0; i < count; i++)
+        sum += a[i] * a[i];
+    return sqrt(sum);
+}
+
+/* Solve with the rows of the square form; false when they are near singular. */
+static bool solve_square(newton *w)
+{
+    int count = w->eq->count, rows = w->eq->rows;
+    for (int j = 0; j < count; j++)
+        for (int i = 0; i < count; i++)
+            w->work[i + (size_t)j * (size_t)count] = w->A[w->row[i] + (size_t)j * (size_t)rows];
+    for (int i = 0; i < count; i++)
+        w->step[i] = -w->F[w->row[i]];
+    double norm = linalg_norm1(count, w->work);
+    if (!linalg_factor(count, w->work, w->pivot) || linalg_rcond(count, w->work, w->pivot, norm) < 1e-14)
+        return false;
+    linalg_solve(count, w->work, w->pivot, 1, w->step);
+    return isfinite(norm2(count, w->step));
+}
+
+/* step = least-norm solution of A step = -F over all rows. */
+static lb_status solve_all(newton *w, double rcond, int *rank, lb_error *err)
+{
+    int count = w->eq->count, rows = w->eq->rows;
+    memcpy(w->work, w->A, (size_t)rows * (size_t)count * sizeof *w->work);
+    for (int i = 0; i < rows; i++)
+        w->right[i] = -w->F[i];
+    lb_status status = linalg_least_squares(rows, count, w->work, w->right, rcond, rank, err);
+    memcpy(w->step, w->right, (size_t)count * sizeof *w->step);
+    return status;
+}
+
+static lb_status solve(newton *w, lb_error *err)
+{
+    int rank;
+    if (w->is_square && solve_square(w))
+        return LB_OK;
+    return solve_all(w, 1e-12, &rank, err);
+}
+
+/* ---- Deflation ------------------------------------------------------------------------- */
+
+static double squared_distance(int count, const double *a, const double *b)
+{
+    double sum = 0;
+    for (int i = 0; i < count; i++)
+        sum += (a[i] - b[i]) * (a[i] - b[i]);
+    return fmax(sum, 1e-200);
+}
+
+static double deflation(const newton *w, const double *u, double *const *known, int known_count)
+{
+    double m = 1;
+    for (int k = 0; k < known_count; k++)
+        m *= 1 / squared_distance(w->eq->count, u, known[k]) + 1;
+    return m;
+}
+
+/* The step of the deflated system is Newton's times 1/(1 - grad(m).step/m). */
+static double deflated_factor(const newton *w, const double *u, double *const *known, int known_count)
+{
+    double slope = 0;
+    for (int k = 0; k < known_count; k++) {
+        double square = squared_distance(w->eq->count, u, known[k]), along = 0;
+        for (int i = 0; i < w->eq->count; i++)
+            along += (u[i] - known[k][i]) * w->step[i];
+        slope -= 2 * along / (square * (1 + square));
+    }
+    return fabs(1 - slope) > 1e-8 ? 1 / (1 - slope) : 1e8;
+}
+
+/* ---- The iteration ------------------------------------------------------------------------ */
+
+static double reach(const equations *eq, const double *u, int i)
+{
+    return eq->is_signed[i] ? 3 * (1 + fabs(u[i])) : STEP_LIMIT;
+}
+
+/* Cut the step so that no unknown goes further than its reach. */
+static void limit_step(newton *w, const double *u)
+{
+    double factor = 1;
+    for (int i = 0; i < w->eq->count; i++)
+        if (fabs(w->step[i]) * factor > reach(w->eq, u, i))
+            factor = reach(w->eq, u, i) / fabs(w->step[i]);
+    for (int i = 0; i < w->eq->count; i++)
+        w->step[i] *= factor;
+}
+
+/* Halve the step until the (deflated) residual falls; u moves.  False: it never did. */
+static bool line_search(newton *w, double *u, double *const *known, int known_count)
+{
+    const equations *eq = w->eq;
+    double before = deflation(w, u, known, known_count) * norm2(eq->rows, w->F);
+    for (double t = 1; t >= ldexp(1, -MOST_HALVINGS); t /= 2) {
+        for (int i = 0; i < eq->count; i++)
+            w->trial[i] = u[i] + t * w->step[i];
+        if (!equations_values(w->eq, w->trial, w->trial_F))
+            continue;
+        double after = deflation(w, w->trial, known, known_count) * norm2(eq->rows, w->trial_F);
+        if (after < (1 - 1e-4 * t) * before) {
+            memcpy(u, w->trial, (size_t)eq->count * sizeof *u);
+            return true;
+        }
+    }
+    return false;
+}
+
+/* Full steps from a root as long as they get smaller: down to rounding.  Ends
+ * with the residual, the last step and the rank at u. */
+static lb_status polish(newton *w, double *u, newton_report *report, lb_error *err)
+{
+    int count = w->eq->count;
+    double *best = w->trial;
+    memcpy(best, u, (size_t)count * sizeof *u);
+    report->step = INFINITY;
+    for (int i = 0; i < MOST_POLISHING; i++) {
+        if (!equations_matrix(w->eq, u, 0, w->F, w->A))
+            break;
+        int rank;
+        lb_status status = solve_all(w, RANK_TOLERANCE, &rank, err);
+        if (status != LB_OK)
+            return status == LB_E_NUMERIC ? LB_OK : status;
+        double step = largest(count, w->step);
+        if (!(step < 0.9 * report->step))
+            break;
+        report->step = step;
+        report->rank = rank;
+        report->residual = equations_residual(w->eq, w->F);
+        memcpy(best, u, (size_t)count * sizeof *u);
+        for (int j = 0; j < count; j++)
+            u[j] += w->step[j];
+    }
+    memcpy(u, best, (size_t)count * sizeof *u);
+    return LB_OK;
+}
+
+lb_status newton_solve(newton *w, double *u, double *const *known, int known_count, newton_report *report,
+                       lb_error *err)
+{
+    equations *eq = w->eq;
+    *report = (newton_report){.residual = INFINITY, .step = INFINITY};
+    for (int i = 0; i < MOST_ITERATIONS; i++) {
+        report->iterations = i + 1;
+        if (!equations_matrix(eq, u, 0, w->F, w->A))
+            return LB_OK;
+        lb_status status = solve(w, err);
+        if (status != LB_OK)
+            return status == LB_E_NUMERIC ? LB_OK : status;
+        report->residual = equations_residual(eq, w->F);
+        report->step = largest(eq->count, w->step);
+        if (report->residual <= RESIDUAL_TOLERANCE && report->step <= STEP_TOLERANCE) {
+            report->converged = true;
+            return polish(w, u, report, err);
+        }
+        double factor = deflated_factor(w, u, known, known_count);
+        for (int j = 0; j < eq->count; j++)
+            w->step[j] *= factor;
+        limit_step(w, u);
+        if (!line_search(w, u, known, known_count))
+            return LB_OK;
+    }
+    return LB_OK;
+}
+
+/* ---- Pseudo-transient continuation ----------------------------------------------------------- */
+
+/* The first time step: none of the relative rates moves its unknown far. */
+static double first_inertia(newton *w)
+{
+    double fastest = 0;
+    for (int i = 0; i < w->eq->count; i++) {
+        double slope = w->eq->is_signed[i] ? w->eq->unit[i] : w->eq->x[w->eq->state[i]];
+        fastest = fmax(fastest, fabs(w->F[i]) * w->eq->size[i] / slope);
+    }
+    return isfinite(fastest) ? fastest : 0;
+}
+
+lb_status newton_relax(newton *w, double *u, bool *is_near, lb_error *err)
+{
+    int rank, count = w->eq->count;
+    double inertia = 1, before = 0;
+    *is_near = false;
+    for (int i = 0; i < MOST_RELAXATIONS; i++) {
+        if (!equations_matrix(w->eq, u, inertia, w->F, w->A))
+            return LB_OK;
+        double now = norm2(w->eq->rows, w->F);
+        if (now < 1e-6) {
+            *is_near = true;
+            return LB_OK;
+        }
+        inertia = i == 0 ? first_inertia(w) : inertia * fmin(fmax(now / before, 0.2), 2);
+        before = now;
+        if (!(inertia > 0) || !equations_matrix(w->eq, u, inertia, w->F, w->A))
+            return LB_OK;
+        lb_status status = solve_all(w, 1e-14, &rank, err);
+        if (status != LB_OK)
+            return status == LB_E_NUMERIC ? LB_OK : status;
+        limit_step(w, u);
+        for (int j = 0; j < count; j++)
+            u[j] += w->step[j];
+    }
+    *is_near = true;
+    return LB_OK;
+}
+
+/* ---- Null directions ---------------------------------------------------------------------------- */
+
+/* What least squares cannot reach of a vector in general position: v minus the
+ * least-norm solution of A y = A v. */
+lb_status newton_null_direction(newton *w, const double *u, double *direction, lb_error *err)
+{
+    int rank, count = w->eq->count, rows = w->eq->rows;
+    if (!equations_matrix(w->eq, u, 0, w->F, w->A))
+        return status_raise(err, LB_E_FINITE, NULL, "the derivatives at a steady state are not finite");
+    for (int j = 0; j < count; j++)
+        direction[j] = 1 + 0.1 * sin(1 + 2.3 * j);
+    for (int i = 0; i < rows; i++) {
+        w->F[i] = 0;
+        for (int j = 0; j < count; j++)
+            w->F[i] -= w->A[i + (size_t)j * (size_t)rows] * direction[j];
+    }
+    lb_status status = solve_all(w, RANK_TOLERANCE, &rank, err);
+    if (status != LB_OK)
+        return status;
+    for (int j = 0; j < count; j++)
+        direction[j] -= w->step[j];
+    double length = norm2(count, direction);
+    for (int j = 0; j < count; j++)
+        direction[j] /= length > 0 ? length : 1;
+    return LB_OK;
+}
+

@@ -1,0 +1,365 @@
+/* Eigenvalues in the reaction space, with bounds on what rounding can do to them.
+ *
+ * The reduced Jacobian is balanced first (a diagonal scaling by powers of two,
+ * which changes no eigenvalue): species that live at 1e-9 and at 1 would else
+ * hide in each other's rounding.  The bound of an eigenvalue is its condition,
+ * |y||z|/|y'z| with its left and right vectors y and z, times the uncertainty of
+ * the matrix: rounding of the algorithm and of the entries, and the change that
+ * the uncertainty of the state itself makes, found by evaluating the Jacobian at
+ * a state moved by it.
+ *
+ * Sources: G. H. Golub and C. F. Van Loan, Matrix Computations, 4th ed. (2013),
+ * sections 7.2.2 and 7.5.7; E. E. Osborne, J. ACM 7 (1960) 338 (balancing).  What
+ * the kinds are called: a complex pair makes a focus, signs on both sides a saddle. */
+#include "analysis/stability.h"
+
+#include <float.h>
+#include <math.h>
+#include <string.h>
+
+#include "analysis/linalg.h"
+#include "base/memory.h"
+#include "base/status.h"
+
+enum { ROUTH_LIMIT = 8 };
+
+struct workspace {
+    int n, rank;
+    double *x;              /* [n] the state; zero for species set aside */
+    double *J;              /* [n*n] */
+    double *reduced;        /* [rank*rank] */
+    double *moved;          /* [rank*rank] at the state moved by its uncertainty */
+    double *scale;          /* [rank] of the balancing */
+    double *matrix;         /* [rank*rank] scratch */
+    double *vectors;        /* [rank*rank] right vectors, packed */
+    double *inverse;        /* [rank*rank] left vectors, packed: rows of the inverse */
+    double *bound;          /* [rank] of each eigenvalue */
+    double *f, *magnitude;  /* [n] */
+    int *pivot;             /* [rank] */
+};
+
+static void workspace_clear(struct workspace *w)
+{
+    memory_free(w->x);
+    memory_free(w->J);
+    memory_free(w->reduced);
+    memory_free(w->moved);
+    memory_free(w->scale);
+    memory_free(w->matrix);
+    memory_free(w->vectors);
+    memory_free(w->inverse);
+    memory_free(w->bound);
+    memory_free(w->f);
+    memory_free(w->magnitude);
+    memory_free(w->pivot);
+}
+
+static lb_status workspace_init(struct workspace *w, const lb_system *system, lb_error *err)
+{
+    size_t n = (size_t)system->n, rank = (size_t)system->rank;
+    memset(w, 0, sizeof *w);
+    w->n = system->n;
+    w->rank = system->rank;
+    w->x = memory_array(n, sizeof *w->x);
+    w->J = memory_array(n * n, sizeof *w->J);
+    w->reduced = memory_array(rank * rank, sizeof *w->reduced);
+    w->moved = memory_array(rank * rank, sizeof *w->moved);
+    w->scale = memory_array(rank, sizeof *w->scale);
+    w->matrix = memory_array(rank * rank, sizeof *w->matrix);
+    w->vectors = memory_array(rank * rank, sizeof *w->vectors);
+    w->inverse = memory_array(rank * rank, sizeof *w->inverse);
+    w->bound = memory_array(rank, sizeof *w->bound);
+    w->f = memory_array(n, sizeof *w->f);
+    w->magnitude = memory_array(n, sizeof *w->magnitude);
+    w->pivot = memory_array(rank, sizeof *w->pivot);
+    if (w->x && w->J && w->reduced && w->moved && w->scale && w->matrix && w->vectors && w->inverse && w->bound &&
+        w->f && w->magnitude && w->pivot)
+        return LB_OK;
+    workspace_clear(w);
+    return status_no_memory(err);
+}
+
+/* ---- The matrix ------------------------------------------------------------------------ */
+
+/* Powers of two that bring the sums of each row and column together. */
+static void find_balance(struct workspace *w)
+{
+    int rank = w->rank;
+    for (int i = 0; i < rank; i++)
+        w->scale[i] = 1;
+    bool changed = true;
+    for (int sweep = 0; changed && sweep < 100; sweep++) {
+        changed = false;
+        for (int i = 0; i < rank; i++) {
+            double row = 0, column = 0;
+            for (int j = 0; j < rank; j++) {
+                if (j == i)
+                    continue;
+                row += fabs(w->reduced[i + (size_t)j * (size_t)rank]) * w->scale[j] / w->scale[i];
+                column += fabs(w->reduced[j + (size_t)i * (size_t)rank]) * w->scale[i] / w->scale[j];
+            }
+            if (!(row > 0 && column > 0 && isfinite(row) && isfinite(column)))
+                continue;
+            double factor = exp2(round(log2(row / column) / 2));
+            if (factor != 1) {
+                w->scale[i] *= factor;
+                changed = true;
+            }
+        }
+    }
+}
+
+/* In place: inverse(S) A S. */
+static void apply_balance(const struct workspace *w, double *A)
+{
+    for (int j = 0; j < w->rank; j++)
+        for (int i = 0; i < w->rank; i++)
+            A[i + (size_t)j * (size_t)w->rank] *= w->scale[j] / w->scale[i];
+}
+
+static double frobenius(size_t count, const double *A)
+{
+    double sum = 0;
+    for (size_t i = 0; i < count; i++)
+        sum += A[i] * A[i];
+    return sqrt(sum);
+}
+
+/* Move the state by what the rounding of f leaves uncertain of it, to first
+ * order: the independent species by |inverse(A)| |eps magnitude|, estimated with
+ * one solve, the dependent ones along the laws.  False: the matrix is singular. */
+static bool move_state(struct workspace *w, const lb_system *system)
+{
+    int rank = w->rank, dependent = system->core - rank;
+    memcpy(w->matrix, w->reduced, (size_t)rank * (size_t)rank * sizeof *w->matrix);
+    if (!linalg_factor(rank, w->matrix, w->pivot))
+        return false;
+    double *step = w->bound;
+    for (int i = 0; i < rank; i++) {
+        int state = system->core_state[system->independent[i]];
+        double error = fabs(w->f[state]) + 4 * DBL_EPSILON * w->magnitude[state];
+        step[i] = (i % 2 ? -error : error) / w->scale[i];
+    }
+    linalg_solve(rank, w->matrix, w->pivot, 1, step);
+    for (int i = 0; i < rank; i++) {
+        double change = step[i] * w->scale[i];
+        if (!isfinite(change))
+            return false;
+        w->x[system->core_state[system->independent[i]]] += change;
+        for (int d = 0; d < dependent; d++)
+            w->x[system->core_state[system->dependent[d]]] -= system->elimination[d + (size_t)i * (size_t)dependent] * change;
+    }
+    return true;
+}
+
+/* Fills reduced (balanced), scale and the uncertainty of the matrix in norm. */
+static lb_status make_matrix(struct workspace *w, lb_evaluator *evaluator, const lb_steady_state *state,
+                             double *uncertainty, lb_error *err)
+{
+    const lb_system *system = evaluator_system(evaluator);
+    size_t size = (size_t)w->rank * (size_t)w->rank;
+    for (int i = 0; i < w->n; i++)
+        w->x[i] = system->core_index[i] < 0 ? 0 : state->x[i];
+    evaluator_rhs_scaled(evaluator, w->x, w->f, w->magnitude);
+    lb_jacobian(evaluator, w->x, w->J);
+    system_reduce(system, w->J, w->reduced);
+    find_balance(w);
+    apply_balance(w, w->reduced);
+    double norm = frobenius(size, w->reduced);
+    if (!isfinite(norm))
+        return status_raise(err, LB_E_FINITE, NULL, "the Jacobian at a steady state is not finite");
+    *uncertainty = 2 * (w->rank + 1) * DBL_EPSILON * norm;
+    if (!move_state(w, system))
+        return LB_OK;
+    lb_jacobian(evaluator, w->x, w->J);
+    system_reduce(system, w->J, w->moved);
+    apply_balance(w, w->moved);
+    for (size_t i = 0; i < size; i++)
+        w->moved[i] -= w->reduced[i];
+    double change = frobenius(size, w->moved);
+    if (isfinite(change))
+        *uncertainty += change;
+    return LB_OK;
+}
+
+/* ---- Eigenvalues and their bounds ---------------------------------------------------------- */
+
+/* |a|^2 + |b|^2 of packed columns; b is the next column when there is a pair. */
+static double column_square(const struct workspace *w, int column, int width)
+{
+    double sum = 0;
+    for (int c = column; c < column + width; c++)
+        for (int i = 0; i < w->rank; i++)
+            sum += w->vectors[i + (size_t)c * (size_t)w->rank] * w->vectors[i + (size_t)c * (size_t)w->rank];
+    return sum;
+}
+
+static double row_square(const struct workspace *w, int row, int width)
+{
+    double sum = 0;
+    for (int r = row; r < row + width; r++)
+        for (int j = 0; j < w->rank; j++)
+            sum += w->inverse[r + (size_t)j * (size_t)w->rank] * w->inverse[r + (size_t)j * (size_t)w->rank];
+    return sum;
+}
+
+/* With V = [re z, im z] packed, the rows a, b of inverse(V) give the left vector
+ * y = a - i b, and y z = 2: the condition is |y||z|/2 for a pair, |y||z| for a
+ * real eigenvalue. */
+static void find_bounds(struct workspace *w, const lb_complex *values, double uncertainty)
+{
+    int rank = w->rank;
+    size_t size = (size_t)rank * (size_t)rank;
+    memcpy(w->matrix, w->vectors, size * sizeof *w->matrix);
+    memset(w->inverse, 0, size * sizeof *w->inverse);
+    for (int i = 0; i < rank; i++)
+        w->inverse[i + (size_t)i * (size_t)rank] = 1;
+    bool is_regular = linalg_factor(rank, w->matrix, w->pivot);
+    if (is_regular)
+        linalg_solve(rank, w->matrix, w->pivot, rank, w->inverse);
+    for (int i = 0; i < rank;) {
+        int width = values[i].im != 0 && i + 1 < rank ? 2 : 1;
+        double condition = sqrt(column_square(w, i, width) * row_square(w, i, width)) / width;
+        if (!is_regular || !isfinite(condition))
+            condition = 1 / sqrt(DBL_EPSILON);
+        for (int c = 0; c < width; c++)
+            w->bound[i + c] = condition * uncertainty;
+        i += width;
+    }
+}
+
+/* ---- Words ------------------------------------------------------------------------------------ */
+
+const char *lb_kind_text(lb_kind kind)
+{
+    switch (kind) {
+    case LB_STABLE_NODE:
+        return "stable node";
+    case LB_STABLE_FOCUS:
+        return "stable focus";
+    case LB_UNSTABLE_NODE:
+        return "unstable node";
+    case LB_UNSTABLE_FOCUS:
+        return "unstable focus";
+    case LB_SADDLE:
+        return "saddle";
+    case LB_SADDLE_FOCUS:
+        return "saddle-focus";
+    case LB_CENTRE:
+        return "centre";
+    case LB_KIND_UNDECIDED:
+        return "undecided";
+    case LB_KIND_FIXED:
+        break;
+    }
+    return "fixed by conservation";
+}
+
+struct signs {
+    int positive, negative, undecided;
+    bool has_pair;          /* with an imaginary part beyond its bound */
+    double error;           /* the bound of the eigenvalue that decides */
+};
+
+static struct signs count_signs(const struct workspace *w, const lb_complex *values)
+{
+    struct signs s = {0};
+    for (int i = 0; i < w->rank; i++) {
+        if (fabs(values[i].re) <= w->bound[i])
+            s.undecided++;
+        else if (values[i].re > 0)
+            s.positive++;
+        else
+            s.negative++;
+        if (fabs(values[i].im) > w->bound[i])
+            s.has_pair = true;
+        s.error = fmax(s.error, w->bound[i]);
+    }
+    return s;
+}
+
+static void name_state(lb_steady_state *state, int rank, const struct signs *s)
+{
+    if (rank == 0) {
+        state->kind = LB_KIND_FIXED;
+        state->stable = LB_YES;
+        return;
+    }
+    state->stable = s->positive > 0 ? LB_NO : s->undecided > 0 ? LB_UNDECIDED : LB_YES;
+    if (rank == 2 && s->undecided == 2 && s->has_pair)
+        state->kind = LB_CENTRE;
+    else if (s->positive > 0 && s->negative > 0)
+        state->kind = s->has_pair ? LB_SADDLE_FOCUS : LB_SADDLE;
+    else if (s->undecided > 0)
+        state->kind = LB_KIND_UNDECIDED;
+    else if (s->positive > 0)
+        state->kind = s->has_pair ? LB_UNSTABLE_FOCUS : LB_UNSTABLE_NODE;
+    else
+        state->kind = s->has_pair ? LB_STABLE_FOCUS : LB_STABLE_NODE;
+}
+
+static lb_mode mode_of(lb_complex value)
+{
+    const double two_pi = 6.283185307179586477;
+    lb_mode mode = {.eigenvalue = value, .time = 1 / fabs(value.re)};
+    if (value.im != 0) {
+        mode.period = two_pi / value.im;
+        mode.damping = exp(two_pi * value.re / value.im);
+    }
+    return mode;
+}
+
+/* Slowest first; equal times keep the order of the eigenvalues. */
+static void fill_modes(lb_steady_state *state, int rank)
+{
+    state->mode_count = 0;
+    for (int i = 0; i < rank; i++) {
+        if (state->eigenvalues[i].im < 0)
+            continue;
+        lb_mode mode = mode_of(state->eigenvalues[i]);
+        int place = state->mode_count++;
+        for (; place > 0 && state->modes[place - 1].time < mode.time; place--)
+            state->modes[place] = state->modes[place - 1];
+        state->modes[place] = mode;
+    }
+}
+
+/* The Routh array must see as many unstable roots, where all signs are decided. */
+static bool routh_agrees(struct workspace *w, const struct signs *s)
+{
+    if (w->rank == 0 || w->rank > ROUTH_LIMIT || s->undecided > 0)
+        return true;
+    memcpy(w->matrix, w->reduced, (size_t)w->rank * (size_t)w->rank * sizeof *w->matrix);
+    int unstable = linalg_routh_unstable(w->rank, w->matrix);
+    return unstable < 0 || unstable == s->positive;
+}
+
+lb_status stability_classify(lb_evaluator *evaluator, lb_steady_state *state, lb_error *err)
+{
+    const lb_system *system = evaluator_system(evaluator);
+    struct workspace w;
+    double uncertainty = 0;
+    lb_status status = workspace_init(&w, system, err);
+    if (status != LB_OK)
+        return status;
+    state->eigenvalues = memory_array((size_t)w.rank, sizeof *state->eigenvalues);
+    state->modes = memory_array((size_t)w.rank, sizeof *state->modes);
+    if (!state->eigenvalues || !state->modes)
+        status = status_no_memory(err);
+    if (status == LB_OK)
+        status = make_matrix(&w, evaluator, state, &uncertainty, err);
+    if (status == LB_OK) {
+        memcpy(w.matrix, w.reduced, (size_t)w.rank * (size_t)w.rank * sizeof *w.matrix);
+        status = linalg_eigenvalues(w.rank, w.matrix, state->eigenvalues, w.vectors, err);
+    }
+    if (status == LB_OK) {
+        find_bounds(&w, state->eigenvalues, uncertainty);
+        struct signs signs = count_signs(&w, state->eigenvalues);
+        state->real_part_error = signs.error;
+        name_state(state, w.rank, &signs);
+        fill_modes(state, w.rank);
+        state->routh_hurwitz_agrees = routh_agrees(&w, &signs);
+    }
+    workspace_clear(&w);
+    return status;
+}
