@@ -210,6 +210,8 @@ static expression build_add(expression_graph *g, expression a, expression b)
         return expression_binary(g, EXPRESSION_SUBTRACT, a, expression_number(g, -g->nodes[b].value));
     if (is_negated(g, a))
         return expression_binary(g, EXPRESSION_SUBTRACT, b, g->nodes[a].left);
+    if (is_negative_number(g, a))
+        return expression_binary(g, EXPRESSION_SUBTRACT, b, expression_number(g, -g->nodes[a].value));
     return intern_operation(g, EXPRESSION_ADD, a, b);
 }
 

@@ -109,5 +109,10 @@ void expression_write_number(double value, buffer *out);
 #define EXPRESSION_TEXT_NODES 100000
 typedef const char *expression_namer(const void *context, expression_kind leaf, int index);
 void expression_write(const expression_graph *g, expression e, expression_namer *name, const void *context, buffer *out);
+/* The same with names for whole subexpressions: alias(context, e) gives the name of a
+ * node or NULL; it is asked for the root too unless `expand`. */
+typedef const char *expression_aliaser(const void *context, expression e);
+void expression_write_aliased(const expression_graph *g, expression e, expression_namer *name, expression_aliaser *alias,
+                              bool expand, const void *context, buffer *out);
 
 #endif

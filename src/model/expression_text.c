@@ -62,6 +62,7 @@ typedef struct item {
 typedef struct writer {
     const expression_graph *g;
     expression_namer *name;
+    expression_aliaser *alias; /* may be NULL */
     const void *context;
     item *stack;
     size_t depth, capacity;
@@ -78,8 +79,14 @@ static void push_text(writer *w, const char *text)
     w->stack[w->depth++] = (item){.text = text, .node = EXPRESSION_NONE};
 }
 
+/* A name for the whole operand needs no parentheses. */
 static void push_node(writer *w, expression e, bool parentheses)
 {
+    const char *alias = w->alias ? w->alias(w->context, e) : NULL;
+    if (alias) {
+        push_text(w, alias);
+        return;
+    }
     if (parentheses)
         push_text(w, ")");
     push_text(w, NULL);
@@ -151,11 +158,13 @@ static void write_node(writer *w, const expression_node *node)
     }
 }
 
-void expression_write(const expression_graph *g, expression e, expression_namer *name, const void *context, buffer *out)
+void expression_write_aliased(const expression_graph *g, expression e, expression_namer *name, expression_aliaser *alias,
+                              bool expand, const void *context, buffer *out)
 {
-    writer w = {.g = g, .name = name, .context = context, .out = out};
+    writer w = {.g = g, .name = name, .alias = expand ? NULL : alias, .context = context, .out = out};
     size_t written = 0;
     push_operand(&w, e, 0);
+    w.alias = alias;
     while (w.depth > 0 && !w.failed) {
         item top = w.stack[--w.depth];
         if (top.text)
@@ -168,4 +177,9 @@ void expression_write(const expression_graph *g, expression e, expression_namer 
     if (w.failed)
         out->status = LB_E_NOMEM;
     memory_free(w.stack);
+}
+
+void expression_write(const expression_graph *g, expression e, expression_namer *name, const void *context, buffer *out)
+{
+    expression_write_aliased(g, e, name, NULL, true, context, out);
 }

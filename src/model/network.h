@@ -27,6 +27,7 @@ typedef struct network_species {
     char *name;
     network_role role;
     int state;                  /* row, or -1 when held */
+    char *bracket;              /* "[X]": its concentration, as the file writes it */
     bool is_signed, is_retained;
     bool has_initial;           /* the file says so */
     expression initial;         /* of constants alone; dynamic: never EXPRESSION_NONE */
@@ -37,6 +38,7 @@ typedef struct network_species {
     double initial_low, initial_high;
     char *formula;              /* as written, or NULL */
     int line;
+    int place[2];               /* builder: where it stands among the terms last added to a side */
 } network_species;
 
 typedef enum network_constant_kind {
@@ -91,7 +93,8 @@ typedef struct network_step {
     network_direction direction;
     bool is_power_law;          /* v = factor * prod x^order: mass action and recognised power laws, and flows */
     bool is_mass_action;        /* the orders are the reactant coefficients of the dynamic species */
-    expression factor;          /* of constants alone; power laws only */
+    expression factor;          /* of constants alone; power laws only: rate constant times held concentrations */
+    expression rate_constant;   /* of a step by network_add_mass_action; else EXPRESSION_NONE */
     network_order *orders;      /* [order_count], by state, no zero orders */
     int order_count;
     expression rate;            /* the whole rate: always there */
@@ -126,15 +129,41 @@ struct lb_network {
     expression residence;           /* EXPRESSION_NONE without a tank */
     bool is_open;                   /* tank, held species, sources or sinks */
     char *source;                   /* text of the file, for witnesses; may be NULL */
+    int *definition_of;             /* [graph.count] of a node: its derived constant, or derived_count + its reading,
+                                     * or -1; NULL when there are no definitions */
 };
 
 /* Name of a leaf as the file writes it, for expression_write (context: the network). */
 const char *network_leaf_name(const void *network, expression_kind leaf, int index);
 
+/* Append the text of an expression of the network (expression_write), with the names
+ * of derived constants and readings in place of what they stand for; `expand`: the
+ * expression itself is written out even when it has a name. */
+void network_write(const lb_network *net, expression e, bool expand, buffer *out);
+
+/* A species' name in a reaction: quoted when it is no plain name. */
+void network_write_name(const char *name, buffer *out);
+
+/* The states on which the rate of a step depends, ascending: *states (the caller's, to
+ * memory_free), *count.  LB_OK or LB_E_NOMEM. */
+lb_status network_rate_states(const lb_network *net, int step, int **states, int *count);
+
+/* Pattern of the Jacobian in compressed columns: entry (i, j) is there when a step that
+ * changes state i has a rate that depends on state j.  column_start [n+1], rows ascending
+ * in each column; the caller's, to memory_free.  LB_OK, LB_E_NOMEM or LB_E_LIMIT (more
+ * than INT_MAX entries); on failure both are NULL. */
+lb_status network_pattern(const lb_network *net, int **column_start, int **row);
+
 /* ---- Builder, used by lower.c and by tests ------------------------------- */
 
-/* An empty network; NULL without memory.  All arrays are grown with memory_grow
- * semantics by the functions below; on LB_E_NOMEM the network is still freeable. */
+/* An empty network; NULL without memory.  Arrays grow by doubling, whenever the count
+ * is a power of two, so counts must be changed only by the functions below; without
+ * memory the network is still freeable (lb_network_free, which is network.c's).
+ *
+ * The order is: constants and species (with `held` of the held ones set, and `feed` and
+ * is_retained before the tank), then each reaction with its terms and at once its steps,
+ * then the tank, then network_finish.  file, title, source and whatever else has no
+ * function here is set directly, as memory_text copies; file and title are "" at first. */
 lb_network *network_new(void);
 
 /* Each returns the index, or -1 without memory.  Strings are copied. */
@@ -142,16 +171,19 @@ int network_add_species(lb_network *net, const char *name, network_role role);
 int network_add_constant(lb_network *net, const char *name, network_constant_kind kind, double value);
 int network_add_definition(lb_network *net, bool is_reading, const char *name, expression value);
 int network_add_reaction(lb_network *net, const char *label, bool is_reversible);
-/* Term on a side of a reaction; merged with one of the same species. */
+/* Term on a side of a reaction; merged with one of the same species.  A coefficient that
+ * is a NUMBER is stored as num/den when a fraction with small terms is that very double. */
 int network_add_term(lb_network *net, int reaction, bool is_product, int species,
                      int64_t num, int64_t den, expression coefficient);
-/* A step with the whole rate given as an expression.  Recognises products of
+/* The steps.  Each returns the index, or -1 without memory.
+ * A step with the whole rate given as an expression.  Recognises products of
  * powers (literal orders) as power laws; fills entries from the reaction's terms
  * (signs turned for the reverse). */
 int network_add_step(lb_network *net, int reaction, network_direction direction, expression rate);
-/* Mass action: rate = k * prod [S]^coefficient over the side that is used up. */
+/* Mass action: rate = k * prod [S]^coefficient over the side that is used up, held species
+ * first.  A power law unless a coefficient there is an expression. */
 int network_add_mass_action(lb_network *net, int reaction, network_direction direction, expression k);
-/* After all reactions: residence makes it a tank and adds the flow steps. */
+/* After all reactions: residence makes it a tank and adds the flow steps.  0, or -1. */
 int network_set_tank(lb_network *net, expression residence);
 /* Fill texts (equations, rates), default values, is_open.  LB_OK or LB_E_NOMEM. */
 lb_status network_finish(lb_network *net);
