@@ -21,6 +21,10 @@ LIBS    = -lgsl -llapacke -llapack -lblas -lflint -lmpfr -lgmp -ljansson -lm -pt
 PACKAGES = gcc make pkg-config flex bison libgsl-dev liblapacke-dev liblapack-dev libblas-dev \
            libflint-dev libgmp-dev libmpfr-dev libjansson-dev check
 
+# `make V=1` shows the commands.
+Q   = $(if $(V),,@)
+say = @$(if $(V),true,printf '  %-8s %s\n' '$(1)' '$(2)')
+
 LIBRARY_SOURCES = $(sort $(wildcard src/base/*.c src/text/*.c src/model/*.c src/exact/*.c \
                     src/system/*.c src/emit/*.c src/analysis/*.c src/output/*.c))
 CLI_SOURCES     = $(sort $(wildcard src/cli/*.c))
@@ -36,29 +40,36 @@ TEST_OBJECTS    = $(TEST_SOURCES:%.c=$(BUILD)/%.o)
 all: $(BUILD)/limbeck $(BUILD)/liblimbeck.so
 
 $(BUILD)/limbeck: $(CLI_OBJECTS) $(BUILD)/liblimbeck.a
-	$(CC) $(ALL_CFLAGS) $(LDFLAGS) -o $@ $(CLI_OBJECTS) $(BUILD)/liblimbeck.a $(LIBS)
+	$(call say,link,$@)
+	$(Q)$(CC) $(ALL_CFLAGS) $(LDFLAGS) -o $@ $(CLI_OBJECTS) $(BUILD)/liblimbeck.a $(LIBS)
 
 $(BUILD)/liblimbeck.a: $(LIBRARY_OBJECTS)
-	rm -f $@ && $(AR) rcs $@ $(LIBRARY_OBJECTS)
+	$(call say,archive,$@)
+	$(Q)rm -f $@ && $(AR) rcs $@ $(LIBRARY_OBJECTS)
 
 $(BUILD)/liblimbeck.so: $(LIBRARY_OBJECTS)
-	$(CC) $(ALL_CFLAGS) $(LDFLAGS) -shared -Wl,-soname,liblimbeck.so.0 -o $@ $(LIBRARY_OBJECTS) $(LIBS)
+	$(call say,link,$@)
+	$(Q)$(CC) $(ALL_CFLAGS) $(LDFLAGS) -shared -Wl,-soname,liblimbeck.so.0 -o $@ $(LIBRARY_OBJECTS) $(LIBS)
 
 $(BUILD)/%.o: %.c
 	@mkdir -p $(@D)
-	$(CC) $(ALL_CFLAGS) $(WARN) -MMD -MP -c -o $@ $<
+	$(call say,compile,$<)
+	$(Q)$(CC) $(ALL_CFLAGS) $(WARN) -MMD -MP -c -o $@ $<
 
 # flex and bison write both files at once; their code is built under softer warnings.
 $(BUILD)/grammar/parser.c $(BUILD)/grammar/parser.h &: grammar/mechanism.y
 	@mkdir -p $(@D)
-	bison -Wall -Werror -o $(BUILD)/grammar/parser.c --defines=$(BUILD)/grammar/parser.h $<
+	$(call say,bison,$<)
+	$(Q)bison -Wall -Werror -o $(BUILD)/grammar/parser.c --defines=$(BUILD)/grammar/parser.h $<
 
 $(BUILD)/grammar/lexer.c $(BUILD)/grammar/lexer.h &: grammar/mechanism.l
 	@mkdir -p $(@D)
-	flex -o $(BUILD)/grammar/lexer.c --header-file=$(BUILD)/grammar/lexer.h $<
+	$(call say,flex,$<)
+	$(Q)flex -o $(BUILD)/grammar/lexer.c --header-file=$(BUILD)/grammar/lexer.h $<
 
 $(BUILD)/grammar/%.o: $(BUILD)/grammar/%.c $(BUILD)/grammar/parser.h $(BUILD)/grammar/lexer.h
-	$(CC) $(ALL_CFLAGS) -Wall -Wno-unused-function -MMD -MP -c -o $@ $<
+	$(call say,compile,$<)
+	$(Q)$(CC) $(ALL_CFLAGS) -Wall -Wno-unused-function -MMD -MP -c -o $@ $<
 
 $(LIBRARY_OBJECTS) $(TEST_OBJECTS): | $(BUILD)/grammar/parser.h $(BUILD)/grammar/lexer.h
 
@@ -66,13 +77,14 @@ $(LIBRARY_OBJECTS) $(TEST_OBJECTS): | $(BUILD)/grammar/parser.h $(BUILD)/grammar
 
 $(BUILD)/tests/suites.h: $(wildcard tests/check_*.c)
 	@mkdir -p $(@D)
-	for s in $(SUITES); do echo "SUITE($$s)"; done > $@
+	$(Q)for s in $(SUITES); do echo "SUITE($$s)"; done > $@
 
 $(BUILD)/tests/main.o: $(BUILD)/tests/suites.h
 $(BUILD)/tests/%.o: ALL_CFLAGS += -Itests -I$(BUILD)/tests
 
 $(BUILD)/tests/run: $(TEST_OBJECTS) $(BUILD)/liblimbeck.a
-	$(CC) $(ALL_CFLAGS) $(LDFLAGS) -o $@ $(TEST_OBJECTS) $(BUILD)/liblimbeck.a $(shell pkg-config --libs check) $(LIBS)
+	$(call say,link,$@)
+	$(Q)$(CC) $(ALL_CFLAGS) $(LDFLAGS) -o $@ $(TEST_OBJECTS) $(BUILD)/liblimbeck.a $(shell pkg-config --libs check) $(LIBS)
 
 # ---- what people type ------------------------------------------------------
 
@@ -128,7 +140,8 @@ bench: deps
 	$(BUILD)/tests/bench/bench $(BUILD)
 
 $(BUILD)/tests/bench/bench: $(BUILD)/tests/bench/bench.o $(BUILD)/liblimbeck.a
-	$(CC) $(ALL_CFLAGS) $(LDFLAGS) -o $@ $^ $(LIBS) -ldl
+	$(call say,link,$@)
+	$(Q)$(CC) $(ALL_CFLAGS) $(LDFLAGS) -o $@ $^ $(LIBS) -ldl
 
 SECONDS ?= 600
 fuzz: deps
