@@ -409,22 +409,15 @@ static void ratio_row(const equations *eq, int i, double *A)
     }
 }
 
-/* Plain balances: unscaled rows of the Jacobian and their sizes. */
-static void plain_rows(equations *eq, bool is_all, double *A)
+/* Plain balances: unscaled rows of the Jacobian in u. */
+static void plain_rows(const equations *eq, bool is_all, double *A)
 {
-    lb_jacobian_sparse(eq->evaluator, eq->x, eq->jacobian);
-    for (int j = 0; j < eq->count; j++) {
-        int state = eq->state[j];
-        double slope = slope_of(eq, j);
-        double reach = eq->is_signed[j] ? fmax(eq->unit[j], fabs(eq->x[state])) : slope;
-        for (int p = eq->system->column_start[state]; p < eq->system->column_start[state + 1]; p++) {
+    for (int j = 0; j < eq->count; j++)
+        for (int p = eq->system->column_start[eq->state[j]]; p < eq->system->column_start[eq->state[j] + 1]; p++) {
             int i = eq->unknown[eq->system->row[p]];
-            if (i < 0 || (eq->is_ratio[i] && !is_all))
-                continue;
-            A[i + (size_t)j * (size_t)eq->rows] = eq->jacobian[p] * slope;
-            eq->size[i] += fabs(eq->jacobian[p]) * reach;
+            if (i >= 0 && (is_all || !eq->is_ratio[i]))
+                A[i + (size_t)j * (size_t)eq->rows] = eq->jacobian[p] * slope_of(eq, j);
         }
-    }
 }
 
 static void start_sizes(equations *eq)
@@ -433,6 +426,18 @@ static void start_sizes(equations *eq)
         double gain, loss;
         gain_and_loss(eq, i, &gain, &loss);
         eq->size[i] = gain + loss;
+    }
+}
+
+/* Terms that cancel inside one rate law show in its derivatives. */
+static void add_reaches(equations *eq)
+{
+    for (int j = 0; j < eq->count; j++) {
+        int state = eq->state[j];
+        double reach = eq->is_signed[j] ? fmax(eq->unit[j], fabs(eq->x[state])) : eq->x[state];
+        for (int p = eq->system->column_start[state]; p < eq->system->column_start[state + 1]; p++)
+            if (eq->unknown[eq->system->row[p]] >= 0)
+                eq->size[eq->unknown[eq->system->row[p]]] += fabs(eq->jacobian[p]) * reach;
     }
 }
 
@@ -468,8 +473,11 @@ bool equations_matrix(equations *eq, const double *u, double inertia, double *F,
     evaluator_step_rates(eq->evaluator, eq->x, eq->rate);
     memset(A, 0, (size_t)eq->rows * (size_t)eq->count * sizeof *A);
     start_sizes(eq);
-    if (eq->is_general || is_plain)
+    if (eq->is_general || is_plain) {
+        lb_jacobian_sparse(eq->evaluator, eq->x, eq->jacobian);
+        add_reaches(eq);
         plain_rows(eq, is_plain, A);
+    }
     for (int i = 0; i < eq->count && !is_plain; i++)
         if (eq->is_ratio[i])
             ratio_row(eq, i, A);
@@ -485,4 +493,18 @@ double equations_residual(const equations *eq, const double *F)
     for (int row = 0; row < eq->rows; row++)
         residual = fmax(residual, fabs(F[row]));
     return residual;
+}
+
+double equations_balance_error(equations *eq, const double *u)
+{
+    double error = 0;
+    equations_place(eq, u);
+    evaluator_step_rates(eq->evaluator, eq->x, eq->rate);
+    lb_jacobian_sparse(eq->evaluator, eq->x, eq->jacobian);
+    start_sizes(eq);
+    add_reaches(eq);
+    for (int i = 0; i < eq->count; i++)
+        if (eq->size[i] > 0)
+            error = fmax(error, fabs(balance_value(eq, i, true)));
+    return error;
 }

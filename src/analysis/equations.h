@@ -83,8 +83,10 @@ bool equations_values(equations *eq, const double *u, double *F);
  * balances plain. */
 bool equations_matrix(equations *eq, const double *u, double inertia, double *F, double *A);
 
-/* max_i |f_i| / (sum of the magnitudes of its terms), laws included, after
- * equations_matrix at the same u. */
+/* The largest of |F| [rows]. */
 double equations_residual(const equations *eq, const double *F);
+
+/* max_i |f_i| / size_i at u, with the sizes of all balances in the plain form. */
+double equations_balance_error(equations *eq, const double *u);
 
 #endif

@@ -28,6 +28,7 @@ static const double STEP_LIMIT = 5;             /* e^5: two decades */
 static const double RESIDUAL_TOLERANCE = 1e-11; /* a root, before polishing */
 static const double STEP_TOLERANCE = 1e-3;      /* and well placed: not on its way to zero or infinity */
 static const double RANK_TOLERANCE = 1e-10;
+static const double FAR = 100;                  /* e^-100 = 4e-44: on the way to zero or infinity */
 
 /* ---- Workspace -------------------------------------------------------------------- */
 
@@ -172,6 +173,14 @@ static double deflated_factor(const newton *w, const double *u, double *const *k
     return fabs(1 - slope) > 1e-8 ? 1 / (1 - slope) : 1e8;
 }
 
+static bool is_far(const newton *w, const double *u)
+{
+    for (int i = 0; i < w->eq->count; i++)
+        if (!w->eq->is_signed[i] && fabs(u[i]) > FAR)
+            return true;
+    return false;
+}
+
 /* ---- The iteration ------------------------------------------------------------------------ */
 
 static double reach(const equations *eq, const double *u, int i)
@@ -260,7 +269,7 @@ lb_status newton_solve(newton *w, double *u, double *const *known, int known_cou
         for (int j = 0; j < eq->count; j++)
             w->step[j] *= factor;
         limit_step(w, u);
-        if (!line_search(w, u, known, known_count))
+        if (!line_search(w, u, known, known_count) || is_far(w, u))
             return LB_OK;
     }
     return LB_OK;

@@ -125,29 +125,40 @@ static double frobenius(size_t count, const double *A)
     return sqrt(sum);
 }
 
-/* Move the state by what the rounding of f leaves uncertain of it, to first
- * order: the independent species by |inverse(A)| |eps magnitude|, estimated with
- * one solve, the dependent ones along the laws.  False: the matrix is singular. */
+/* Rounding of f_i: of its terms, and of what cancels inside a rate law. */
+static double balance_error(const struct workspace *w, int i)
+{
+    double size = w->magnitude[i];
+    for (int j = 0; j < w->n; j++)
+        size += fabs(w->J[i + (size_t)j * (size_t)w->n] * w->x[j]);
+    return fabs(w->f[i]) + 2 * DBL_EPSILON * size;
+}
+
+/* Move the state by what rounding and the residual leave uncertain of it, to
+ * first order: independent species by |inverse(A)| |error of f|, the dependent
+ * ones along the laws.  False: the matrix is singular. */
 static bool move_state(struct workspace *w, const lb_system *system)
 {
     int rank = w->rank, dependent = system->core - rank;
-    memcpy(w->matrix, w->reduced, (size_t)rank * (size_t)rank * sizeof *w->matrix);
+    size_t size = (size_t)rank * (size_t)rank;
+    memcpy(w->matrix, w->reduced, size * sizeof *w->matrix);
+    memset(w->inverse, 0, size * sizeof *w->inverse);
+    for (int i = 0; i < rank; i++)
+        w->inverse[i + (size_t)i * (size_t)rank] =
+            balance_error(w, system->core_state[system->independent[i]]) / w->scale[i];
     if (!linalg_factor(rank, w->matrix, w->pivot))
         return false;
-    double *step = w->bound;
+    linalg_solve(rank, w->matrix, w->pivot, rank, w->inverse);
     for (int i = 0; i < rank; i++) {
-        int state = system->core_state[system->independent[i]];
-        double error = fabs(w->f[state]) + 4 * DBL_EPSILON * w->magnitude[state];
-        step[i] = (i % 2 ? -error : error) / w->scale[i];
-    }
-    linalg_solve(rank, w->matrix, w->pivot, 1, step);
-    for (int i = 0; i < rank; i++) {
-        double change = step[i] * w->scale[i];
+        double change = 0;
+        for (int j = 0; j < rank; j++)
+            change += fabs(w->inverse[i + (size_t)j * (size_t)rank]) * w->scale[i];
         if (!isfinite(change))
             return false;
         w->x[system->core_state[system->independent[i]]] += change;
         for (int d = 0; d < dependent; d++)
-            w->x[system->core_state[system->dependent[d]]] -= system->elimination[d + (size_t)i * (size_t)dependent] * change;
+            w->x[system->core_state[system->dependent[d]]] -=
+                system->elimination[d + (size_t)i * (size_t)dependent] * change;
     }
     return true;
 }
@@ -258,12 +269,13 @@ const char *lb_kind_text(lb_kind kind)
 struct signs {
     int positive, negative, undecided;
     bool has_pair;          /* with an imaginary part beyond its bound */
-    double error;           /* the bound of the eigenvalue that decides */
+    double error;           /* bound of the eigenvalue whose sign is the least certain */
 };
 
 static struct signs count_signs(const struct workspace *w, const lb_complex *values)
 {
     struct signs s = {0};
+    double least = INFINITY;
     for (int i = 0; i < w->rank; i++) {
         if (fabs(values[i].re) <= w->bound[i])
             s.undecided++;
@@ -273,7 +285,10 @@ static struct signs count_signs(const struct workspace *w, const lb_complex *val
             s.negative++;
         if (fabs(values[i].im) > w->bound[i])
             s.has_pair = true;
-        s.error = fmax(s.error, w->bound[i]);
+        if (fabs(values[i].re) / w->bound[i] < least) {
+            least = fabs(values[i].re) / w->bound[i];
+            s.error = w->bound[i];
+        }
     }
     return s;
 }

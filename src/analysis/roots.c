@@ -1,0 +1,178 @@
+/* Multistart search for the roots of the steady-state equations.
+ *
+ * Newton's method from low-discrepancy starts, then from more starts with the
+ * roots found so far divided out, which reaches roots with small basins.  Starts
+ * that fail are relaxed by pseudo-transient continuation, the first few of them.
+ * A root is new when it is further from each known one than their errors.
+ *
+ * A root with singular derivatives may be isolated (a fold) or one point of a
+ * continuum.  That is decided by going along the null direction and solving
+ * again: in a continuum the solution stays away and is singular too. */
+#include "analysis/roots.h"
+
+#include <math.h>
+#include <string.h>
+
+#include "analysis/newton.h"
+#include "analysis/starts.h"
+#include "base/memory.h"
+#include "base/status.h"
+
+enum { MOST_RELAXED = 6 };
+
+static const double CONTINUUM_STEP = 0.2;
+
+struct search {
+    equations *eq;
+    newton newton;
+    starts starts;
+    const roots_options *options;
+    roots *out;
+    double *u, *walked;     /* [count] */
+    int relaxed;
+    lb_error *err;
+};
+
+void roots_clear(roots *r)
+{
+    for (int i = 0; i < r->count; i++)
+        memory_free(r->u[i]);
+    memory_free(r->u);
+    *r = (roots){0};
+}
+
+/* ---- Keeping roots ------------------------------------------------------------------ */
+
+/* In the unknowns: relative for what is unsigned. */
+static double distance(const equations *eq, const double *a, const double *b)
+{
+    double largest = 0;
+    for (int i = 0; i < eq->count; i++) {
+        double scale = eq->is_signed[i] ? 1 + fabs(b[i]) : 1;
+        largest = fmax(largest, fabs(a[i] - b[i]) / scale);
+    }
+    return largest;
+}
+
+static bool is_known(const struct search *s, const double *u, double tolerance)
+{
+    for (int i = 0; i < s->out->count; i++)
+        if (distance(s->eq, u, s->out->u[i]) <= tolerance)
+            return true;
+    return false;
+}
+
+static lb_status keep(struct search *s, const double *u)
+{
+    roots *out = s->out;
+    size_t bytes = (size_t)s->eq->count * sizeof *u;
+    double *copy = memory_alloc(bytes);
+    if (!copy)
+        return status_no_memory(s->err);
+    if (memory_grow(&out->u, &out->capacity, (size_t)out->count, sizeof *out->u) != 0) {
+        memory_free(copy);
+        return status_no_memory(s->err);
+    }
+    memcpy(copy, u, bytes);
+    for (int i = 0; i < s->eq->count; i++)
+        if (s->eq->is_signed[i] && fabs(copy[i]) < 1e-14)
+            copy[i] = 0;    /* zero to rounding of the unit */
+    out->u[out->count++] = copy;
+    return LB_OK;
+}
+
+/* Is the singular root u one point of a continuum? */
+static lb_status test_continuum(struct search *s, const double *u, bool *is_continuum)
+{
+    newton_report report;
+    *is_continuum = false;
+    lb_status status = newton_null_direction(&s->newton, u, s->walked, s->err);
+    if (status != LB_OK)
+        return status == LB_E_NUMERIC || status == LB_E_FINITE ? LB_OK : status;
+    for (int i = 0; i < s->eq->count; i++)
+        s->walked[i] = u[i] + CONTINUUM_STEP * s->walked[i];
+    status = newton_solve(&s->newton, s->walked, NULL, 0, &report, s->err);
+    if (status == LB_OK && report.converged && report.rank < s->eq->count)
+        *is_continuum = distance(s->eq, s->walked, u) > CONTINUUM_STEP / 10 / sqrt(s->eq->count);
+    return status;
+}
+
+static lb_status take_root(struct search *s, const double *u, const newton_report *report)
+{
+    bool is_singular = report->rank < s->eq->count, is_continuum = false;
+    double tolerance = is_singular ? 1e-3 : fmax(1e-6, 100 * report->step);
+    s->out->converged++;
+    if (is_known(s, u, tolerance) || (is_singular && s->out->continuum > 0))
+        return LB_OK;
+    lb_status status = is_singular ? test_continuum(s, u, &is_continuum) : LB_OK;
+    if (status != LB_OK)
+        return status;
+    if (is_continuum)
+        s->out->continuum = s->eq->count - report->rank;
+    return keep(s, u);
+}
+
+/* ---- Starts --------------------------------------------------------------------------- */
+
+static lb_status try_start(struct search *s, uint64_t i, bool is_deflated)
+{
+    newton_report report;
+    int known = is_deflated ? s->out->count : 0;
+    starts_point(&s->starts, i, s->u);
+    s->out->starts++;
+    lb_status status = newton_solve(&s->newton, s->u, s->out->u, known, &report, s->err);
+    if (status == LB_OK && !report.converged && !is_deflated && s->relaxed < MOST_RELAXED) {
+        bool is_near = false;
+        s->relaxed++;
+        starts_point(&s->starts, i, s->u);
+        status = newton_relax(&s->newton, s->u, &is_near, s->err);
+        if (status == LB_OK && is_near)
+            status = newton_solve(&s->newton, s->u, NULL, 0, &report, s->err);
+    }
+    return status == LB_OK && report.converged ? take_root(s, s->u, &report) : status;
+}
+
+static bool must_stop(struct search *s)
+{
+    const lb_monitor *monitor = s->options->monitor;
+    if (monitor && monitor->stop && monitor->stop(monitor->context))
+        s->out->interrupted = true;
+    return s->out->interrupted;
+}
+
+static lb_status run_starts(struct search *s)
+{
+    size_t plain = s->options->starts, all = plain + plain / 2;
+    lb_status status = LB_OK;
+    for (size_t i = 0; status == LB_OK && i < all && !must_stop(s); i++)
+        if (i < plain || s->out->count > 0)
+            status = try_start(s, i, i >= plain);
+    return status;
+}
+
+lb_status roots_find(equations *eq, const roots_options *options, roots *out, lb_error *err)
+{
+    *out = (roots){0};
+    if (eq->is_inconsistent || eq->is_unbalanced)
+        return LB_OK;
+    struct search s = {.eq = eq, .options = options, .out = out, .err = err};
+    s.u = memory_array((size_t)eq->count, sizeof *s.u);
+    s.walked = memory_array((size_t)eq->count, sizeof *s.walked);
+    lb_status status = s.u && s.walked ? LB_OK : status_no_memory(err);
+    if (status == LB_OK && eq->count == 0) {
+        status = keep(&s, s.u);
+        goto done;
+    }
+    if (status == LB_OK)
+        status = newton_init(&s.newton, eq, err);
+    if (status == LB_OK)
+        status = starts_init(&s.starts, eq, options->x0, options->bound, options->seed, err);
+    if (status == LB_OK)
+        status = run_starts(&s);
+done:
+    starts_clear(&s.starts);
+    newton_clear(&s.newton);
+    memory_free(s.walked);
+    memory_free(s.u);
+    return status;
+}

@@ -1,0 +1,283 @@
+/* All steady states in one compatibility class.
+ *
+ * The core's equations are searched for positive roots; then each face that
+ * trajectories cannot leave is searched in the same way with its species set to
+ * zero, and within each face the faces of the network that is left on it, so
+ * that in the end every siphon has had its turn.  Species set aside get the value
+ * that the laws of the whole network give them.
+ *
+ * Source: M. Feinberg, Foundations of Chemical Reaction Network Theory (2019),
+ * chapters 3 and 18 (compatibility classes, boundary steady states). */
+#include <math.h>
+#include <string.h>
+
+#include "analysis/equations.h"
+#include "analysis/faces.h"
+#include "analysis/roots.h"
+#include "analysis/stability.h"
+#include "analysis/starts.h"
+#include "base/memory.h"
+#include "base/status.h"
+#include "limbeck.h"
+#include "system/system.h"
+
+struct search {
+    const lb_system *system;
+    const lb_steady_options *options;
+    lb_evaluator *evaluator;
+    double *x0;             /* [n] */
+    double *bound;          /* [n] see starts.h */
+    double slack;           /* a species set aside is zero to rounding of the totals above minus this */
+    equations_laws laws;
+    faces faces;
+    lb_steady *out;
+    size_t capacity;        /* of out->state */
+    lb_error *err;
+};
+
+/* ---- One state ------------------------------------------------------------------------ */
+
+static void state_clear(lb_steady_state *state)
+{
+    memory_free(state->x);
+    memory_free(state->eigenvalues);
+    memory_free(state->modes);
+}
+
+/* A species set aside that comes out negative: the class ends before this state. */
+static bool is_in_class(const struct search *s, const double *x)
+{
+    const lb_network *net = s->system->network;
+    for (int i = 0; i < s->system->n; i++)
+        if (s->system->core_index[i] < 0 && !net->species[net->state_species[i]].is_signed &&
+            x[i] < 0)
+            return false;
+    return true;
+}
+
+static void complete(const struct search *s, double *x)
+{
+    system_complete(s->system, s->x0, x);
+    const lb_network *net = s->system->network;
+    for (int i = 0; i < s->system->n; i++)
+        if (s->system->core_index[i] < 0 && !net->species[net->state_species[i]].is_signed && x[i] < 0 &&
+            x[i] >= -s->slack)
+            x[i] = 0;
+}
+
+static lb_status add_state(struct search *s, equations *eq, const double *u)
+{
+    lb_steady *out = s->out;
+    lb_steady_state state = {.is_boundary = eq->count < s->system->core};
+    size_t bytes = (size_t)s->system->n * sizeof *state.x;
+    state.x = memory_alloc(bytes);
+    if (!state.x)
+        return status_no_memory(s->err);
+    equations_place(eq, u);
+    memcpy(state.x, eq->x, bytes);
+    state.residual = equations_balance_error(eq, u);
+    complete(s, state.x);
+    lb_status status = LB_OK;
+    if (!is_in_class(s, state.x))
+        goto done;
+    status = stability_classify(s->evaluator, &state, s->err);
+    if (status == LB_OK && memory_grow(&out->state, &s->capacity, out->count, sizeof *out->state) != 0)
+        status = status_no_memory(s->err);
+    if (status == LB_OK) {
+        out->state[out->count++] = state;
+        return LB_OK;
+    }
+done:
+    state_clear(&state);
+    return status;
+}
+
+/* ---- Faces -------------------------------------------------------------------------------- */
+
+/* The class itself lies on a face when a positive law has the total zero. */
+static lb_status add_first_face(struct search *s)
+{
+    bool *is_zero = memory_zeroed((size_t)s->system->n, sizeof *is_zero);
+    if (!is_zero)
+        return status_no_memory(s->err);
+    for (int i = 0; i < s->system->n; i++)
+        is_zero[i] = s->system->core_index[i] >= 0 && s->bound[i] <= 0;
+    lb_status status = faces_add(&s->faces, is_zero, s->err);
+    memory_free(is_zero);
+    return status;
+}
+
+static size_t starts_for(const struct search *s, int unknowns, bool is_first)
+{
+    size_t count = s->options->starts;
+    if (count == 0 && unknowns <= 15)
+        count = 30 + 8 * (size_t)unknowns;
+    else if (count == 0)
+        count = unknowns < 200 ? 2400 / (size_t)unknowns : 12;
+    return is_first ? count : count / 4 > 6 ? count / 4 : 6;
+}
+
+static lb_status search_face(struct search *s, const bool *is_zero, bool is_first, bool *is_possible)
+{
+    equations *eq = NULL;
+    roots found = {0};
+    lb_status status = equations_new(s->evaluator, &s->laws, s->x0, is_zero, &eq, s->err);
+    if (status != LB_OK)
+        return status;
+    roots_options options = {.starts = starts_for(s, eq->count, is_first), .seed = s->options->seed, .x0 = s->x0,
+                             .bound = s->bound, .monitor = s->options->monitor};
+    status = roots_find(eq, &options, &found, s->err);
+    for (int i = 0; status == LB_OK && i < found.count; i++)
+        status = add_state(s, eq, found.u[i]);
+    *is_possible = !eq->is_inconsistent;
+    s->out->starts += found.starts;
+    s->out->converged += found.converged;
+    s->out->interrupted = s->out->interrupted || found.interrupted;
+    if (found.continuum > s->out->continuum)
+        s->out->continuum = found.continuum;
+    roots_clear(&found);
+    equations_free(eq);
+    return status;
+}
+
+/* The list grows while it is walked: the faces of a face come behind it. */
+static lb_status search_faces(struct search *s)
+{
+    lb_status status = add_first_face(s);
+    for (int i = 0; status == LB_OK && i < s->faces.count && !s->out->interrupted; i++) {
+        bool is_possible = true;
+        status = search_face(s, s->faces.is_zero[i], i == 0, &is_possible);
+        if (s->options->skip_boundary)
+            break;
+        if (status == LB_OK && is_possible)
+            status = faces_find(s->evaluator, s->faces.is_zero[i], &s->faces, s->err);
+    }
+    return status;
+}
+
+/* ---- The result ------------------------------------------------------------------------------ */
+
+/* Positive states first, then by falling concentrations. */
+static int compare_states(const lb_steady_state *a, const lb_steady_state *b, int n)
+{
+    if (a->is_boundary != b->is_boundary)
+        return a->is_boundary ? 1 : -1;
+    for (int i = 0; i < n; i++)
+        if (a->x[i] != b->x[i] && !isnan(a->x[i]) && !isnan(b->x[i]))
+            return a->x[i] > b->x[i] ? -1 : 1;
+    return 0;
+}
+
+static void sort_states(lb_steady *out)
+{
+    for (size_t i = 1; i < out->count; i++) {
+        lb_steady_state state = out->state[i];
+        size_t place = i;
+        for (; place > 0 && compare_states(&out->state[place - 1], &state, out->states) > 0; place--)
+            out->state[place] = out->state[place - 1];
+        out->state[place] = state;
+    }
+}
+
+static lb_status describe_class(struct search *s)
+{
+    const lb_system *system = s->system;
+    lb_steady *out = s->out;
+    out->states = system->n;
+    out->rank = system->rank;
+    out->zero_eigenvalues = system->core - system->rank;
+    out->law_count = lb_system_laws(system);
+    out->total = memory_zeroed((size_t)out->law_count, sizeof *out->total);
+    out->accumulating = memory_zeroed((size_t)system->n, sizeof *out->accumulating);
+    double *x = memory_array((size_t)system->n, sizeof *x);
+    if (!out->total || !out->accumulating || !x) {
+        memory_free(x);
+        return status_no_memory(s->err);
+    }
+    for (int law = 0; law < out->law_count; law++)
+        for (int i = 0; i < system->n; i++)
+            out->total[law] += (double)lb_system_law(system, law)[i] * s->x0[i];
+    memcpy(x, s->x0, (size_t)system->n * sizeof *x);
+    system_complete(system, s->x0, x);
+    for (int i = 0; i < system->n; i++)
+        out->accumulating[i] = isnan(x[i]);
+    memory_free(x);
+    return LB_OK;
+}
+
+/* ---- The question --------------------------------------------------------------------------------- */
+
+static lb_status check_x0(const struct search *s)
+{
+    const lb_network *net = s->system->network;
+    for (int i = 0; i < s->system->n; i++) {
+        const network_species *species = &net->species[net->state_species[i]];
+        if (!isfinite(s->x0[i]) || (s->x0[i] < 0 && !species->is_signed))
+            return status_raise(s->err, LB_E_ARG, "give a concentration of zero or more",
+                                "[%s] = %g cannot define the class of steady states", species->name, s->x0[i]);
+    }
+    return LB_OK;
+}
+
+static lb_status prepare(struct search *s)
+{
+    size_t n = (size_t)s->system->n;
+    lb_status status = lb_evaluator_new(s->system, &s->evaluator, s->err);
+    if (status == LB_OK)
+        status = lb_evaluator_bind(s->evaluator, s->options->k, s->err);
+    if (status != LB_OK)
+        return status;
+    s->x0 = memory_array(n, sizeof *s->x0);
+    s->bound = memory_array(n, sizeof *s->bound);
+    if (!s->x0 || !s->bound)
+        return status_no_memory(s->err);
+    if (s->options->x0)
+        memcpy(s->x0, s->options->x0, n * sizeof *s->x0);
+    else
+        lb_initial(s->evaluator, s->x0);
+    status = check_x0(s);
+    if (status != LB_OK)
+        return status;
+    for (int i = 0; i < s->system->n; i++)
+        s->slack = fmax(s->slack, 1e-9 * fabs(s->x0[i]));
+    starts_bounds(s->system, s->x0, s->bound);
+    return equations_laws_init(&s->laws, s->evaluator, s->x0, s->err);
+}
+
+lb_status lb_steady_solve(const lb_system *system, const lb_steady_options *options, lb_steady **out, lb_error *err)
+{
+    static const lb_steady_options defaults = {0};
+    *out = NULL;
+    struct search s = {.system = system, .options = options ? options : &defaults, .err = err};
+    faces_init(&s.faces, system->n);
+    s.out = memory_zeroed(1, sizeof *s.out);
+    lb_status status = s.out ? prepare(&s) : status_no_memory(err);
+    if (status == LB_OK)
+        status = describe_class(&s);
+    if (status == LB_OK)
+        status = search_faces(&s);
+    if (status == LB_OK) {
+        sort_states(s.out);
+        *out = s.out;
+        s.out = NULL;
+    }
+    lb_steady_free(s.out);
+    equations_laws_clear(&s.laws);
+    faces_clear(&s.faces);
+    memory_free(s.bound);
+    memory_free(s.x0);
+    lb_evaluator_free(s.evaluator);
+    return status;
+}
+
+void lb_steady_free(lb_steady *steady)
+{
+    if (!steady)
+        return;
+    for (size_t i = 0; i < steady->count; i++)
+        state_clear(&steady->state[i]);
+    memory_free(steady->state);
+    memory_free(steady->total);
+    memory_free(steady->accumulating);
+    memory_free(steady);
+}
