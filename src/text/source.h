@@ -15,7 +15,8 @@ typedef struct span {
 
 typedef struct source source;
 
-/* Copies name and text.  LB_E_NOMEM. */
+/* Copies name and text; a leading byte-order mark is left out.  LB_E_NOMEM,
+ * LB_E_LIMIT when the text has 2 GiB or more. */
 lb_status source_new(const char *name, const char *text, size_t length, source **out);
 void source_free(source *s);
 const char *source_name(const source *s);

@@ -1,0 +1,77 @@
+/* Building the syntax tree: what the grammar's actions call.
+ *
+ * Nodes come from the builder's arena.  Without memory a constructor gives NULL
+ * and the builder remembers; a constructor that gets a NULL operand gives NULL.
+ * Faults that the grammar cannot express (a coefficient with an exponent, `1 s-1`)
+ * are reported here, and the node then says what was most likely meant. */
+#ifndef LIMBECK_TEXT_BUILDER_H
+#define LIMBECK_TEXT_BUILDER_H
+
+#include "text/syntax.h"
+
+typedef struct builder {
+    struct arena   *arena;
+    lb_diagnostics *diagnostics;
+    lb_status       status;      /* LB_OK, or LB_E_NOMEM for good */
+    span            muted;       /* faults up to this place were reported when the text was first read */
+    bool            has_bad_side; /* of the reaction being read: a fault was reported for a side */
+    syntax_tree    *tree;
+    syntax_expression *value;    /* of syntax_parse_value */
+} builder;
+
+/* Lists under construction. */
+typedef struct syntax_terms { syntax_term *first, *last; } syntax_terms;
+typedef struct syntax_names { syntax_name *first, *last; } syntax_names;
+typedef struct syntax_arguments { syntax_argument *first, *last; } syntax_arguments;
+typedef struct syntax_number { const char *text; double value; } syntax_number;
+typedef struct syntax_text { const char *text; bool is_quoted; } syntax_text;
+
+/* Report a fault, unless its place was reached before (a line that is read again). */
+void builder_fault(builder *b, span where, const char *remedy, const char *format, ...)
+    __attribute__((format(printf, 4, 5)));
+void *builder_alloc(builder *b, size_t size);
+const char *builder_text(builder *b, const char *text, size_t length);
+
+/* From the start of a to the end of b, as far as b is on the same line. */
+span span_join(span a, span b);
+
+syntax_expression *syntax_number_node(builder *b, syntax_number number, span where);
+syntax_expression *syntax_leaf(builder *b, syntax_expression_kind kind, const char *text, span where);
+syntax_expression *syntax_call(builder *b, const char *function, syntax_arguments arguments, span where);
+syntax_expression *syntax_binary(builder *b, syntax_expression_kind kind, syntax_expression *left,
+                                 syntax_expression *right, span operator_where, span where);
+syntax_expression *syntax_unary(builder *b, syntax_expression_kind kind, syntax_expression *operand, span where);
+syntax_expression *syntax_juxtapose(builder *b, syntax_expression *left, syntax_expression *unit, span where);
+syntax_expression *syntax_subtract(builder *b, syntax_expression *left, syntax_expression *right,
+                                   span operator_where, span where);
+
+syntax_range *syntax_range_between(builder *b, syntax_expression *low, syntax_expression *high, span where);
+syntax_range *syntax_range_factor(builder *b, syntax_expression *factor, span where);
+
+syntax_argument *syntax_argument_new(builder *b, const char *name, span name_where, syntax_expression *value,
+                                     syntax_range *range);
+syntax_arguments syntax_arguments_add(syntax_arguments list, syntax_argument *argument);
+
+syntax_name *syntax_name_new(builder *b, const char *text, bool is_quoted, span where);
+syntax_names syntax_names_add(syntax_names list, syntax_name *name);
+
+syntax_term *syntax_term_new(builder *b, const syntax_name *species);
+syntax_term *syntax_term_count(builder *b, syntax_number coefficient, span where, const syntax_name *species);
+syntax_term *syntax_term_expression(builder *b, syntax_expression *coefficient, span where,
+                                    const syntax_name *species);
+syntax_terms syntax_terms_add(syntax_terms list, syntax_term *term);
+syntax_term *syntax_side_number(builder *b, syntax_number number, span where);
+
+syntax_statement *syntax_title(builder *b, const char *text, span text_where, span where);
+syntax_statement *syntax_units(builder *b, syntax_expression *units, span where);
+syntax_statement *syntax_define(builder *b, syntax_statement_kind kind, syntax_text name, span text_where,
+                                syntax_expression *value, syntax_range *range, span where);
+syntax_statement *syntax_list(builder *b, syntax_statement_kind kind, syntax_names names, span where);
+syntax_statement *syntax_formula(builder *b, const syntax_name *species, const char *formula, span formula_where,
+                                 span where);
+syntax_statement *syntax_reaction(builder *b, syntax_term *left, bool is_reversible, span arrow_where,
+                                  syntax_term *right, syntax_arguments settings, span where);
+syntax_statement *syntax_labelled(syntax_statement *reaction, const char *label, span label_where, span where);
+void syntax_append(builder *b, syntax_statement *statement);
+
+#endif
