@@ -1,0 +1,620 @@
+/* One interface to integrate anything, and the control of step and method.
+ *
+ * A step is tried with one of two one-step methods, explicit.c and rosenbrock.c,
+ * weighed by tolerance.c, and accepted or tried again with a shorter step.  The
+ * next step comes from a proportional-integral rule.  A step that ends with an
+ * unsigned species below minus its absolute tolerance, or anywhere where the
+ * right-hand side is not finite, is tried again shorter as well; nothing is ever
+ * clipped.  Where even the smallest step does not pass, the reason of the last
+ * refusal is the error.
+ *
+ * Method.  The explicit one costs least while accuracy limits its step.  It is
+ * left when |h lambda| of the dominant damped eigenvalue stays near the bound of
+ * stability, and taken up again when the stiff method's own steps would be
+ * well inside that bound.  All of it depends on the numbers of the run alone.
+ *
+ * Sources: E. Hairer, S. P. Norsett and G. Wanner, Solving Ordinary Differential
+ * Equations I, 2nd ed. (1993), section II.4 (steps); K. Gustafsson, ACM Trans.
+ * Math. Softw. 17 (1991) 533 (proportional-integral control); E. Hairer and
+ * G. Wanner, volume II (1996), section IV.2 (detection of stiffness). */
+#include "analysis/integrate.h"
+
+#include <float.h>
+#include <math.h>
+#include <string.h>
+
+#include "analysis/explicit.h"
+#include "analysis/rosenbrock.h"
+#include "analysis/stiffness.h"
+#include "analysis/tolerance.h"
+#include "base/memory.h"
+#include "base/status.h"
+
+#define DEFAULT_TOLERANCE 1e-8
+#define LOOSEST_TOLERANCE 1e-2
+#define TIGHTEST_TOLERANCE 1e-13
+
+enum {
+    STIFF_EVIDENCE = 4,         /* checks near the bound of stability before the explicit method is left */
+    CHECK_INTERVAL = 4,         /* accepted explicit steps between two checks, after the first sixteen */
+    LEAST_PATIENCE = 6,         /* stiff steps inside the bound before it is taken up again */
+    MOST_PATIENCE = 1024
+};
+
+/* Why the last attempt was refused. */
+typedef enum refusal { REFUSED_ERROR, REFUSED_NEGATIVE, REFUSED_NOT_FINITE, REFUSED_SINGULAR } refusal;
+
+struct integrator {
+    lb_evaluator *evaluator;
+    const lb_system *system;
+    int n;
+    lb_method method;
+    bool allow_negative;
+    size_t max_steps;
+    const lb_monitor *monitor;
+
+    tolerance control;
+    stiffness estimate;
+    explicit_method *explicit_steps;    /* NULL until first used, as the two below */
+    rosenbrock *stiff_steps;
+    rosenbrock *extra_steps;            /* for a step of its own inside the last one */
+
+    double t, t_last;
+    double h, h_last;           /* next step to try; size of the last accepted one */
+    double error_last;          /* its error, for the proportional-integral rule */
+    bool is_begun;              /* f, h and the method are those of the start */
+    double *x, *x_last, *x_new; /* [n] */
+    double *f, *f_last, *f_new; /* [n] right-hand sides there */
+    double *error, *scale;      /* [n] */
+    double *tangents, *tangents_new, *tangents_error;   /* [n*n] or NULL */
+
+    bool is_stiff;              /* method in use */
+    bool last_was_stiff;
+    bool has_stages;            /* the stiff method still holds the stages of the last step */
+    int evidence;               /* checks in a row that speak for a change */
+    int patience;
+    size_t since_change;        /* accepted steps with the method in use */
+    size_t steps, rejected, stiff_count, changes;
+
+    refusal refused;
+    int culprit;                /* the state it was refused for; -1: none known */
+};
+
+/* ---- Life ---------------------------------------------------------------------- */
+
+static lb_status check_options(const integrator_options *options, int n, lb_error *err)
+{
+    double relative = options->tolerance;
+    if (relative != 0 && !(relative >= TIGHTEST_TOLERANCE && relative < INFINITY))
+        return status_raise(err, LB_E_ARG, "use a relative tolerance from 1e-13 to 1e-2",
+                            "%g is no tolerance that double precision can keep", relative);
+    for (int i = 0; options->absolute && i < n; i++)
+        if (!(options->absolute[i] >= 0 && options->absolute[i] < INFINITY))
+            return status_raise(err, LB_E_ARG, NULL, "%g is no absolute tolerance", options->absolute[i]);
+    return LB_OK;
+}
+
+void integrator_free(integrator *it)
+{
+    if (!it)
+        return;
+    memory_free(it->tangents_error);
+    memory_free(it->tangents_new);
+    memory_free(it->tangents);
+    double *const vectors[] = {it->x, it->x_last, it->x_new, it->f, it->f_last, it->f_new, it->error, it->scale};
+    for (size_t i = 0; i < sizeof vectors / sizeof *vectors; i++)
+        memory_free(vectors[i]);
+    rosenbrock_free(it->extra_steps);
+    rosenbrock_free(it->stiff_steps);
+    explicit_free(it->explicit_steps);
+    stiffness_clear(&it->estimate);
+    tolerance_clear(&it->control);
+    memory_free(it);
+}
+
+static bool allocate(integrator *it, bool tangents)
+{
+    size_t n = (size_t)it->n;
+    double **const vectors[] = {&it->x,      &it->x_last, &it->x_new, &it->f,
+                                &it->f_last, &it->f_new,  &it->error, &it->scale};
+    for (size_t i = 0; i < sizeof vectors / sizeof *vectors; i++)
+        if (!(*vectors[i] = memory_zeroed(n, sizeof **vectors[i])))
+            return false;
+    if (!tangents)
+        return true;
+    it->tangents = memory_zeroed(n * n, sizeof *it->tangents);
+    it->tangents_new = memory_zeroed(n * n, sizeof *it->tangents_new);
+    it->tangents_error = memory_zeroed(n * n, sizeof *it->tangents_error);
+    return it->tangents && it->tangents_new && it->tangents_error;
+}
+
+lb_status integrator_new(lb_evaluator *evaluator, const integrator_options *options, integrator **out, lb_error *err)
+{
+    *out = NULL;
+    const integrator_options defaults = {0};
+    if (!options)
+        options = &defaults;
+    const lb_system *system = evaluator_system(evaluator);
+    lb_status status = check_options(options, system->n, err);
+    if (status != LB_OK)
+        return status;
+    integrator *it = memory_zeroed(1, sizeof *it);
+    if (!it)
+        return status_no_memory(err);
+    it->evaluator = evaluator;
+    it->system = system;
+    it->n = system->n;
+    it->method = options->method;
+    it->allow_negative = options->allow_negative;
+    it->max_steps = options->max_steps;
+    it->monitor = options->monitor;
+    double relative = options->tolerance == 0 ? DEFAULT_TOLERANCE : fmin(options->tolerance, LOOSEST_TOLERANCE);
+    if (tolerance_init(&it->control, system->network, relative, options->absolute) != LB_OK ||
+        stiffness_init(&it->estimate, system) != LB_OK || !allocate(it, options->tangents))
+        status = status_no_memory(err);
+    if (status == LB_OK && it->method != LB_METHOD_STIFF)
+        status = explicit_new(evaluator, options->tangents, &it->explicit_steps, err);
+    if (status == LB_OK && it->method == LB_METHOD_STIFF)
+        status = rosenbrock_new(evaluator, options->tangents, &it->stiff_steps, err);
+    if (status != LB_OK) {
+        integrator_free(it);
+        return status;
+    }
+    *out = it;
+    return LB_OK;
+}
+
+void integrator_start(integrator *it, double t, const double *x)
+{
+    size_t n = (size_t)it->n;
+    it->t = it->t_last = t;
+    it->h = it->h_last = 0;
+    memmove(it->x, x, n * sizeof *x);
+    memcpy(it->x_last, it->x, n * sizeof *x);
+    if (it->tangents) {
+        memset(it->tangents, 0, n * n * sizeof *it->tangents);
+        for (size_t i = 0; i < n; i++)
+            it->tangents[i + i * n] = 1;
+    }
+    it->is_begun = it->is_stiff = it->last_was_stiff = it->has_stages = false;
+    it->steps = it->rejected = it->stiff_count = it->changes = 0;
+    stiffness_reset(&it->estimate);
+}
+
+/* ---- Errors ------------------------------------------------------------------- */
+
+static const char *species_name(const integrator *it, int state)
+{
+    const lb_network *network = it->system->network;
+    return network->species[network->state_species[state]].name;
+}
+
+/* The step that takes most of a species away while there is none of it, at the
+ * last accepted state; -1 when the species does not fall there. */
+static int find_remover(integrator *it, int state)
+{
+    const lb_network *network = it->system->network;
+    double *rates = memory_array((size_t)it->system->steps, sizeof *rates);
+    int remover = -1;
+    if (!rates)
+        return -1;
+    memcpy(it->x_new, it->x, (size_t)it->n * sizeof *it->x);
+    it->x_new[state] = 0;
+    evaluator_step_rates(it->evaluator, it->x_new, rates);
+    double most = 0, total = 0;
+    for (int s = 0; s < it->system->steps; s++) {
+        const double *coefficients = evaluator_coefficients(it->evaluator, s);
+        for (int e = 0; e < network->steps[s].entry_count; e++) {
+            if (network->steps[s].entries[e].state != state)
+                continue;
+            double change = coefficients[e] * rates[s];
+            total += change;
+            if (change < most) {
+                most = change;
+                remover = s;
+            }
+        }
+    }
+    memory_free(rates);
+    return total < 0 ? remover : -1;
+}
+
+static lb_status fail_negative(integrator *it, lb_error *err)
+{
+    const char *name = species_name(it, it->culprit);
+    int remover = find_remover(it, it->culprit);
+    if (remover < 0)
+        return status_raise(err, LB_E_STEP, "try a tighter tolerance",
+                            "at t = %.6g no step keeps [%s] above minus its tolerance", it->t, name);
+    const char *step = it->system->network->steps[remover].name;
+    return status_raise(err, LB_E_NEGATIVE, "give that reaction a rate that vanishes with the species, or declare the species signed",
+                        "[%s] falls below zero at t = %.6g: %s takes it away though there is none left", name, it->t, step);
+}
+
+/* The smallest step was refused. */
+static lb_status fail(integrator *it, lb_error *err)
+{
+    const char *name = it->culprit >= 0 ? species_name(it, it->culprit) : NULL;
+    switch (it->refused) {
+    case REFUSED_NEGATIVE:
+        return fail_negative(it, err);
+    case REFUSED_NOT_FINITE:
+        if (name)
+            return status_raise(err, LB_E_FINITE, "look at the rate laws of that species",
+                                "the rate of change of [%s] is not finite just after t = %.6g", name, it->t);
+        return status_raise(err, LB_E_FINITE, NULL, "a rate or its derivative is not finite just after t = %.6g", it->t);
+    case REFUSED_SINGULAR:
+        return status_raise(err, LB_E_STEP, NULL, "the stiff method's matrix stays singular at t = %.6g", it->t);
+    case REFUSED_ERROR:
+        break;
+    }
+    return status_raise(err, LB_E_STEP, "the solution may grow without bound or a rate law may jump there",
+                        "at t = %.6g no step is short enough for [%s], which is %.6g", it->t, name, it->x[it->culprit]);
+}
+
+/* ---- Start ---------------------------------------------------------------------- */
+
+static void set_scale(integrator *it)
+{
+    for (int i = 0; i < it->n; i++)
+        it->scale[i] = fabs(it->x[i]) + it->control.absolute[i] / it->control.relative + DBL_MIN;
+}
+
+static double largest(int n, const double *a)
+{
+    double most = 0;
+    for (int i = 0; i < n; i++)
+        most = fmax(most, fabs(a[i]));
+    return most;
+}
+
+/* First step such that an error that begins like f, with f changing at the rate
+ * |J f|/|f|, would be a hundredth of what is allowed; J f is in x_new. */
+static double first_step(const integrator *it, double t_limit, int order)
+{
+    double speed = 0, change = 0;
+    for (int i = 0; i < it->n; i++) {
+        double weight = tolerance_weight(&it->control, i, it->x[i], it->x[i]) + DBL_MIN;
+        speed = fmax(speed, fabs(it->f[i]) / weight);
+        change = fmax(change, fabs(it->x_new[i]) / weight);
+    }
+    double span = isfinite(t_limit) ? t_limit - it->t : INFINITY;
+    double h = pow(0.01 / speed, 1.0 / order) * pow(speed / change, (order - 1.0) / order);
+    if (isfinite(h) && h > 0)
+        return fmin(h, span);
+    /* A constant rate of change, or rest: any step will do, and too long a one
+     * is found out. */
+    if (isfinite(span))
+        return 0.01 * span;
+    double fastest = largest(it->n, it->f);
+    return fastest > 0 && it->control.reference > 0 ? it->control.reference / fastest : 1;
+}
+
+/* Far from its fastest motions a stiff system moves slowly from the start; one
+ * that starts on a fast transient is left to the explicit method. */
+static bool looks_stiff(integrator *it)
+{
+    bool is_damped = false;
+    double radius = 0, slow = 0, speed = 0;
+    for (int k = 0; k < 3; k++)
+        radius = stiffness_radius(&it->estimate, it->system, it->estimate.values, it->scale, &is_damped);
+    for (int i = 0; i < it->n; i++) {
+        speed = fmax(speed, fabs(it->f[i]) / it->scale[i]);
+        slow = fmax(slow, fabs(it->x_new[i]) / it->scale[i]);
+    }
+    return is_damped && radius * speed > 100 * slow && radius > 100 * speed;
+}
+
+static lb_status use_method(integrator *it, bool stiff, lb_error *err)
+{
+    if (stiff && !it->stiff_steps) {
+        lb_status status = rosenbrock_new(it->evaluator, it->tangents != NULL, &it->stiff_steps, err);
+        if (status != LB_OK)
+            return status;
+    }
+    it->is_stiff = stiff;
+    it->evidence = 0;
+    it->since_change = 0;
+    it->error_last = 1;
+    return LB_OK;
+}
+
+/* f, tolerances, method and step at the start. */
+static lb_status begin(integrator *it, double t_limit, lb_error *err)
+{
+    for (int i = 0; i < it->n; i++)
+        if (!isfinite(it->x[i]))
+            return status_raise(err, LB_E_FINITE, NULL, "the start of [%s] is not finite", species_name(it, i));
+    int bad = stepper_rhs(it->evaluator, it->x, it->f);
+    if (bad >= 0)
+        return status_raise(err, LB_E_FINITE, "look at the rate laws of that species",
+                            "the rate of change of [%s] is not finite at t = %.6g", species_name(it, bad), it->t);
+    if (!stepper_jacobian(it->evaluator, it->x, it->estimate.values))
+        return status_raise(err, LB_E_FINITE, NULL, "the derivative of a rate is not finite at t = %.6g", it->t);
+    memset(it->x_new, 0, (size_t)it->n * sizeof *it->x_new);
+    stepper_multiply_add(it->system, it->estimate.values, 1, 1, it->f, it->x_new);
+    double fastest = largest(it->n, it->f), change = largest(it->n, it->x_new);
+    double span = isfinite(t_limit) ? t_limit - it->t : 0;
+    tolerance_start(&it->control, it->x, change > 0 ? fastest * (fastest / change) : fastest * span);
+    it->culprit = it->allow_negative ? -1 : tolerance_negative(&it->control, it->x, it->x);
+    if (it->culprit >= 0)
+        return status_raise(err, LB_E_NEGATIVE, NULL, "[%s] starts below zero, at %.6g", species_name(it, it->culprit),
+                            it->x[it->culprit]);
+    set_scale(it);
+    it->patience = LEAST_PATIENCE;
+    bool stiff = it->method == LB_METHOD_STIFF ||
+                 (it->method == LB_METHOD_AUTO && it->n <= ROSENBROCK_LIMIT && looks_stiff(it));
+    lb_status status = use_method(it, stiff, err);
+    it->h = first_step(it, t_limit, stiff ? ROSENBROCK_ERROR_ORDER : EXPLICIT_ERROR_ORDER);
+    it->is_begun = status == LB_OK;
+    return status;
+}
+
+/* ---- One step -------------------------------------------------------------------- */
+
+/* After an accepted step: does the method in use still fit? */
+static lb_status review_method(integrator *it, lb_error *err)
+{
+    it->since_change++;
+    if (it->method != LB_METHOD_AUTO)
+        return LB_OK;
+    bool is_damped;
+    if (it->is_stiff) {
+        /* The Jacobian of the step's start is there for nothing. */
+        set_scale(it);
+        double radius = stiffness_radius(&it->estimate, it->system, rosenbrock_jacobian(it->stiff_steps), it->scale, &is_damped);
+        it->evidence = it->h * radius < 0.4 * EXPLICIT_STABILITY ? it->evidence + 1 : 0;
+        if (it->evidence < it->patience)
+            return LB_OK;
+        it->changes++;
+        return use_method(it, false, err);
+    }
+    if ((it->since_change > 16 && it->since_change % CHECK_INTERVAL != 0) ||
+        !stepper_jacobian(it->evaluator, it->x, it->estimate.values))
+        return LB_OK;
+    set_scale(it);
+    double radius = stiffness_radius(&it->estimate, it->system, it->estimate.values, it->scale, &is_damped);
+    it->evidence = is_damped && it->h * radius > 0.6 * EXPLICIT_STABILITY ? it->evidence + 1 : 0;
+    if (it->evidence < STIFF_EVIDENCE)
+        return LB_OK;
+    /* Back so soon: the change to explicit steps did not pay. */
+    if (it->changes > 0 && it->since_change < 64 && it->patience < MOST_PATIENCE)
+        it->patience *= 2;
+    it->changes++;
+    return use_method(it, true, err);
+}
+
+/* Try a step h; true when it may be accepted.  Otherwise why is in refused and
+ * culprit, and *shrink is the factor for the next try. */
+static bool attempt_step(integrator *it, double h, double *norm, double *shrink)
+{
+    stepper_attempt attempt = {h, it->x, it->f, it->tangents, it->x_new, it->error, it->tangents_new, it->tangents_error, -1};
+    if (it->is_stiff)
+        it->has_stages = false;
+    stepper_outcome outcome = it->is_stiff ? rosenbrock_attempt(it->stiff_steps, &attempt)
+                                           : explicit_attempt(it->explicit_steps, &attempt);
+    *shrink = 0.25;
+    it->culprit = attempt.bad_state;
+    it->refused = outcome == STEPPER_SINGULAR ? REFUSED_SINGULAR : REFUSED_NOT_FINITE;
+    if (outcome != STEPPER_DONE)
+        return false;
+
+    *norm = tolerance_norm(&it->control, it->x, it->x_new, it->error, &it->culprit);
+    if (it->tangents)
+        *norm = fmax(*norm, tolerance_tangent_norm(&it->control, it->tangents, it->tangents_new, it->tangents_error));
+    it->refused = REFUSED_ERROR;
+    if (!(*norm <= 1)) {
+        int order = it->is_stiff ? ROSENBROCK_ERROR_ORDER : EXPLICIT_ERROR_ORDER;
+        *shrink = fmax(0.1, 0.9 * pow(*norm, -1.0 / order));
+        return false;
+    }
+
+    it->refused = REFUSED_NEGATIVE;
+    it->culprit = it->allow_negative ? -1 : tolerance_negative(&it->control, it->x, it->x_new);
+    if (it->culprit >= 0)
+        return false;
+    it->refused = REFUSED_NOT_FINITE;
+    it->culprit = stepper_rhs(it->evaluator, it->x_new, it->f_new);
+    return it->culprit < 0;
+}
+
+/* Proportional-integral rule for the next step, from the errors of this one and
+ * the one before. */
+static double growth(integrator *it, double norm, bool was_refused)
+{
+    double order = it->is_stiff ? ROSENBROCK_ERROR_ORDER : EXPLICIT_ERROR_ORDER;
+    double error = fmax(norm, 1e-10);
+    double factor = 0.9 * pow(error, -0.7 / order) * pow(it->error_last, 0.4 / order);
+    it->error_last = fmax(error, 1e-4);
+    return fmax(0.2, fmin(was_refused ? 1 : 6, factor));
+}
+
+static void rotate(double **oldest, double **middle, double **newest)
+{
+    double *kept = *oldest;
+    *oldest = *middle;
+    *middle = *newest;
+    *newest = kept;
+}
+
+static void accept(integrator *it, double h, double t_new)
+{
+    rotate(&it->x_last, &it->x, &it->x_new);
+    rotate(&it->f_last, &it->f, &it->f_new);
+    double *kept = it->tangents;
+    it->tangents = it->tangents_new;
+    it->tangents_new = kept;
+    it->t_last = it->t;
+    it->t = t_new;
+    it->h_last = h;
+    it->last_was_stiff = it->has_stages = it->is_stiff;
+    it->steps++;
+    it->stiff_count += it->is_stiff;
+    tolerance_follow(&it->control, it->x);
+}
+
+static double smallest_step(const integrator *it)
+{
+    return fmax(16 * DBL_EPSILON * fabs(it->t), 1e-280);
+}
+
+lb_status integrator_step(integrator *it, double t_limit, lb_error *err)
+{
+    if (!(t_limit > it->t))
+        return status_raise(err, LB_E_ARG, NULL, "a step from t = %.6g cannot end at %.6g", it->t, t_limit);
+    if (it->monitor && it->monitor->stop && it->monitor->stop(it->monitor->context))
+        return status_raise(err, LB_E_STOPPED, NULL, "interrupted at t = %.6g", it->t);
+    if (it->max_steps > 0 && it->steps >= it->max_steps)
+        return status_raise(err, LB_E_STEP, NULL, "%zu steps were not enough: t = %.6g was reached", it->max_steps, it->t);
+    if (!it->is_begun) {
+        lb_status status = begin(it, t_limit, err);
+        if (status != LB_OK)
+            return status;
+    }
+    if (it->is_stiff && !rosenbrock_prepare(it->stiff_steps, it->x))
+        return status_raise(err, LB_E_FINITE, NULL, "the derivative of a rate is not finite at t = %.6g", it->t);
+
+    for (bool was_refused = false; ; was_refused = true) {
+        /* Land on the limit, and do not leave a sliver before it. */
+        double rest = t_limit - it->t, h = it->h, norm = 0, shrink;
+        bool is_last = 1.01 * h >= rest;
+        if (is_last)
+            h = rest;
+        else if (2 * h > rest)
+            h = 0.5 * rest;
+        if (attempt_step(it, h, &norm, &shrink)) {
+            double next = h * growth(it, norm, was_refused);
+            /* A step that was cut short says little about the next one. */
+            it->h = h < it->h && !was_refused ? fmax(it->h, next) : next;
+            accept(it, h, is_last ? t_limit : it->t + h);
+            return review_method(it, err);
+        }
+        it->rejected++;
+        it->h = h * shrink;
+        if (it->h < smallest_step(it))
+            return fail(it, err);
+    }
+}
+
+lb_status integrator_to(integrator *it, double t, lb_error *err)
+{
+    lb_status status = LB_OK;
+    if (t < it->t)
+        return status_raise(err, LB_E_ARG, NULL, "t = %.6g is before the time reached, %.6g", t, it->t);
+    while (status == LB_OK && it->t < t)
+        status = integrator_step(it, t, err);
+    return status;
+}
+
+/* ---- Within the last step ---------------------------------------------------------- */
+
+static lb_status fail_inside(double t, lb_error *err)
+{
+    return status_raise(err, LB_E_STEP, NULL, "a step inside an accepted one failed at t = %.6g", t);
+}
+
+/* One step from the start of the last one with stages left behind in method. */
+static bool stiff_substep(integrator *it, rosenbrock *method, double h, double *x_new)
+{
+    stepper_attempt attempt = {.h = h, .x = it->x_last, .f = it->f_last, .x_new = x_new, .error = it->error};
+    return rosenbrock_prepare(method, it->x_last) && rosenbrock_attempt(method, &attempt) == STEPPER_DONE;
+}
+
+/* The ends of the step are what they are; true when t is one. */
+static bool take_end(const integrator *it, double t, double *x)
+{
+    const double *end = t <= it->t_last ? it->x_last : t >= it->t ? it->x : NULL;
+    if (end)
+        memcpy(x, end, (size_t)it->n * sizeof *x);
+    return end != NULL;
+}
+
+lb_status integrator_dense(integrator *it, double t, double *x, lb_error *err)
+{
+    if (take_end(it, t, x))
+        return LB_OK;
+    if (!it->last_was_stiff) {
+        stepper_outcome outcome = explicit_advance(it->explicit_steps, t - it->t_last, it->x_last, it->f_last, x);
+        return outcome == STEPPER_DONE ? LB_OK : fail_inside(t, err);
+    }
+    /* A refused attempt has overwritten the stages: make them again. */
+    if (!it->has_stages && !stiff_substep(it, it->stiff_steps, it->h_last, x))
+        return fail_inside(t, err);
+    it->has_stages = true;
+    rosenbrock_dense(it->stiff_steps, (t - it->t_last) / it->h_last, it->x_last, it->x, x);
+    return LB_OK;
+}
+
+lb_status integrator_restep(integrator *it, double t, double *x, lb_error *err)
+{
+    if (!it->last_was_stiff || t <= it->t_last || t >= it->t)
+        return integrator_dense(it, t, x, err);
+    if (!it->extra_steps) {
+        lb_status status = rosenbrock_new(it->evaluator, false, &it->extra_steps, err);
+        if (status != LB_OK)
+            return status;
+    }
+    return stiff_substep(it, it->extra_steps, t - it->t_last, x) ? LB_OK : fail_inside(t, err);
+}
+
+/* ---- Questions ----------------------------------------------------------------------- */
+
+double integrator_time(const integrator *it)
+{
+    return it->t;
+}
+
+const double *integrator_state(const integrator *it)
+{
+    return it->x;
+}
+
+const double *integrator_tangents(const integrator *it)
+{
+    return it->tangents;
+}
+
+double integrator_last_time(const integrator *it)
+{
+    return it->t_last;
+}
+
+const double *integrator_last_state(const integrator *it)
+{
+    return it->x_last;
+}
+
+lb_evaluator *integrator_evaluator(const integrator *it)
+{
+    return it->evaluator;
+}
+
+size_t integrator_steps(const integrator *it)
+{
+    return it->steps;
+}
+
+size_t integrator_rejected(const integrator *it)
+{
+    return it->rejected;
+}
+
+const char *integrator_method(const integrator *it)
+{
+    if (it->stiff_count == 0 && !it->is_stiff)
+        return "explicit Runge-Kutta 8(7), Prince and Dormand";
+    if (it->stiff_count == it->steps)
+        return "Rosenbrock 5(4), Rodas5P";
+    return "Rosenbrock 5(4), Rodas5P, and explicit Runge-Kutta 8(7) where nothing was stiff";
+}
+
+const char *integrator_reason(const integrator *it)
+{
+    if (it->method != LB_METHOD_AUTO)
+        return "asked for";
+    if (it->stiff_count == 0 && !it->is_stiff)
+        return "accuracy, not stability, limited the steps";
+    if (it->stiff_count == it->steps)
+        return "from the start the fastest motion was damped much faster than the state moved";
+    return "stability held the explicit steps back: the fastest motion was damped much faster than the state moved";
+}

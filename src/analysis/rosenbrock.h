@@ -1,0 +1,37 @@
+/* The stiff method: Rodas5P with the exact Jacobian. */
+#ifndef LIMBECK_ANALYSIS_ROSENBROCK_H
+#define LIMBECK_ANALYSIS_ROSENBROCK_H
+
+#include "analysis/stepper.h"
+
+#define ROSENBROCK_STAGES 8
+#define ROSENBROCK_ERROR_ORDER 5    /* the estimated error falls as h^5 */
+#define ROSENBROCK_LIMIT 4000       /* species: 128 MB of dense matrix */
+
+typedef struct rosenbrock_table {
+    double gamma;
+    double a[6][5];                 /* a[i][j], j < i; rows 6 and 7 are row 5 plus ones (see rosenbrock.c) */
+    double c[ROSENBROCK_STAGES][ROSENBROCK_STAGES - 1];
+    double dense[3][ROSENBROCK_STAGES];
+} rosenbrock_table;
+extern const rosenbrock_table rosenbrock_rodas5p;
+
+typedef struct rosenbrock rosenbrock;
+
+/* Borrows the evaluator for its life.  LB_E_LIMIT beyond ROSENBROCK_LIMIT
+ * species, LB_E_NOMEM. */
+lb_status rosenbrock_new(lb_evaluator *evaluator, bool tangents, rosenbrock **out, lb_error *err);
+void rosenbrock_free(rosenbrock *method);
+
+/* Evaluate the Jacobian at the start x [n] of the steps that follow; false when
+ * it is not finite. */
+bool rosenbrock_prepare(rosenbrock *method, const double *x);
+const double *rosenbrock_jacobian(const rosenbrock *method);   /* [nonzeros] of the last prepare */
+
+/* A step from the x that was prepared. */
+stepper_outcome rosenbrock_attempt(rosenbrock *method, stepper_attempt *attempt);
+
+/* State at the fraction theta of the last attempt, from x [n] to x_new [n]. */
+void rosenbrock_dense(const rosenbrock *method, double theta, const double *x, const double *x_new, double *out);
+
+#endif
