@@ -202,7 +202,7 @@ typedef enum lb_method { LB_METHOD_AUTO, LB_METHOD_EXPLICIT, LB_METHOD_STIFF } l
 typedef struct lb_run_options {
     double until;            /* end time; must be positive */
     double every;            /* spacing of rows; 0: 200 rows */
-    double tolerance;        /* relative; 0: 1e-8 */
+    double tolerance;        /* relative, from 1e-13; 0: 1e-8; above 1e-2, where runs go wrong silently, 1e-2 */
     const double *absolute;  /* [n] absolute tolerances, or NULL: relative tolerance times a scale per species */
     lb_method method;
     const lb_monitor *monitor;
@@ -213,7 +213,8 @@ typedef struct lb_run {
     size_t rows;
     double *t;               /* [rows] */
     double *x;               /* [rows*states], row after row */
-    double *reading;         /* [rows*readings], row after row */
+    double *reading;         /* [rows*readings], row after row; NAN where a reading has no finite value */
+    double tolerance;        /* relative, as used */
     const char *method;      /* which method ran, in words; static */
     const char *why;         /* and why; static */
     size_t steps, rejected;
@@ -223,7 +224,9 @@ typedef struct lb_run {
 /* Integrate from the file's initial state.
  * Returns LB_E_NEGATIVE (message: the time, the species and the reaction that
  * did it) when an unsigned concentration falls below zero by more than its
- * tolerance; LB_E_STEP, LB_E_FINITE.  After these *out holds the rows so far. */
+ * tolerance; LB_E_STEP, LB_E_FINITE.  After these *out holds the rows so far.
+ * LB_E_ARG, LB_E_LIMIT (rows, or species when stiff), LB_E_NOMEM.  An
+ * interrupted run is LB_OK with `interrupted`. */
 lb_status lb_run_solve(const lb_system *system, const lb_run_options *options, lb_run **out, lb_error *err);
 void lb_run_free(lb_run *run);
 

@@ -589,6 +589,11 @@ lb_evaluator *integrator_evaluator(const integrator *it)
     return it->evaluator;
 }
 
+double integrator_tolerance(const integrator *it)
+{
+    return it->control.relative;
+}
+
 size_t integrator_steps(const integrator *it)
 {
     return it->steps;

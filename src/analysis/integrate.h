@@ -65,6 +65,7 @@ lb_status integrator_crossing(integrator *it, const double *weight, double level
 const char *integrator_method(const integrator *it);       /* words; static */
 const char *integrator_reason(const integrator *it);
 lb_evaluator *integrator_evaluator(const integrator *it);  /* borrowed */
+double integrator_tolerance(const integrator *it);          /* relative, in force */
 size_t integrator_steps(const integrator *it);
 size_t integrator_rejected(const integrator *it);
 
