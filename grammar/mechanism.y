@@ -3,7 +3,7 @@
  * LALR(1) without a conflict.  The grammar looks nothing up and depends on no
  * state: an action is one call of a constructor (src/text/syntax.c).  Values
  * live in an arena, so none needs a destructor.  A fault skips to the end of
- * its statement; what counts as that end is the lexer's business
+ * its statement, and what was read of it is kept apart (syntax_broken); what counts as that end is the lexer's business
  * (src/text/lexical.c), as is the wording of the fault (src/text/complaint.c).
  *
  * Full look-ahead correction makes the set of expected tokens exact. */
@@ -97,7 +97,7 @@ value: expression NEWLINE          { B->value = $1; }
      ;
 
 file: %empty
-    | file statement NEWLINE       { syntax_append(B, $2); }
+    | file statement NEWLINE       { syntax_append(B, $2); yyerrok; }
     | file error NEWLINE           { yyerrok; }
     ;
 
@@ -109,6 +109,10 @@ statement
     | HELD EQUALS expression range              { $$ = syntax_define(B, SYNTAX_DEFINE_CONCENTRATION, $1, @1, $3, $4, @$); }
     | INITIAL_VALUE EQUALS expression range     { $$ = syntax_define(B, SYNTAX_DEFINE_INITIAL, $1, @1, $3, $4, @$); }
     | FEED EQUALS expression range              { $$ = syntax_define(B, SYNTAX_DEFINE_FEED, $1, @1, $3, $4, @$); }
+    | NAME EQUALS error                         { $$ = syntax_define_broken(B, SYNTAX_DEFINE_NAME, (syntax_text){$1, false}, @1, @$); }
+    | HELD EQUALS error                         { $$ = syntax_define_broken(B, SYNTAX_DEFINE_CONCENTRATION, $1, @1, @$); }
+    | INITIAL_VALUE EQUALS error                { $$ = syntax_define_broken(B, SYNTAX_DEFINE_INITIAL, $1, @1, @$); }
+    | FEED EQUALS error                         { $$ = syntax_define_broken(B, SYNTAX_DEFINE_FEED, $1, @1, @$); }
     | RETAINED names                            { $$ = syntax_list(B, SYNTAX_RETAINED, $2, @$); }
     | SIGNED names                              { $$ = syntax_list(B, SYNTAX_SIGNED, $2, @$); }
     | FORMULA species EQUALS FORMULA_TEXT       { $$ = syntax_formula(B, $2, $4, @4, @$); }
@@ -125,6 +129,8 @@ names
 
 reaction
     : side arrow side settings                  { $$ = syntax_reaction(B, $1, $2, @2, $3, $4, @$); }
+    | side arrow side settings COMMA error      { $$ = syntax_broken(syntax_reaction(B, $1, $2, @2, $3, $4, @$)); }
+    | side arrow error                          { $$ = syntax_broken(syntax_reaction(B, $1, $2, @2, NULL, (syntax_arguments){NULL, NULL}, @$)); }
     ;
 
 arrow
@@ -194,7 +200,7 @@ signed
 /* Units behind a number, or units side by side: tighter than * and /. */
 juxtaposed
     : power
-    | juxtaposed unit                           { $$ = syntax_juxtapose(B, $1, $2, @$); }
+    | juxtaposed unit                           { $$ = syntax_binary(B, SYNTAX_JUXTAPOSED, $1, $2, @2, @$); }
     ;
 
 unit

@@ -41,7 +41,6 @@ syntax_expression *syntax_call(builder *b, const char *function, syntax_argument
 syntax_expression *syntax_binary(builder *b, syntax_expression_kind kind, syntax_expression *left,
                                  syntax_expression *right, span operator_where, span where);
 syntax_expression *syntax_unary(builder *b, syntax_expression_kind kind, syntax_expression *operand, span where);
-syntax_expression *syntax_juxtapose(builder *b, syntax_expression *left, syntax_expression *unit, span where);
 syntax_expression *syntax_subtract(builder *b, syntax_expression *left, syntax_expression *right,
                                    span operator_where, span where);
 
@@ -66,11 +65,14 @@ syntax_statement *syntax_title(builder *b, const char *text, span text_where, sp
 syntax_statement *syntax_units(builder *b, syntax_expression *units, span where);
 syntax_statement *syntax_define(builder *b, syntax_statement_kind kind, syntax_text name, span text_where,
                                 syntax_expression *value, syntax_range *range, span where);
+syntax_statement *syntax_define_broken(builder *b, syntax_statement_kind kind, syntax_text name, span text_where,
+                                       span where);
 syntax_statement *syntax_list(builder *b, syntax_statement_kind kind, syntax_names names, span where);
 syntax_statement *syntax_formula(builder *b, const syntax_name *species, const char *formula, span formula_where,
                                  span where);
 syntax_statement *syntax_reaction(builder *b, syntax_term *left, bool is_reversible, span arrow_where,
                                   syntax_term *right, syntax_arguments settings, span where);
+syntax_statement *syntax_broken(syntax_statement *statement);
 syntax_statement *syntax_labelled(syntax_statement *reaction, const char *label, span label_where, span where);
 void syntax_append(builder *b, syntax_statement *statement);
 

@@ -117,7 +117,7 @@ static word_list expected_words(const complaint *c)
     for (size_t i = 0; i < sizeof single / sizeof single[0]; i++) {
         int token = single[i];
         bool is_covered = ((is_value || is_operator || is_species) && (token == NAME || token == NUMBER))
-                          || (is_value && token == OPEN) || (is_operator && token == PLUS)
+                          || (is_value && token == OPEN) || ((is_value || is_operator) && token == PLUS)
                           || (is_species && token == OPEN);
         if (expects(c, token) && !is_covered)
             add_word(&list, token == PLUS ? "`+`" : token_name(token));
@@ -146,17 +146,14 @@ static void say_expected(complaint *c)
 
 /* ---- The usual slips ------------------------------------------------------- */
 
-/* The word behind the last token and whether `=` follows it. */
-static bool is_setting_next(const complaint *c, bool starts_here)
+/* Whether a setting, `k = ...`, follows the last token. */
+static bool is_setting_next(const complaint *c)
 {
     size_t length;
-    const char *rest = lexical_rest(c->l, &length), *end = rest + length;
-    while (rest < end && *rest == ' ')
-        rest++;
-    if (starts_here)
-        return rest < end && *rest == '=' && lexical_is_setting(c->text, strlen(c->text));
-    size_t word = strcspn(rest, " =\r\n");
-    return lexical_is_setting(rest, word) && rest[word + strspn(rest + word, " ")] == '=';
+    const char *rest = lexical_rest(c->l, &length);
+    rest += strspn(rest, " \t");
+    size_t word = strcspn(rest, " \t=\r\n");
+    return lexical_is_setting(rest, word) && rest[word + strspn(rest + word, " \t")] == '=';
 }
 
 /* The faulty token continues a line that should have ended. */
@@ -210,7 +207,7 @@ static bool quoted_definition(complaint *c)
 
 static bool definition_for_reaction(complaint *c)
 {
-    if (c->got != COMMA || c->l->first != NAME || c->l->arrows || c->l->level || !is_setting_next(c, false))
+    if (c->got != COMMA || c->l->first != NAME || c->l->arrows || c->l->level || !is_setting_next(c))
         return false;
     SAY(c, "a definition has no settings");
     ADVISE(c, "if this is a reaction, write `->` for `=`");
@@ -241,7 +238,7 @@ static bool missing_arrow(complaint *c)
 {
     if (!expects(c, ARROW) || c->got != NEWLINE)
         return false;
-    if (expects(c, EQUALS)) {
+    if (expects(c, EQUALS) && c->l->first == NAME) {
         SAY(c, "neither a reaction nor a definition");
         ADVISE(c, "write `A -> B, k = ...` or `name = value`");
     } else {
@@ -260,15 +257,6 @@ static bool second_arrow(complaint *c)
     return true;
 }
 
-static bool missing_comma(complaint *c)
-{
-    if (c->got != NAME || c->l->arrows == 0 || !expects(c, COMMA) || !is_setting_next(c, true))
-        return false;
-    SAY(c, "a comma is missing before `%s`", c->text);
-    ADVISE(c, "write `, %s = ...`", c->text);
-    return true;
-}
-
 static bool nameless_setting(complaint *c)
 {
     if (c->l->previous != COMMA || c->l->arrows == 0 || c->l->level || c->got == NEWLINE || !expects(c, NAME)
@@ -276,6 +264,18 @@ static bool nameless_setting(complaint *c)
         return false;
     SAY(c, "unexpected `%s`, expected a setting", c->text);
     ADVISE(c, "write `k = ...`, `kf = ..., kr = ...`, `kf = ..., K = ...` or `v = ...`");
+    return true;
+}
+
+/* `A -- B`. */
+static bool dashes_for_arrow(complaint *c)
+{
+    size_t length;
+    const char *rest = lexical_rest(c->l, &length);
+    if (c->got != MINUS || !expects(c, ARROW) || length == 0 || rest[0] != '-')
+        return false;
+    SAY(c, "`--` is no arrow");
+    ADVISE(c, "write `->`");
     return true;
 }
 
@@ -289,14 +289,27 @@ static bool unquoted_name(complaint *c)
     bool is_after_species = (c->l->previous == NAME || c->l->previous == QUOTED)
                             && (expects(c, ARROW) || (expects(c, COMMA) && !expects(c, TIMES)));
     bool is_after_plus = c->l->previous == PLUS && expects(c, QUOTED);
+    bool is_in_list = c->l->previous == NAME
+                      && (c->l->first == FORMULA || c->l->first == RETAINED || c->l->first == SIGNED);
     if (c->l->first == NUMBER && c->got == TIMES && c->l->previous == NUMBER) {
         ADVISE(c, "write `2 X` without `*`");
         return false;
     }
-    if (!is_after_species && !is_after_plus)
+    if (!is_after_species && !is_after_plus && !is_in_list)
         return false;
-    SAY(c, "unexpected `%s`, expected %s", c->text, is_after_plus ? "a species" : "`+`, an arrow or `,`");
+    say_expected(c);
     ADVISE(c, "put a species whose name has more than letters and digits in quotes: `\"H+\"`, `\"Br-\"`");
+    return true;
+}
+
+/* `A B -> C`. */
+static bool missing_plus(complaint *c)
+{
+    if ((c->got != NAME && c->got != QUOTED && c->got != NUMBER) || c->l->level > 0 || !expects(c, PLUS)
+        || expects(c, TIMES) || (c->l->previous != NAME && c->l->previous != QUOTED))
+        return false;
+    SAY(c, "a `+` or an arrow is missing before `%s`", c->text);
+    ADVISE(c, "write `A + B -> C`; a name with a blank in it stands in quotes");
     return true;
 }
 
@@ -356,6 +369,15 @@ static bool bare_title(complaint *c)
     return true;
 }
 
+static bool bare_units(complaint *c)
+{
+    if (c->l->previous != UNITS)
+        return false;
+    say_expected(c);
+    ADVISE(c, "write `units M s`, or `units none`");
+    return true;
+}
+
 static bool range_without_dots(complaint *c)
 {
     if (!expects(c, DOTS) || (c->got != COMMA && c->got != MINUS && c->got != NEWLINE && c->got != NAME
@@ -368,17 +390,7 @@ static bool range_without_dots(complaint *c)
 
 static bool within_without_factor(complaint *c)
 {
-    if (c->l->previous != NAME || c->got != NUMBER || !expects(c, TIMES))
-        return false;
-    span before = c->where;
-    size_t length;
-    const char *line;
-    if (!source_line(diagnostics_source(c->l->build.diagnostics), before.line, &line, &length))
-        return false;
-    const char *place = line + (c->l->offset - c->l->where_offset) - strlen(c->text);
-    while (place > line && place[-1] == ' ')
-        place--;
-    if (place - line < 7 || memcmp(place - 6, "within", 6) != 0)
+    if (c->l->previous != NAME || c->got != NUMBER || !c->l->is_within)
         return false;
     SAY(c, "unexpected `%s` behind `within`", c->text);
     ADVISE(c, "write `within factor %s`", c->text);
@@ -399,7 +411,7 @@ static bool leading_operator(complaint *c)
 
 static bool reserved_in(complaint *c)
 {
-    if (c->got != IN || !expects(c, QUOTED))
+    if (c->got != IN || !(expects(c, QUOTED) || expects(c, TITLE)))
         return false;
     SAY(c, "`in` is reserved");
     ADVISE(c, "write a species of that name as `\"in\"`");
@@ -410,7 +422,7 @@ static bool bad_label(complaint *c)
 {
     if (c->l->first != OPEN || c->l->arrows || c->l->level == 0 || c->got == NEWLINE)
         return false;
-    say_expected(c);
+    SAY(c, "unexpected `%s` in parentheses before a reaction", c->text);
     ADVISE(c, "a label has letters, digits and . _ + - ' * only, without blanks: `(R1)`");
     return true;
 }
@@ -418,10 +430,10 @@ static bool bad_label(complaint *c)
 void complaint_report(lexical *l, uint64_t expected)
 {
     static bool (*const slips[])(complaint *) = {
-        swallowed_line, bare_title, blank_behind_bracket, bracket_in_reaction, equals_for_arrow, quoted_definition,
-        definition_for_reaction, unclosed_parenthesis, stray_close, missing_arrow, second_arrow, missing_comma,
+        swallowed_line, bare_title, bare_units, dashes_for_arrow, bad_label, blank_behind_bracket, bracket_in_reaction, equals_for_arrow, quoted_definition,
+        definition_for_reaction, unclosed_parenthesis, stray_close, missing_arrow, second_arrow,
         nameless_setting, unquoted_name, bracketed_species, initial_in_expression, within_without_factor,
-        range_without_dots, missing_operator, quoted_in_expression, leading_operator, reserved_in, bad_label,
+        range_without_dots, missing_operator, quoted_in_expression, reserved_in, leading_operator, missing_plus,
     };
     if (l->current == BAD)
         return;

@@ -32,6 +32,12 @@ void lexical_advance(lexical *l, const char *text, size_t length, span *where)
     l->column += characters;
 }
 
+void lexical_retreat(lexical *l, span where, size_t length)
+{
+    l->offset -= length;
+    l->column = where.column;
+}
+
 static span behind(span where)
 {
     return (span){where.line, where.column + where.length, 1};
@@ -267,7 +273,7 @@ static bool is_used_as_name(const lexical *l)
     rest = skip_blanks(rest, end);
     if (rest == end)
         return false;
-    return strchr("=+-<,", *rest) || (end - rest >= 3 && (memcmp(rest, "\xE2\x86", 2) == 0
+    return strchr("=+-<", *rest) || (end - rest >= 3 && (memcmp(rest, "\xE2\x86", 2) == 0
                                                           || memcmp(rest, "\xE2\x87", 2) == 0));
 }
 
@@ -276,6 +282,7 @@ int lexical_word(lexical *l, const char *text, bool is_first)
     static const struct { const char *word; int kind; } keyword[] = {
         {"title", TITLE}, {"units", UNITS}, {"retained", RETAINED}, {"signed", SIGNED}, {"formula", FORMULA},
     };
+    l->is_within = strcmp(text, "within") == 0;
     if (strcmp(text, "in") == 0)
         return IN;
     if (l->current == UNITS && strcmp(text, "none") == 0)
@@ -284,6 +291,16 @@ int lexical_word(lexical *l, const char *text, bool is_first)
         if (strcmp(text, keyword[i].word) == 0)
             return is_used_as_name(l) ? NAME : keyword[i].kind;
     return NAME;
+}
+
+bool lexical_misses_comma(const lexical *l, const char *word, size_t length)
+{
+    bool is_behind_side = l->current == NAME || l->current == QUOTED || l->current == NUMBER || l->current == CLOSE;
+    if (l->arrows == 0 || l->level > 0 || !is_behind_side || l->is_skipping || !lexical_is_setting(word, length))
+        return false;
+    size_t left;
+    const char *rest = lexical_rest(l, &left);
+    return is_equals(rest, rest + left);
 }
 
 int lexical_number(lexical *l, const char *text, size_t length, span where, syntax_number *value)

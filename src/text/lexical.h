@@ -41,6 +41,7 @@ typedef struct lexical {
     int    first;               /* kind of the statement's first token */
     int    arrows;              /* in this statement */
     int    formula;             /* tokens of `formula NAME =` seen so far: 1, 2, 3; else 0 */
+    bool   is_within;           /* the last NAME is the word `within` */
     bool   is_file_end;         /* the last NEWLINE stands for the end of the text */
     bool   was_ended;           /* the last token was a NEWLINE: the next one starts a statement */
     bool   must_end;            /* after a fault: the parser is to get a NEWLINE first */
@@ -78,9 +79,11 @@ void lexer_start(void *scanner);                                   /* the first 
 void lexer_rewind(void *scanner, size_t offset);                   /* go on at a byte of the buffer */
 
 void lexical_advance(lexical *l, const char *text, size_t length, span *where);
+void lexical_retreat(lexical *l, span where, size_t length);  /* the token just advanced over is read later */
 int  lexical_accept(lexical *l, int kind, span where);   /* note a token; returns its kind, or BAD when nested too deeply */
 bool lexical_newline(lexical *l, span *where);           /* true: the statement ends here */
 int  lexical_word(lexical *l, const char *text, bool is_first);  /* NAME or a keyword */
+bool lexical_misses_comma(const lexical *l, const char *word, size_t length); /* `A -> B k = 1`: before k */
 int  lexical_number(lexical *l, const char *text, size_t length, span where, syntax_number *value);
 int  lexical_semicolon(lexical *l, span where);          /* COMMA, NEWLINE, or 0 to ignore it */
 int  lexical_stranger(lexical *l, const char *text, size_t length, span where);  /* a character with no meaning: BAD */

@@ -129,23 +129,6 @@ syntax_expression *syntax_unary(builder *b, syntax_expression_kind kind, syntax_
     return operand ? node(b, kind, operand, NULL, where) : NULL;
 }
 
-/* A number, or units side by side with or without one. */
-static bool takes_unit(const syntax_expression *e)
-{
-    return e->kind == SYNTAX_NUMBER || e->kind == SYNTAX_NAME || e->kind == SYNTAX_JUXTAPOSED
-        || (e->kind == SYNTAX_POWER && e->left->kind == SYNTAX_NAME);
-}
-
-syntax_expression *syntax_juxtapose(builder *b, syntax_expression *left, syntax_expression *unit, span where)
-{
-    if (!left || !unit)
-        return NULL;
-    if (!takes_unit(left))
-        builder_fault(b, unit->where, "write `*` between them: `... * 1 s^-1` for a unit, `... * k` for a constant",
-                      "a unit follows a plain number, and this does not");
-    return syntax_binary(b, SYNTAX_JUXTAPOSED, left, unit, unit->where, where);
-}
-
 static bool is_adjacent(span a, span b)
 {
     return a.line == b.line && a.column + a.length == b.column;
@@ -340,20 +323,24 @@ syntax_terms syntax_terms_add(syntax_terms list, syntax_term *term)
     return list;
 }
 
-/* A side that is a number alone is empty if it is 0.  `2E1` reads as twenty:
- * say how the species E1 is written. */
+/* A side that is a number alone is empty if it is 0.  `2E1` reads as twenty;
+ * two of a species E1 are meant. */
 syntax_term *syntax_side_number(builder *b, syntax_number number, span where)
 {
     if (!number.text || strcmp(number.text, "0") == 0)
         return NULL;
     const char *exponent = strpbrk(number.text, "eE");
-    char remedy[160] = "write `2 X`, or `0` alone for an empty side";
-    if (exponent)
-        snprintf(remedy, sizeof remedy, "for a species called `%.40s` write `%.*s %.40s`", exponent,
-                 (int)(exponent - number.text < 40 ? exponent - number.text : 40), number.text, exponent);
+    if (!exponent) {
+        builder_fault(b, where, "write `2 X`, or `0` alone for an empty side", "`%.60s` is a number without a species",
+                      number.text);
+        b->has_bad_side = true;
+        return NULL;
+    }
+    char remedy[160];
+    snprintf(remedy, sizeof remedy, "for a species called `%.40s` write `%.*s %.40s`", exponent,
+             (int)(exponent - number.text < 40 ? exponent - number.text : 40), number.text, exponent);
     builder_fault(b, where, remedy, "`%.60s` is a number without a species", number.text);
-    b->has_bad_side = true;
-    return NULL;
+    return syntax_term_new(b, syntax_name_new(b, exponent, false, where));
 }
 
 /* ---- Statements ------------------------------------------------------------ */
@@ -457,23 +444,50 @@ syntax_statement *syntax_labelled(syntax_statement *reaction, const char *label,
     return reaction;
 }
 
+syntax_statement *syntax_broken(syntax_statement *s)
+{
+    if (s)
+        s->is_broken = true;
+    return s;
+}
+
+syntax_statement *syntax_define_broken(builder *b, syntax_statement_kind kind, syntax_text name, span text_where,
+                                       span where)
+{
+    syntax_statement *s = syntax_broken(statement(b, kind, where));
+    if (s) {
+        s->text = name.text;
+        s->is_quoted = name.is_quoted;
+        s->text_where = text_where;
+    }
+    return s;
+}
+
+static void append(syntax_statement **first, syntax_statement **last, syntax_statement *s)
+{
+    if (*last)
+        (*last)->next = s;
+    else
+        *first = s;
+    *last = s;
+}
+
 void syntax_append(builder *b, syntax_statement *s)
 {
-    bool is_explained = b->has_bad_side;
+    bool has_bad_side = b->has_bad_side;
     b->has_bad_side = false;
     if (!s)
         return;
-    if (s->kind == SYNTAX_REACTION && !s->left && !s->right) {
-        if (!is_explained)
-            builder_fault(b, s->arrow_where, "write a species on one side at least", "both sides are empty");
-        return;
+    bool is_empty = s->kind == SYNTAX_REACTION && !s->left && !s->right;
+    if (is_empty && !has_bad_side && !s->is_broken)
+        builder_fault(b, s->arrow_where, "write a species on one side at least", "both sides are empty");
+    if (s->is_broken || has_bad_side || is_empty) {
+        s->is_broken = true;
+        append(&b->tree->first_broken, &b->tree->last_broken, s);
+    } else {
+        append(&b->tree->first, &b->tree->last, s);
+        b->tree->statement_count++;
     }
-    if (b->tree->last)
-        b->tree->last->next = s;
-    else
-        b->tree->first = s;
-    b->tree->last = s;
-    b->tree->statement_count++;
 }
 
 void syntax_free(syntax_tree *tree)

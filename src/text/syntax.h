@@ -100,6 +100,7 @@ typedef struct syntax_statement {
     span arrow_where;
     syntax_term *left, *right;      /* NULL: an empty side */
     syntax_argument *settings;      /* k, kf, kr, K, v, as written */
+    bool is_broken;                 /* in the list of broken ones: what could be read before a fault */
     struct syntax_statement *next;
 } syntax_statement;
 
@@ -112,6 +113,10 @@ typedef struct syntax_tree {
     struct arena *arena;
     syntax_statement *first, *last;
     int statement_count;
+    /* Definitions and reactions that a fault of syntax cut short, so that what
+     * they define or mention is not reported as unknown elsewhere: kind, text or
+     * label, sides and the settings that were read; value is NULL. */
+    syntax_statement *first_broken, *last_broken;
 } syntax_tree;
 
 /* Text to tree.  Faults of syntax go to the list; the tree then holds the
