@@ -202,10 +202,12 @@ static void choose_forms(equations *eq)
 {
     probe_point(eq->system, 0, eq->x);
     evaluator_step_rates(eq->evaluator, eq->x, eq->rate);
+    for (int s = 0; s < eq->system->steps; s++)
+        eq->is_positive[s] = eq->is_alive[s] && is_positive_power_law(eq, s);
     for (int i = 0; i < eq->count; i++) {
         bool is_power = true, has_gain = false, has_loss = false;
         for (int t = eq->start[i]; t < eq->start[i + 1]; t++) {
-            is_power = is_power && is_positive_power_law(eq, eq->term[t].step);
+            is_power = is_power && eq->is_positive[eq->term[t].step];
             has_gain = has_gain || eq->term[t].coefficient > 0;
             has_loss = has_loss || eq->term[t].coefficient < 0;
         }
@@ -226,6 +228,7 @@ static bool allocate(equations *eq)
     eq->unit = memory_array(core, sizeof *eq->unit);
     eq->law = memory_array((size_t)eq->laws->count, sizeof *eq->law);
     eq->is_alive = memory_array((size_t)eq->system->steps, sizeof *eq->is_alive);
+    eq->is_positive = memory_array((size_t)eq->system->steps, sizeof *eq->is_positive);
     eq->start = memory_zeroed(core + 1, sizeof *eq->start);
     eq->is_ratio = memory_array(core, sizeof *eq->is_ratio);
     eq->size = memory_array(core, sizeof *eq->size);
@@ -233,7 +236,7 @@ static bool allocate(equations *eq)
     eq->x = memory_array(n, sizeof *eq->x);
     eq->rate = memory_array((size_t)eq->system->steps, sizeof *eq->rate);
     eq->jacobian = memory_array((size_t)eq->system->nonzeros, sizeof *eq->jacobian);
-    return eq->state && eq->unknown && eq->is_signed && eq->unit && eq->law && eq->is_alive && eq->start &&
+    return eq->state && eq->unknown && eq->is_signed && eq->unit && eq->law && eq->is_alive && eq->is_positive && eq->start &&
            eq->is_ratio && eq->size && eq->law_size && eq->x && eq->rate && eq->jacobian;
 }
 
@@ -293,6 +296,7 @@ void equations_free(equations *eq)
     memory_free(eq->unit);
     memory_free(eq->law);
     memory_free(eq->is_alive);
+    memory_free(eq->is_positive);
     memory_free(eq->start);
     memory_free(eq->term);
     memory_free(eq->is_ratio);

@@ -41,6 +41,7 @@ typedef struct equations {
     int law_count;
     int rows;                       /* count + law_count */
     bool *is_alive;                 /* [steps] takes part, and its rate does not vanish on the face */
+    bool *is_positive;              /* [steps] power law of positive rate, unsigned species alone in it */
     int *start;                     /* [count+1] terms of each balance */
     equations_term *term;
     bool *is_ratio;                 /* [count] balance of power laws: ln(gain/loss), else (gain - loss)/size */

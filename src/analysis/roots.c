@@ -13,6 +13,7 @@
 #include <math.h>
 #include <string.h>
 
+#include "analysis/flux.h"
 #include "analysis/newton.h"
 #include "analysis/starts.h"
 #include "base/memory.h"
@@ -152,13 +153,15 @@ static lb_status run_starts(struct search *s)
 
 lb_status roots_find(equations *eq, const roots_options *options, roots *out, lb_error *err)
 {
+    bool is_possible = !eq->is_inconsistent && !eq->is_unbalanced;
     *out = (roots){0};
-    if (eq->is_inconsistent || eq->is_unbalanced)
-        return LB_OK;
+    lb_status status = is_possible ? flux_is_possible(eq, &is_possible, err) : LB_OK;
+    if (status != LB_OK || !is_possible)
+        return status;
     struct search s = {.eq = eq, .options = options, .out = out, .err = err};
     s.u = memory_array((size_t)eq->count, sizeof *s.u);
     s.walked = memory_array((size_t)eq->count, sizeof *s.walked);
-    lb_status status = s.u && s.walked ? LB_OK : status_no_memory(err);
+    status = s.u && s.walked ? LB_OK : status_no_memory(err);
     if (status == LB_OK && eq->count == 0) {
         status = keep(&s, s.u);
         goto done;
