@@ -25,7 +25,7 @@ const command command_check = {
              "constants with values, units and ranges, reactions with their rates. Faults and\n"
              "warnings go to standard error, each with line, column and what to write instead.\n",
     .examples = "  limbeck check bath.mech\n"
-                "  limbeck check bath.mech --set k2=0.1 --set [A]=2\n"
+                "  limbeck check bath.mech --set k2=0.1 --set '[A]=2'\n"
                 "  limbeck check bath.mech --json\n",
     .run = run,
 };

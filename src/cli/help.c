@@ -51,7 +51,10 @@ static void print_option(const option_spec *option)
 
 static int finish(void)
 {
-    return fflush(stdout) || ferror(stdout) ? EXIT_NOT_COMPLETED : EXIT_ANSWERED;
+    if (fflush(stdout) == 0 && !ferror(stdout))
+        return EXIT_ANSWERED;
+    fprintf(stderr, "limbeck: standard output cannot be written\n");
+    return EXIT_NOT_COMPLETED;
 }
 
 int help_command(const command *c)

@@ -336,7 +336,7 @@ bool options_parse(int argc, char **argv, options *o)
     if (!o->file && !o->help && !o->version) {
         char words[64];
         command_words(o->command, words, sizeof words);
-        return fail(o, "`limbeck --help` shows what there is", "%s needs a mechanism file: %s FILE", words, words);
+        return fail(o, "`limbeck --help` shows what there is", "a mechanism file is missing: %s FILE", words);
     }
     return true;
 }

@@ -62,7 +62,7 @@ const command command_page = {
              "of it there is, its steady states, and whether it oscillates with the constants\n"
              "given, with the evidence.\n",
     .examples = "  limbeck bath.mech\n"
-                "  limbeck bath.mech --set [B]=1.7\n"
+                "  limbeck bath.mech --set '[B]=1.7'\n"
                 "  limbeck bath.mech --json\n"
                 "  limbeck - < bath.mech\n",
     .run = run,

@@ -141,7 +141,7 @@ const command command_run = {
              "below zero is an error, never clipped; the rows until then are kept.\n",
     .examples = "  limbeck run bath.mech --until 3600 > bath.csv\n"
                 "  limbeck run bath.mech --until \"1 h\" --every \"10 s\" -o bath.csv\n"
-                "  limbeck run bath.mech --until 60 --set [X]0=0.2 --json\n",
+                "  limbeck run bath.mech --until 60 --set '[X]0=0.2' --json\n",
     .own = own,
     .own_count = sizeof own / sizeof *own,
     .run = run_command,

@@ -46,6 +46,10 @@ static int exit_status_of(lb_status code)
 
 int session_fail(const session *s, const lb_error *error)
 {
+    if (terminal_interrupted()) {
+        lb_error stopped = {.code = LB_E_STOPPED, .message = "interrupted, with nothing to show yet"};
+        return session_report(s->given, &stopped, s->diagnostics, EXIT_INTERRUPTED);
+    }
     return session_report(s->given, error, s->diagnostics, exit_status_of(error->code));
 }
 

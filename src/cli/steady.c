@@ -41,7 +41,7 @@ const command command_steady = {
              "state, and say of each what kind it is and how fast it relaxes. Eigenvalues are\n"
              "those of the reaction space. A search can miss a state; none is claimed missing.\n",
     .examples = "  limbeck steady bath.mech\n"
-                "  limbeck steady bath.mech --set [B]=1.7\n"
+                "  limbeck steady bath.mech --set '[B]=1.7'\n"
                 "  limbeck steady bath.mech --json\n",
     .run = run,
 };

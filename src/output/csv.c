@@ -7,6 +7,7 @@
 #include "base/buffer.h"
 #include "limbeck.h"
 #include "output/describe.h"
+#include "output/layout.h"
 #include "system/system.h"
 
 /* A field is quoted where it holds a comma, a quote or a line end. */
@@ -34,9 +35,7 @@ static void append_heading(buffer *out, const char *open, const char *name, cons
     if (*units)
         buffer_printf(&text, " [%s]", units);
     append_field(out, buffer_get(&text));
-    if (buffer_status(&text) != LB_OK && buffer_status(out) == LB_OK)
-        out->status = buffer_status(&text);
-    buffer_clear(&text);
+    layout_end(&text, out);
 }
 
 /* Values that are not finite are left empty. */

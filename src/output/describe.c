@@ -125,7 +125,7 @@ void describe_opening(buffer *out, const lb_layout *layout, const lb_network *ne
     append_boundary(&text, net);
     append_counts(&text, net);
     layout_printf(out, layout, 0, "%s", buffer_get(&text));
-    buffer_clear(&text);
+    layout_end(&text, out);
 }
 
 void describe_law(buffer *out, const lb_network *net, const int64_t *law)
@@ -165,7 +165,7 @@ void describe_conserved(buffer *out, const lb_layout *layout, const lb_system *s
         grid_number(&g, total[i], 5);
         grid_cell(&g, "%s", describe_concentration_unit(net));
         grid_cell(&g, "= %s", buffer_get(&law));
-        buffer_clear(&law);
+        grid_end(&g, &law);
     }
     grid_write(&g, layout, 2, out);
 }
@@ -206,5 +206,5 @@ void describe_fast_constants(buffer *out, const lb_layout *layout, const lb_netw
             continue;
         layout_printf(out, layout, 2, "%s is faster than diffusion allows in water (about 1e10 M^-1 s^-1).", constant->name);
     }
-    buffer_clear(&units);
+    layout_end(&units, out);
 }

@@ -59,6 +59,13 @@ void grid_cell(grid *g, const char *format, ...)
     g->cell[g->count++] = cell;
 }
 
+void grid_end(grid *g, buffer *text)
+{
+    if (buffer_status(text) != LB_OK && g->status == LB_OK)
+        g->status = buffer_status(text);
+    buffer_clear(text);
+}
+
 void grid_number(grid *g, double value, int digits)
 {
     char text[LAYOUT_NUMBER];
@@ -156,9 +163,7 @@ static void write_wrapped(const lb_layout *layout, int start, int indent, const 
         layout_paragraph(&text, layout, indent + 2 * GAP, GAP, cell);
         buffer_append(line, buffer_get(&text));
     }
-    if (buffer_status(&text) != LB_OK && buffer_status(line) == LB_OK)
-        line->status = buffer_status(&text);
-    buffer_clear(&text);
+    layout_end(&text, line);
 }
 
 static void write_row(const grid *g, const measure *m, const bool *is_empty, size_t row,
@@ -184,9 +189,7 @@ static void write_row(const grid *g, const measure *m, const bool *is_empty, siz
     if (line.length == 0 || line.data[line.length - 1] != '\n')
         buffer_char(&line, '\n');
     buffer_append_n(out, buffer_get(&line), line.length);
-    if (buffer_status(&line) != LB_OK && buffer_status(out) == LB_OK)
-        out->status = buffer_status(&line);
-    buffer_clear(&line);
+    layout_end(&line, out);
 }
 
 void grid_write(grid *g, const lb_layout *layout, int indent, buffer *out)

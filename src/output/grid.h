@@ -27,6 +27,8 @@ typedef struct grid {
 void grid_init(grid *g, const char *align, bool has_header);
 /* Append a cell, row after row. */
 void grid_cell(grid *g, const char *format, ...) __attribute__((format(printf, 2, 3)));
+/* The end of a text made for a cell: clear it, and hand its failure to the grid. */
+void grid_end(grid *g, buffer *text);
 void grid_number(grid *g, double value, int digits);
 /* Write all rows, every line after `indent` columns, and clear the grid.
  * A column without text is left out.  Where a row is too wide for the page its

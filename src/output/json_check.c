@@ -60,7 +60,7 @@ static json_t *definition_value(json_writer *w, const lb_network *net, const net
 {
     buffer text;
     buffer_init(&text);
-    expression_write(&net->graph, definition->value, network_leaf_name, net, &text);
+    network_write(net, definition->value, true, &text);
     json_t *object = json_object();
     json_put(w, object, "name", json_text(definition->name));
     json_put(w, object, "expression", buffer_status(&text) == LB_OK ? json_text(buffer_get(&text)) : NULL);
@@ -83,7 +83,7 @@ static json_t *balance_value(json_writer *w, const lb_network *net, const networ
         } else {
             buffer text;
             buffer_init(&text);
-            expression_write(&net->graph, entry->expression, network_leaf_name, net, &text);
+            network_write(net, entry->expression, false, &text);
             coefficient = buffer_status(&text) == LB_OK ? json_text(buffer_get(&text)) : NULL;
             buffer_clear(&text);
         }

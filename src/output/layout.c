@@ -82,6 +82,13 @@ void layout_quantity(buffer *out, double value, int digits, const char *unit)
     buffer_printf(out, "%s%s%s", number, *unit ? " " : "", unit);
 }
 
+void layout_end(buffer *text, buffer *out)
+{
+    if (buffer_status(text) != LB_OK && buffer_status(out) == LB_OK)
+        out->status = buffer_status(text);
+    buffer_clear(text);
+}
+
 void layout_strong(buffer *out, const lb_layout *layout, const char *text)
 {
     if (layout && layout->colour)
@@ -139,7 +146,5 @@ void layout_printf(buffer *out, const lb_layout *layout, int indent, const char 
     va_end(list);
     if (buffer_status(&text) == LB_OK)
         layout_paragraph(out, layout, indent, 0, buffer_get(&text));
-    else if (buffer_status(out) == LB_OK)
-        out->status = buffer_status(&text);
-    buffer_clear(&text);
+    layout_end(&text, out);
 }

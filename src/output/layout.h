@@ -20,6 +20,9 @@ void layout_complex(lb_complex value, int digits, char text[LAYOUT_COMPLEX]);
 /* A number and its unit, which may be "". */
 void layout_quantity(buffer *out, double value, int digits, const char *unit);
 
+/* The end of a text made in between: clear it, and hand its failure to out. */
+void layout_end(buffer *text, buffer *out);
+
 /* A heading on a line of its own, after an empty line; bold where there is colour. */
 void layout_heading(buffer *out, const lb_layout *layout, const char *text);
 void layout_strong(buffer *out, const lb_layout *layout, const char *text);

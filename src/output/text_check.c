@@ -32,7 +32,7 @@ static void quantity_cell(grid *g, bool applies, double value, const char *units
     if (applies)
         layout_quantity(&text, value, DIGITS, units);
     grid_cell(g, "%s", buffer_get(&text));
-    buffer_clear(&text);
+    grid_end(g, &text);
 }
 
 static const char *role_text(const network_species *species)
@@ -67,7 +67,7 @@ static void write_species(const lb_network *net, const lb_layout *layout, buffer
         quantity_cell(&g, isfinite(species->feed_value), species->feed_value, units);
         grid_cell(&g, "%s", buffer_get(&range));
         grid_cell(&g, "%s", species->formula ? species->formula : "");
-        buffer_clear(&range);
+        grid_end(&g, &range);
     }
     layout_heading(out, layout, "Species");
     grid_write(&g, layout, 2, out);
@@ -88,7 +88,7 @@ static void write_constants(const lb_network *net, const lb_layout *layout, buff
         grid_number(&g, constant->value, DIGITS);
         grid_cell(&g, "%s", constant->unit ? constant->unit : "");
         grid_cell(&g, "%s", buffer_get(&range));
-        buffer_clear(&range);
+        grid_end(&g, &range);
     }
     layout_heading(out, layout, "Constants");
     grid_write(&g, layout, 2, out);
@@ -105,7 +105,7 @@ static void write_definitions(const lb_network *net, const network_definition *l
     for (int i = 0; i < count; i++) {
         buffer text;
         buffer_init(&text);
-        expression_write(&net->graph, list[i].value, network_leaf_name, net, &text);
+        network_write(net, list[i].value, true, &text);
         grid_cell(&g, "%s", list[i].name);
         if (isnan(list[i].number))
             grid_cell(&g, "%s", "");
@@ -113,7 +113,7 @@ static void write_definitions(const lb_network *net, const network_definition *l
             grid_number(&g, list[i].number, DIGITS);
         grid_cell(&g, "%s", list[i].unit ? list[i].unit : "");
         grid_cell(&g, "= %s", buffer_get(&text));
-        buffer_clear(&text);
+        grid_end(&g, &text);
     }
     layout_heading(out, layout, heading);
     grid_write(&g, layout, 2, out);
@@ -126,7 +126,7 @@ static void append_factor(buffer *out, const lb_network *net, const network_entr
     const char *separator = buffer_get(out)[0] ? ", " : "";
     if (entry->expression != EXPRESSION_NONE) {
         buffer_printf(out, "%s%s made at (", separator, name);
-        expression_write(&net->graph, entry->expression, network_leaf_name, net, out);
+        network_write(net, entry->expression, false, out);
         buffer_append(out, ") v");
         return;
     }
@@ -151,7 +151,7 @@ static void write_reactions(const lb_network *net, const lb_layout *layout, buff
         grid_cell(&g, "%s", reaction->label);
         grid_cell(&g, "%s", reaction->equation);
         grid_cell(&g, "v = %s%s%s", reaction->rate, buffer_get(&factors)[0] ? "; " : "", buffer_get(&factors));
-        buffer_clear(&factors);
+        grid_end(&g, &factors);
     }
     layout_heading(out, layout, "Reactions");
     grid_write(&g, layout, 2, out);

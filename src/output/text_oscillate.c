@@ -48,7 +48,7 @@ static void write_verdict(buffer *out, const lb_layout *layout, const lb_network
         buffer_printf(out, " (witnessed): closed orbits of every size; period of this one %s\n", buffer_get(&period));
     else
         buffer_append(out, " (searched): no sustained oscillation was found, which does not prove that there is none\n");
-    buffer_clear(&period);
+    layout_end(&period, out);
 }
 
 static void write_amplitudes(buffer *out, const lb_layout *layout, const lb_network *net, const lb_cycle *cycle)
@@ -90,7 +90,7 @@ static void write_multipliers(buffer *out, const lb_layout *layout, const lb_cyc
         buffer_printf(&text, " and %d smaller", cycle->multiplier_count - shown);
     const char *judgement = cycle->stable == LB_YES ? ", all inside the unit circle" : "";
     layout_printf(out, layout, 2, "Floquet multipliers, the one along the orbit left out%s: %s.", judgement, buffer_get(&text));
-    buffer_clear(&text);
+    layout_end(&text, out);
 }
 
 static void write_confirmation(buffer *out, const lb_layout *layout, const lb_cycle *cycle)
@@ -108,7 +108,7 @@ static void write_confirmation(buffer *out, const lb_layout *layout, const lb_cy
     else
         buffer_printf(&text, "; a second method and tolerance gives the same period to %s.", confirmed);
     layout_printf(out, layout, 2, "%s", buffer_get(&text));
-    buffer_clear(&text);
+    layout_end(&text, out);
 }
 
 /* The constants that a search may turn: the witness's, the file's, the range. */
@@ -153,7 +153,7 @@ static void write_transient(buffer *out, const lb_layout *layout, const lb_netwo
         buffer_printf(&text, ", each swing %s times the last", decay);
     }
     layout_printf(out, layout, 2, "%s. It dies out.", buffer_get(&text));
-    buffer_clear(&text);
+    layout_end(&text, out);
 }
 
 static void write_effort(buffer *out, const lb_layout *layout, const lb_oscillate_answer *answer)
@@ -172,7 +172,7 @@ static void write_effort(buffer *out, const lb_layout *layout, const lb_oscillat
     if (answer->interrupted)
         buffer_append(&text, " The search was interrupted, and is not complete.");
     layout_printf(out, layout, 2, "%s", buffer_get(&text));
-    buffer_clear(&text);
+    layout_end(&text, out);
     if (answer->verdict == LB_NOT_FOUND && answer->limits && *answer->limits)
         layout_printf(out, layout, 2, "%s", answer->limits);
 }

@@ -29,7 +29,7 @@ static void write_search(buffer *out, const lb_layout *layout, const lb_network 
     if (steady->interrupted)
         buffer_append(&text, " It was interrupted, and is not complete.");
     layout_printf(out, layout, 2, "%s", buffer_get(&text));
-    buffer_clear(&text);
+    layout_end(&text, out);
     if (steady->continuum > 0)
         layout_printf(out, layout, 2,
                       "There is a continuum of steady states (of dimension %d), not single ones; a point of it is shown.",
@@ -39,7 +39,7 @@ static void write_search(buffer *out, const lb_layout *layout, const lb_network 
     if (*buffer_get(&text))
         layout_printf(out, layout, 2, "No rate depends on %s and no conserved total fixes it: it may accumulate, and has no place below.",
                       buffer_get(&text));
-    buffer_clear(&text);
+    layout_end(&text, out);
 }
 
 /* The mode that a bystander sees: the fastest growth, else the slowest decay. */
@@ -103,7 +103,7 @@ void steady_write(buffer *out, const lb_layout *layout, const lb_system *system,
     buffer_init(&heading);
     describe_count(&heading, steady->count, "steady state");
     layout_heading(out, layout, buffer_get(&heading));
-    buffer_clear(&heading);
+    layout_end(&heading, out);
     write_search(out, layout, net, steady);
     int room = (layout_width(layout) - LABEL_WIDTH) / STATE_WIDTH;
     size_t columns = room < 1 ? 1 : room > GRID_COLUMNS - 1 ? GRID_COLUMNS - 1 : (size_t)room;
@@ -129,7 +129,7 @@ static void mode_cells(grid *g, const lb_mode *mode, const char *time_unit)
     layout_quantity(&swing, mode->period, DIGITS, time_unit);
     layout_number(mode->damping, 3, damping);
     grid_cell(g, "period %s, each swing %s times the last", buffer_get(&swing), damping);
-    buffer_clear(&swing);
+    grid_end(g, &swing);
 }
 
 static void write_modes(buffer *out, const lb_layout *layout, const lb_network *net, const lb_steady_state *state)
