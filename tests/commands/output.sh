@@ -1,0 +1,12 @@
+# Files are replaced whole, links and permissions stay, folders are made.
+mkdir "$SCRATCH/real"
+echo old >"$SCRATCH/real/course.csv"
+chmod 640 "$SCRATCH/real/course.csv"
+ln -s real/course.csv "$SCRATCH/course.csv"
+try run networks/brusselator.mech --until 1 --every 0.5 -o "$SCRATCH/course.csv"
+ls -l "$SCRATCH/real/course.csv" | cut -c 1-10
+[ -L "$SCRATCH/course.csv" ] && head -n 1 "$SCRATCH/course.csv"
+try emit networks/brusselator.mech -o "$SCRATCH/new/model"
+try emit networks/brusselator.mech -o "$SCRATCH/new/model/" --name other --quiet
+try emit networks/brusselator.mech -o "$SCRATCH/new/model" --json
+ls -A "$SCRATCH/new/model"
