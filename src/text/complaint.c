@@ -146,16 +146,6 @@ static void say_expected(complaint *c)
 
 /* ---- The usual slips ------------------------------------------------------- */
 
-/* Whether a setting, `k = ...`, follows the last token. */
-static bool is_setting_next(const complaint *c)
-{
-    size_t length;
-    const char *rest = lexical_rest(c->l, &length);
-    rest += strspn(rest, " \t");
-    size_t word = strcspn(rest, " \t=\r\n");
-    return lexical_is_setting(rest, word) && rest[word + strspn(rest + word, " \t")] == '=';
-}
-
 /* The faulty token continues a line that should have ended. */
 static bool swallowed_line(complaint *c)
 {
@@ -207,7 +197,7 @@ static bool quoted_definition(complaint *c)
 
 static bool definition_for_reaction(complaint *c)
 {
-    if (c->got != COMMA || c->l->first != NAME || c->l->arrows || c->l->level || !is_setting_next(c))
+    if (c->got != COMMA || c->l->first != NAME || c->l->arrows || c->l->level || !lexical_is_setting(lexical_rest(c->l) + strspn(lexical_rest(c->l), " \t")))
         return false;
     SAY(c, "a definition has no settings");
     ADVISE(c, "if this is a reaction, write `->` for `=`");
@@ -270,9 +260,7 @@ static bool nameless_setting(complaint *c)
 /* `A -- B`. */
 static bool dashes_for_arrow(complaint *c)
 {
-    size_t length;
-    const char *rest = lexical_rest(c->l, &length);
-    if (c->got != MINUS || !expects(c, ARROW) || length == 0 || rest[0] != '-')
+    if (c->got != MINUS || !expects(c, ARROW) || lexical_rest(c->l)[0] != '-')
         return false;
     SAY(c, "`--` is no arrow");
     ADVISE(c, "write `->`");

@@ -28,6 +28,7 @@ void lexical_advance(lexical *l, const char *text, size_t length, span *where)
     for (size_t i = 0; i < length; i++)
         characters += ((unsigned char)text[i] & 0xC0) != 0x80;
     *where = (span){l->line, l->column, characters};
+    l->token_offset = l->offset;
     l->offset += length;
     l->column += characters;
 }
@@ -43,12 +44,10 @@ static span behind(span where)
     return (span){where.line, where.column + where.length, 1};
 }
 
-const char *lexical_rest(const lexical *l, size_t *length)
+const char *lexical_rest(const lexical *l)
 {
-    const char *rest = source_text(l->source) + (l->offset < source_length(l->source) ? l->offset
-                                                                                      : source_length(l->source));
-    *length = strcspn(rest, "\r\n");
-    return rest;
+    size_t length = source_length(l->source);
+    return source_text(l->source) + (l->offset < length ? l->offset : length);
 }
 
 /* ---- What a line looks like ------------------------------------------------ */
@@ -59,19 +58,24 @@ static bool is_word_byte(char c)
         || (unsigned char)c >= 0x80;
 }
 
-static size_t word_length(const char *text, const char *end)
+/* The text is terminated and each of these stops at a line's end. */
+static size_t word_length(const char *text)
 {
     const char *at = text;
-    while (at < end && is_word_byte(*at))
+    while (is_word_byte(*at))
         at++;
     return (size_t)(at - text);
 }
 
-static const char *skip_blanks(const char *text, const char *end)
+static const char *skip_blanks(const char *text)
 {
-    while (text < end && (*text == ' ' || *text == '\t'))
-        text++;
-    return text;
+    return text + strspn(text, " \t");
+}
+
+static bool is_equals(const char *at)
+{
+    at = skip_blanks(at);
+    return at[0] == '=' && at[1] != '>' && at[1] != '=';
 }
 
 static bool is_word(const char *word, size_t length, const char *of[], size_t count)
@@ -82,74 +86,62 @@ static bool is_word(const char *word, size_t length, const char *of[], size_t co
     return false;
 }
 
-bool lexical_is_setting(const char *word, size_t length)
+bool lexical_is_setting(const char *text)
 {
     static const char *settings[] = {"k", "kf", "kr", "K", "v"};
-    return is_word(word, length, settings, sizeof settings / sizeof settings[0]);
+    size_t length = word_length(text);
+    return is_word(text, length, settings, sizeof settings / sizeof settings[0]) && is_equals(text + length);
 }
 
-static bool is_equals(const char *at, const char *end)
+static bool has_arrow(const char *at)
 {
-    at = skip_blanks(at, end);
-    return at < end && *at == '=' && !(at + 1 < end && (at[1] == '>' || at[1] == '='));
-}
-
-static bool has_arrow(const char *at, const char *end)
-{
-    for (bool is_quoted = false; at < end; at++) {
+    for (bool is_quoted = false; *at && *at != '\n' && *at != '\r'; at++) {
         if (*at == '"')
             is_quoted = !is_quoted;
         if (is_quoted)
             continue;
         if (*at == '#')
             return false;
-        if (end - at >= 2 && (memcmp(at, "->", 2) == 0 || memcmp(at, "=>", 2) == 0))
+        if (at[1] == '>' && (*at == '-' || *at == '='))
             return true;
-        if (end - at >= 3 && (memcmp(at, "\xE2\x86\x92", 3) == 0 || memcmp(at, "\xE2\x87\x8C", 3) == 0))
+        if (strncmp(at, "\xE2\x86\x92", 3) == 0 || strncmp(at, "\xE2\x87\x8C", 3) == 0)
             return true;
     }
     return false;
 }
 
 /* `[X] =`, `[X]0 =` or `[X]in =`. */
-static bool is_bracket_definition(const char *at, const char *end)
+static bool is_bracket_definition(const char *at)
 {
-    const char *close = memchr(at, ']', (size_t)(end - at));
-    if (!close)
-        return false;
-    close++;
-    return is_equals(close + word_length(close, end), end);
+    at += strcspn(at, "]\r\n");
+    return *at == ']' && is_equals(at + 1 + word_length(at + 1));
 }
 
 /* A word that opens a statement, with what it opens behind it. */
-static bool is_opening(const char *word, size_t length, const char *behind_word, const char *end)
+static bool is_opening(const char *at, size_t length)
 {
     static const char *openings[] = {"title", "units", "retained", "signed", "formula"};
-    const char *next = skip_blanks(behind_word, end);
-    return is_word(word, length, openings, sizeof openings / sizeof openings[0]) && next > behind_word && next < end
+    const char *next = skip_blanks(at + length);
+    return is_word(at, length, openings, sizeof openings / sizeof openings[0]) && next > at + length
         && (is_word_byte(*next) || *next == '"');
 }
 
 bool lexical_is_statement(const lexical *l, size_t offset, int above)
 {
-    const char *end = source_text(l->source) + source_length(l->source);
-    const char *at = source_text(l->source) + (offset < source_length(l->source) ? offset
-                                                                                 : source_length(l->source));
-    end = at + strcspn(at, "\r\n");
-    at = skip_blanks(at, end);
-    if (at == end)
+    if (offset >= source_length(l->source))
         return false;
-    if (*at == '[' && is_bracket_definition(at, end))
+    const char *at = skip_blanks(source_text(l->source) + offset);
+    size_t length = word_length(at);
+    if (*at == '[' && is_bracket_definition(at))
         return true;
-    size_t length = word_length(at, end);
-    if (length > 0 && is_opening(at, length, at + length, end))
+    if (length > 0 && is_opening(at, length))
         return true;
-    if (length > 0 && is_equals(at + length, end)) {
+    if (length > 0 && is_equals(at + length)) {
         /* `A = ...` may be an argument, `k = ...` a setting. */
         bool is_listed = above == COMMA || above == OPEN;
-        return !(is_listed && (l->level > 0 || lexical_is_setting(at, length)));
+        return !(is_listed && (l->level > 0 || lexical_is_setting(at)));
     }
-    return has_arrow(at, end);
+    return has_arrow(at);
 }
 
 /* ---- Tokens ---------------------------------------------------------------- */
@@ -267,14 +259,8 @@ bool lexical_newline(lexical *l, span *where)
 /* A keyword is a name after all when the line reads `title = 3` or `title + X ->`. */
 static bool is_used_as_name(const lexical *l)
 {
-    size_t length;
-    const char *rest = lexical_rest(l, &length);
-    const char *end = rest + length;
-    rest = skip_blanks(rest, end);
-    if (rest == end)
-        return false;
-    return strchr("=+-<", *rest) || (end - rest >= 3 && (memcmp(rest, "\xE2\x86", 2) == 0
-                                                          || memcmp(rest, "\xE2\x87", 2) == 0));
+    const char *rest = skip_blanks(lexical_rest(l));
+    return (*rest && strchr("=+-<", *rest)) || strncmp(rest, "\xE2\x86", 2) == 0 || strncmp(rest, "\xE2\x87", 2) == 0;
 }
 
 int lexical_word(lexical *l, const char *text, bool is_first)
@@ -293,14 +279,11 @@ int lexical_word(lexical *l, const char *text, bool is_first)
     return NAME;
 }
 
-bool lexical_misses_comma(const lexical *l, const char *word, size_t length)
+bool lexical_misses_comma(const lexical *l)
 {
     bool is_behind_side = l->current == NAME || l->current == QUOTED || l->current == NUMBER || l->current == CLOSE;
-    if (l->arrows == 0 || l->level > 0 || !is_behind_side || l->is_skipping || !lexical_is_setting(word, length))
-        return false;
-    size_t left;
-    const char *rest = lexical_rest(l, &left);
-    return is_equals(rest, rest + left);
+    return l->arrows > 0 && l->level == 0 && is_behind_side && !l->is_skipping
+        && lexical_is_setting(source_text(l->source) + l->token_offset);
 }
 
 int lexical_number(lexical *l, const char *text, size_t length, span where, syntax_number *value)
@@ -323,7 +306,7 @@ int lexical_number(lexical *l, const char *text, size_t length, span where, synt
 
 syntax_text lexical_bracket(lexical *l, const char *text, size_t length, span where)
 {
-    const char *end = memchr(text, ']', length), *start = skip_blanks(text + 1, end);
+    const char *end = memchr(text, ']', length), *start = skip_blanks(text + 1);
     syntax_text name = {NULL, *start == '"'};
     if (name.is_quoted) {
         /* a quoted name may hold a bracket */
@@ -343,12 +326,9 @@ syntax_text lexical_bracket(lexical *l, const char *text, size_t length, span wh
 
 int lexical_semicolon(lexical *l, span where)
 {
-    size_t length;
-    const char *rest = lexical_rest(l, &length), *end = rest + length;
-    rest = skip_blanks(rest, end);
-    bool is_last = rest == end || *rest == '#';
-    size_t word = word_length(rest, end);
-    bool is_comma = !is_last && lexical_is_setting(rest, word) && is_equals(rest + word, end);
+    const char *rest = skip_blanks(lexical_rest(l));
+    bool is_last = !*rest || strchr("\r\n#", *rest);
+    bool is_comma = lexical_is_setting(rest);
     builder_fault(&l->build, where, is_last ? "leave it out: the line's end ends a statement"
                   : is_comma ? "write `,`" : "write each statement on its own line",
                   "`;` does not separate anything");

@@ -29,6 +29,7 @@ typedef struct lexical {
 
     /* Where the lexer is: the next character. */
     size_t offset;              /* bytes */
+    size_t token_offset;        /* where the token that ends there starts */
     size_t line_offset;         /* where its line starts */
     int    line, column;
 
@@ -83,7 +84,7 @@ void lexical_retreat(lexical *l, span where, size_t length);  /* the token just 
 int  lexical_accept(lexical *l, int kind, span where);   /* note a token; returns its kind, or BAD when nested too deeply */
 bool lexical_newline(lexical *l, span *where);           /* true: the statement ends here */
 int  lexical_word(lexical *l, const char *text, bool is_first);  /* NAME or a keyword */
-bool lexical_misses_comma(const lexical *l, const char *word, size_t length); /* `A -> B k = 1`: before k */
+bool lexical_misses_comma(const lexical *l); /* `A -> B k = 1`: before k */
 int  lexical_number(lexical *l, const char *text, size_t length, span where, syntax_number *value);
 int  lexical_semicolon(lexical *l, span where);          /* COMMA, NEWLINE, or 0 to ignore it */
 int  lexical_stranger(lexical *l, const char *text, size_t length, span where);  /* a character with no meaning: BAD */
@@ -91,12 +92,12 @@ syntax_text lexical_bracket(lexical *l, const char *text, size_t length, span wh
 
 /* ---- Looking at the text --------------------------------------------------- */
 
-/* The rest of the line behind the last token. */
-const char *lexical_rest(const lexical *l, size_t *length);
+/* The text behind the last token; terminated. */
+const char *lexical_rest(const lexical *l);
 /* Whether the line that starts at an offset reads like a statement of its own,
  * given the last token of the line above. */
 bool lexical_is_statement(const lexical *l, size_t offset, int above);
-/* `k`, `kf`, `kr`, `K` or `v`: a setting of a reaction. */
-bool lexical_is_setting(const char *word, size_t length);
+/* Whether a setting of a reaction starts the text: `k =`, `kf =`, `kr =`, `K =` or `v =`. */
+bool lexical_is_setting(const char *text);
 
 #endif
