@@ -36,7 +36,7 @@ typedef struct unit_factor {
 enum { UNIT_FACTORS = 4 };          /* in a unit of concentration */
 
 typedef struct unit_system {
-    bool none;                      /* `units none` */
+    bool none;                      /* `units none`: the rest does not count */
     unit concentration, time;
     char concentration_text[64];    /* as written: "M", "molecule/cm^3" */
     char time_text[16];
