@@ -482,6 +482,8 @@ void expression_mark(const expression_graph *g, expression root, unsigned char *
 
 double expression_power(double x, double n)
 {
+    if (n == 2)
+        return x * x;
     if (n == 0.5)
         return x > 0 ? sqrt(x) : 0 * x;
     if (x < 0 && !is_whole(n))

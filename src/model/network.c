@@ -196,7 +196,7 @@ int network_add_reaction(lb_network *net, const char *label, bool is_reversible)
     return grown[index].label ? index : -1;
 }
 
-bool rational_of_double(double value, int64_t *num, int64_t *den)
+bool fraction_of_double(double value, int64_t *num, int64_t *den)
 {
     /* Convergents of the continued fraction, until one is this double. */
     int64_t p0 = 0, q0 = 1, p1 = 1, q1 = 0;
@@ -228,7 +228,8 @@ static int64_t gcd(int64_t a, int64_t b)
     return a < 0 ? -a : a;
 }
 
-bool rational_add(int64_t *num, int64_t *den, int64_t num2, int64_t den2)
+/* num/den += num2/den2 in lowest terms; false, and unchanged, when it leaves 64 bits. */
+static bool fraction_add(int64_t *num, int64_t *den, int64_t num2, int64_t den2)
 {
     int64_t common = gcd(*den, den2);
     int64_t left, right, top, bottom;
@@ -250,7 +251,7 @@ expression coefficient_expression(expression_graph *g, int64_t num, int64_t den,
 bool coefficient_settle(expression_graph *g, int64_t *num, int64_t *den, expression *e)
 {
     double value;
-    if (*e != EXPRESSION_NONE && expression_is_number(g, *e, &value) && rational_of_double(value, num, den))
+    if (*e != EXPRESSION_NONE && expression_is_number(g, *e, &value) && fraction_of_double(value, num, den))
         *e = EXPRESSION_NONE;
     return *e == EXPRESSION_NONE;
 }
@@ -258,7 +259,7 @@ bool coefficient_settle(expression_graph *g, int64_t *num, int64_t *den, express
 bool coefficient_add(expression_graph *g, int64_t *num, int64_t *den, expression *e,
                      int64_t num2, int64_t den2, expression e2)
 {
-    if (*e == EXPRESSION_NONE && e2 == EXPRESSION_NONE && rational_add(num, den, num2, den2))
+    if (*e == EXPRESSION_NONE && e2 == EXPRESSION_NONE && fraction_add(num, den, num2, den2))
         return true;
     expression left = coefficient_expression(g, *num, *den, *e);
     expression sum = expression_binary(g, EXPRESSION_ADD, left, coefficient_expression(g, num2, den2, e2));

@@ -9,9 +9,7 @@
 void *network_grow(void *array, int count, size_t size);
 
 /* The fraction with terms below 10^9 and 10^6 that is this very double, if there is one. */
-bool rational_of_double(double value, int64_t *num, int64_t *den);
-/* num/den += num2/den2 in lowest terms; false, and unchanged, when it leaves 64 bits. */
-bool rational_add(int64_t *num, int64_t *den, int64_t num2, int64_t den2);
+bool fraction_of_double(double value, int64_t *num, int64_t *den);
 
 /* A coefficient is num/den when e is EXPRESSION_NONE, else e. */
 expression coefficient_expression(expression_graph *g, int64_t num, int64_t den, expression e);

@@ -4,7 +4,11 @@
  * aside, steps that change nothing else are dropped, repeatedly (design: "What
  * is analysed").  Laws, rank and the reaction space exist for the whole network
  * (for totals and for species set aside) and for the core (for steady states,
- * eigenvalues, cycles). */
+ * eigenvalues, cycles).
+ *
+ * Laws of very large networks may be out of reach (conservation.h, LB_E_LIMIT):
+ * the system is then made without them, so that it can be integrated; `laws_known`
+ * is false, and what needs laws or the reaction space must refuse. */
 #ifndef LIMBECK_SYSTEM_SYSTEM_H
 #define LIMBECK_SYSTEM_SYSTEM_H
 
@@ -21,6 +25,7 @@ struct lb_system {
     int steps;                      /* with flows */
     int nonzeros;
     int *column_start, *row;        /* Jacobian pattern, [n+1], [nonzeros] */
+    bool laws_known;                /* else: no laws, rank -1, nothing independent or dependent */
     conservation laws;              /* of all n states */
 
     int core;                       /* number of core states */
@@ -33,6 +38,10 @@ struct lb_system {
     int *dependent;                 /* [core - rank] core indices */
     double *elimination;            /* [(core-rank)*rank] L, column-major:
                                      * x_dependent[d] = const_d - sum_i L[d + i*(core-rank)] x_independent[i] */
+    int fixed_count;                /* species set aside whose value the laws fix */
+    int *fixed_state;               /* [fixed_count] */
+    double *fixed_weight;           /* [fixed_count*n] row w of each: w x is conserved, w has 1 at the species
+                                     * and 0 at all others set aside */
     struct table *table;            /* system/table.h */
 };
 

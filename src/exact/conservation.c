@@ -1,0 +1,529 @@
+/* Conservation laws in exact integers.
+ *
+ * The left kernel of the stoichiometric matrix by sparse elimination (one basis
+ * vector for each free species), then the extreme rays of its non-negative part,
+ * then a basis: independent rays of least support first, as a greedy choice over
+ * a matroid, completed by vectors of the kernel's basis (cf. Schuster and Hoefer,
+ * J. Chem. Soc. Faraday Trans. 87 (1991) 2561).  The same elimination, on the laws,
+ * gives dependent species and what laws fix. */
+#include "exact/conservation.h"
+
+#include <limits.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "base/memory.h"
+#include "base/status.h"
+#include "exact/balance.h"
+#include "exact/cone.h"
+#include "exact/elimination.h"
+
+void conservation_clear(conservation *laws)
+{
+    memory_free(laws->law);
+    *laws = (conservation){0};
+}
+
+/* ---- The kernel ----------------------------------------------------------------- */
+
+typedef struct ranked {
+    size_t key, index;
+} ranked;
+
+static int by_key(const void *a, const void *b)
+{
+    const ranked *left = a, *right = b;
+    if (left->key != right->key)
+        return left->key < right->key ? -1 : 1;
+    return (left->index > right->index) - (left->index < right->index);
+}
+
+/* Short equations first: they keep the rows sparse. */
+static lb_status eliminate_balance(elimination *e, const balance *b)
+{
+    ranked *order = memory_array(b->count, sizeof *order);
+    if (!order)
+        return LB_E_NOMEM;
+    for (size_t i = 0; i < b->count; i++)
+        order[i] = (ranked){b->start[i + 1] - b->start[i], i};
+    if (b->count > 0)
+        qsort(order, b->count, sizeof *order, by_key);
+    lb_status status = LB_OK;
+    for (size_t i = 0; i < b->count && status == LB_OK; i++) {
+        size_t first = b->start[order[i].index];
+        status = elimination_add(e, b->column + first, b->value + first, (int)order[i].key, NULL);
+    }
+    memory_free(order);
+    return status;
+}
+
+static bool to_int64(const fmpz *value, int64_t *out)
+{
+    if (!fmpz_fits_si(value))
+        return false;
+    *out = fmpz_get_si(value);
+    return *out != INT64_MIN;
+}
+
+/* Multiplies vector i by the least common denominator of what the solved rows put into it. */
+static void common_denominators(const elimination *e, const int *number_of, fmpz *scale)
+{
+    for (size_t r = 0; r < e->rank; r++) {
+        const elimination_row *row = &e->row[r];
+        for (int k = 0; k < row->solved_count; k++) {
+            fmpz *own = &scale[number_of[row->solved_column[k]]];
+            fmpz_lcm(own, own, fmpq_denref(&row->solved_value[k]));
+        }
+    }
+}
+
+static bool fill_kernel(const elimination *e, const int *number_of, const int *free_column, const fmpz *scale,
+                        int nullity, int64_t *kernel)
+{
+    size_t width = (size_t)e->width;
+    bool fits = true;
+    for (int i = 0; i < nullity && fits; i++)
+        fits = to_int64(&scale[i], &kernel[(size_t)i * width + (size_t)free_column[i]]);
+    fmpz_t value;
+    fmpz_init(value);
+    for (size_t r = 0; r < e->rank && fits; r++) {
+        const elimination_row *row = &e->row[r];
+        for (int k = 0; k < row->solved_count && fits; k++) {
+            int i = number_of[row->solved_column[k]];
+            fmpz_divexact(value, &scale[i], fmpq_denref(&row->solved_value[k]));
+            fmpz_mul(value, value, fmpq_numref(&row->solved_value[k]));
+            fits = to_int64(value, &kernel[(size_t)i * width + (size_t)row->pivot]);
+        }
+    }
+    fmpz_clear(value);
+    return fits;
+}
+
+/* The kernel of what was eliminated: nullity vectors, one for each free column. */
+static lb_status find_kernel(const elimination *e, int nullity, int *free_column, int64_t **kernel)
+{
+    lb_status status = LB_E_NOMEM;
+    int *number_of = memory_array((size_t)e->width, sizeof *number_of);
+    fmpz *scale = memory_zeroed((size_t)nullity, sizeof *scale);
+    *kernel = memory_zeroed((size_t)nullity * (size_t)e->width, sizeof **kernel);
+    if (!number_of || !scale || !*kernel)
+        goto done;
+    for (int j = 0, i = 0; j < e->width; j++) {
+        if (e->row_of[j] >= 0)
+            continue;
+        number_of[j] = i;
+        fmpz_one(&scale[i]);
+        free_column[i++] = j;
+    }
+    common_denominators(e, number_of, scale);
+    status = fill_kernel(e, number_of, free_column, scale, nullity, *kernel) ? LB_OK : LB_E_LIMIT;
+    for (int i = 0; i < nullity; i++)
+        cone_make_primitive(*kernel + (size_t)i * (size_t)e->width, e->width);
+done:
+    for (int i = 0; scale && i < nullity; i++)
+        fmpz_clear(&scale[i]);
+    memory_free(scale);
+    memory_free(number_of);
+    if (status != LB_OK) {
+        memory_free(*kernel);
+        *kernel = NULL;
+    }
+    return status;
+}
+
+/* ---- Choosing a basis -------------------------------------------------------------- */
+
+/* Candidates for the basis: rays, then vectors of the kernel, and who was chosen. */
+typedef struct choice {
+    int width, nullity;
+    const int *free_column;
+    elimination chosen;         /* their entries at the free columns, which tell a vector of the kernel */
+    int *preference;            /* [nullity] */
+    fmpz *values;               /* [nullity] */
+    int *columns;               /* [nullity] */
+} choice;
+
+static void choice_clear(choice *c)
+{
+    elimination_clear(&c->chosen);
+    memory_free(c->preference);
+    memory_free(c->values);
+    memory_free(c->columns);
+}
+
+static lb_status choice_init(choice *c, int width, int nullity, const int *free_column)
+{
+    *c = (choice){.width = width, .nullity = nullity, .free_column = free_column};
+    c->preference = memory_zeroed((size_t)nullity, sizeof *c->preference);
+    c->values = memory_zeroed((size_t)nullity, sizeof *c->values);
+    c->columns = memory_array((size_t)nullity, sizeof *c->columns);
+    if (!c->preference || !c->values || !c->columns)
+        return LB_E_NOMEM;
+    return elimination_init(&c->chosen, nullity, c->preference);
+}
+
+static lb_status is_independent(choice *c, const int64_t *vector, bool *result)
+{
+    int count = 0;
+    for (int i = 0; i < c->nullity; i++) {
+        if (vector[c->free_column[i]] == 0)
+            continue;
+        c->columns[count] = i;
+        fmpz_set_si(&c->values[count++], vector[c->free_column[i]]);
+    }
+    lb_status status = elimination_add(&c->chosen, c->columns, c->values, count, result);
+    for (int i = 0; i < count; i++)
+        fmpz_zero(&c->values[i]);
+    return status;
+}
+
+static size_t support(const int64_t *vector, int width)
+{
+    size_t count = 0;
+    for (int j = 0; j < width; j++)
+        count += vector[j] != 0;
+    return count;
+}
+
+static size_t first_species(const int64_t *vector, int width)
+{
+    size_t j = 0;
+    while (j < (size_t)width && vector[j] == 0)
+        j++;
+    return j;
+}
+
+static bool is_non_negative(const int64_t *vector, int width)
+{
+    for (int j = 0; j < width; j++)
+        if (vector[j] < 0)
+            return false;
+    return true;
+}
+
+/* Takes the independent ones of `vectors`, those of least support first, until the basis is
+ * full: their indices to taken, the rest (when asked) to left. */
+static lb_status take(choice *c, const int64_t *vectors, size_t count, size_t *taken, size_t *taken_count,
+                      size_t *left, size_t *left_count)
+{
+    ranked *order = memory_array(count, sizeof *order);
+    if (!order)
+        return LB_E_NOMEM;
+    size_t width = (size_t)c->width;
+    for (size_t i = 0; i < count; i++)
+        order[i] = (ranked){support(vectors + i * width, c->width), i};
+    if (count > 0)
+        qsort(order, count, sizeof *order, by_key);
+    lb_status status = LB_OK;
+    for (size_t i = 0; i < count && status == LB_OK; i++) {
+        bool is_new = false;
+        if (c->chosen.rank < (size_t)c->nullity)
+            status = is_independent(c, vectors + order[i].index * width, &is_new);
+        if (is_new)
+            taken[(*taken_count)++] = order[i].index;
+        else if (left)
+            left[(*left_count)++] = order[i].index;
+    }
+    memory_free(order);
+    return status;
+}
+
+/* ---- Putting laws together ------------------------------------------------------------ */
+
+/* Appends the vectors by their first species; signed ones get a positive first entry. */
+static lb_status append(conservation *out, const int64_t *vectors, const size_t *index, size_t count)
+{
+    size_t width = (size_t)out->width;
+    ranked *order = memory_array(count, sizeof *order);
+    if (!order)
+        return LB_E_NOMEM;
+    for (size_t i = 0; i < count; i++)
+        order[i] = (ranked){first_species(vectors + index[i] * width, out->width), index[i]};
+    if (count > 0)
+        qsort(order, count, sizeof *order, by_key);
+    for (size_t i = 0; i < count; i++) {
+        const int64_t *from = vectors + order[i].index * width;
+        int64_t *to = out->law + (size_t)out->count++ * width;
+        bool turn = order[i].key < width && from[order[i].key] < 0;
+        for (size_t j = 0; j < width; j++)
+            to[j] = turn ? -from[j] : from[j];
+    }
+    memory_free(order);
+    return LB_OK;
+}
+
+/* How many of the first `basis` rows are non-negative, those before the first that is not. */
+static int leading_non_negative(const conservation *laws)
+{
+    int count = 0;
+    while (count < laws->basis && is_non_negative(laws->law + (size_t)count * (size_t)laws->width, laws->width))
+        count++;
+    return count;
+}
+
+/* Indices of those kernel vectors that are (or are not) non-negative. */
+static size_t split_by_sign(const int64_t *vectors, int width, const size_t *index, size_t count, bool wanted,
+                            size_t *out)
+{
+    size_t found = 0;
+    for (size_t i = 0; i < count; i++)
+        if (is_non_negative(vectors + index[i] * (size_t)width, width) == wanted)
+            out[found++] = index[i];
+    return found;
+}
+
+/* rays (may be none) and the kernel's basis -> laws. */
+static lb_status assemble(conservation *out, const cone *rays, const int64_t *kernel, int nullity,
+                          const int *free_column)
+{
+    lb_status status = LB_E_NOMEM;
+    size_t taken_count = 0, left_count = 0, signed_count = 0, part_count;
+    size_t most = rays->count + (size_t)nullity;
+    size_t *taken = memory_array(most, sizeof *taken), *left = memory_array(most, sizeof *left);
+    size_t *completing = memory_array((size_t)nullity, sizeof *completing);
+    size_t *part = memory_array((size_t)nullity, sizeof *part);
+    out->law = memory_array(most * (size_t)out->width, sizeof *out->law);
+    choice c;
+    status = choice_init(&c, out->width, nullity, free_column);
+    if (!taken || !left || !completing || !part || !out->law)
+        status = LB_E_NOMEM;
+    if (status == LB_OK)
+        status = take(&c, rays->ray, rays->count, taken, &taken_count, left, &left_count);
+    if (status == LB_OK)
+        status = take(&c, kernel, (size_t)nullity, completing, &signed_count, NULL, NULL);
+    if (status == LB_OK)
+        status = append(out, rays->ray, taken, taken_count);
+    for (int wanted = 1; wanted >= 0 && status == LB_OK; wanted--) {
+        part_count = split_by_sign(kernel, out->width, completing, signed_count, wanted, part);
+        status = append(out, kernel, part, part_count);
+    }
+    out->basis = out->count;
+    if (status == LB_OK)
+        status = append(out, rays->ray, left, left_count);
+    out->semipositive = leading_non_negative(out);
+    choice_clear(&c);
+    memory_free(taken);
+    memory_free(left);
+    memory_free(completing);
+    memory_free(part);
+    return status;
+}
+
+static lb_status laws_of_kernel(elimination *e, conservation *out)
+{
+    int nullity = e->width - (int)e->rank;
+    out->is_complete = true;
+    if (nullity == 0)
+        return LB_OK;
+    if ((size_t)nullity * (size_t)e->width > CONSERVATION_LIMIT)
+        return LB_E_LIMIT;
+    int64_t *kernel = NULL;
+    cone rays = {0};
+    int *free_column = memory_array((size_t)nullity, sizeof *free_column);
+    lb_status status = free_column ? elimination_solve(e, CONSERVATION_LIMIT) : LB_E_NOMEM;
+    if (status == LB_OK)
+        status = find_kernel(e, nullity, free_column, &kernel);
+    if (status == LB_OK)
+        status = cone_find(kernel, nullity, e->width, free_column, &rays, &out->is_complete);
+    if (status == LB_OK)
+        status = assemble(out, &rays, kernel, nullity, free_column);
+    cone_clear(&rays);
+    memory_free(kernel);
+    memory_free(free_column);
+    return status;
+}
+
+static lb_status report(lb_error *err, lb_status status)
+{
+    if (status == LB_E_LIMIT)
+        return status_raise(err, status, NULL, "the conservation laws of this network are beyond what is supported");
+    return status == LB_OK ? LB_OK : status_no_memory(err);
+}
+
+/* Elimination of the network's balance, ready to be solved. */
+static lb_status eliminate_network(const lb_network *net, const int *column_of, const bool *use, int *preference,
+                                   elimination *e)
+{
+    balance b;
+    lb_status status = balance_collect(net, column_of, use, &b);
+    for (size_t i = 0; status == LB_OK && i < b.start[b.count]; i++)
+        preference[b.column[i]]++;
+    if (status == LB_OK)
+        status = eliminate_balance(e, &b);
+    balance_clear(&b);
+    return status;
+}
+
+lb_status conservation_find(const lb_network *net, const int *state, int width, const bool *use,
+                            conservation *out, lb_error *err)
+{
+    *out = (conservation){.width = width};
+    elimination e = {0};
+    lb_status status = LB_E_NOMEM;
+    int *column_of = memory_array((size_t)net->states, sizeof *column_of);
+    int *preference = memory_zeroed((size_t)width, sizeof *preference);
+    if (!column_of || !preference)
+        goto done;
+    for (int i = 0; i < net->states; i++)
+        column_of[i] = -1;
+    for (int j = 0; j < width; j++)
+        column_of[state[j]] = j;
+    status = elimination_init(&e, width, preference);
+    if (status == LB_OK)
+        status = eliminate_network(net, column_of, use, preference, &e);
+    if (status == LB_OK)
+        status = laws_of_kernel(&e, out);
+done:
+    elimination_clear(&e);
+    memory_free(preference);
+    memory_free(column_of);
+    if (status != LB_OK)
+        conservation_clear(out);
+    return report(err, status);
+}
+
+/* ---- What the laws determine ------------------------------------------------------------ */
+
+/* Eliminates the basis rows of the laws, with pivots where the preference allows them. */
+static lb_status eliminate_laws(const conservation *laws, const int *preference, elimination *e)
+{
+    lb_status status = elimination_init(e, laws->width, preference);
+    int *column = memory_array((size_t)laws->width, sizeof *column);
+    fmpz *value = memory_zeroed((size_t)laws->width, sizeof *value);
+    if (!column || !value)
+        status = LB_E_NOMEM;
+    for (int l = 0; l < laws->basis && status == LB_OK; l++) {
+        const int64_t *law = laws->law + (size_t)l * (size_t)laws->width;
+        int count = 0;
+        for (int j = 0; j < laws->width; j++) {
+            if (law[j] == 0)
+                continue;
+            column[count] = j;
+            fmpz_set_si(&value[count++], law[j]);
+        }
+        status = elimination_add(e, column, value, count, NULL);
+    }
+    for (int j = 0; value && j < laws->width; j++)
+        fmpz_clear(&value[j]);
+    memory_free(value);
+    memory_free(column);
+    return status == LB_OK ? elimination_solve(e, SIZE_MAX) : status;
+}
+
+/* A rational as the nearest double, up to a rounding. */
+static double to_double(const fmpq *value)
+{
+    return fmpz_get_d(fmpq_numref(value)) / fmpz_get_d(fmpq_denref(value));
+}
+
+/* How many of the laws a species is in: a species in few makes a sparse elimination. */
+static void count_laws(const conservation *laws, int *preference)
+{
+    for (int l = 0; l < laws->basis; l++)
+        for (int j = 0; j < laws->width; j++)
+            preference[j] += laws->law[(size_t)l * (size_t)laws->width + (size_t)j] != 0;
+}
+
+static void fill_elimination(const elimination *e, const int *number_of, double *out)
+{
+    for (size_t d = 0; d < e->rank; d++) {
+        const elimination_row *row = &e->row[d];
+        for (int k = 0; k < row->solved_count; k++)
+            out[d + (size_t)number_of[row->solved_column[k]] * e->rank] = -to_double(&row->solved_value[k]);
+    }
+}
+
+lb_status conservation_eliminate(const conservation *laws, int *dependent, int *independent,
+                                 double *out, lb_error *err)
+{
+    int width = laws->width, rank = width - laws->basis;
+    elimination e = {0};
+    lb_status status = LB_E_NOMEM;
+    int *preference = memory_zeroed((size_t)width, sizeof *preference);
+    int *number_of = memory_array((size_t)width, sizeof *number_of);
+    if (!preference || !number_of)
+        goto done;
+    count_laws(laws, preference);
+    status = eliminate_laws(laws, preference, &e);
+    if (status != LB_OK)
+        goto done;
+    for (size_t d = 0; d < e.rank; d++)
+        dependent[d] = e.row[d].pivot;
+    for (int j = 0, i = 0; j < width; j++) {
+        number_of[j] = i;
+        if (e.row_of[j] < 0)
+            independent[i++] = j;
+    }
+    memset(out, 0, (size_t)laws->basis * (size_t)rank * sizeof *out);
+    fill_elimination(&e, number_of, out);
+done:
+    elimination_clear(&e);
+    memory_free(preference);
+    memory_free(number_of);
+    return report(err, status);
+}
+
+/* Is the row's pivot given by columns outside the list alone? */
+static bool is_isolated(const elimination_row *row, const int *preference)
+{
+    for (int k = 0; k < row->solved_count; k++)
+        if (preference[row->solved_column[k]] != ELIMINATION_NEVER)
+            return false;
+    return true;
+}
+
+static lb_status collect_isolated(const elimination *e, int *count, int **column, double **weight)
+{
+    size_t width = (size_t)e->width;
+    for (size_t r = 0; r < e->rank; r++)
+        *count += is_isolated(&e->row[r], e->preference);
+    if ((size_t)*count * width > CONSERVATION_LIMIT)
+        return LB_E_LIMIT;
+    *column = memory_array((size_t)*count, sizeof **column);
+    *weight = memory_zeroed((size_t)*count * width, sizeof **weight);
+    if (!*column || !*weight)
+        return LB_E_NOMEM;
+    int at = 0;
+    for (size_t r = 0; r < e->rank; r++) {
+        const elimination_row *row = &e->row[r];
+        if (!is_isolated(row, e->preference))
+            continue;
+        double *into = *weight + (size_t)at * width;
+        (*column)[at++] = row->pivot;
+        into[row->pivot] = 1;
+        for (int k = 0; k < row->solved_count; k++)
+            into[row->solved_column[k]] = -to_double(&row->solved_value[k]);
+    }
+    return LB_OK;
+}
+
+lb_status conservation_isolate(const conservation *laws, const int *columns, int column_count,
+                               int *count, int **column, double **weight, lb_error *err)
+{
+    *count = 0;
+    *column = NULL;
+    *weight = NULL;
+    elimination e = {0};
+    lb_status status = LB_E_NOMEM;
+    int *preference = memory_array((size_t)laws->width, sizeof *preference);
+    if (!preference)
+        goto done;
+    for (int j = 0; j < laws->width; j++)
+        preference[j] = ELIMINATION_NEVER;
+    for (int i = 0; i < column_count; i++)
+        preference[columns[i]] = 0;
+    status = eliminate_laws(laws, preference, &e);
+    if (status == LB_OK)
+        status = collect_isolated(&e, count, column, weight);
+done:
+    elimination_clear(&e);
+    memory_free(preference);
+    if (status != LB_OK) {
+        memory_free(*column);
+        memory_free(*weight);
+        *column = NULL;
+        *weight = NULL;
+        *count = 0;
+    }
+    return report(err, status);
+}
