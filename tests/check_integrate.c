@@ -314,7 +314,7 @@ START_TEST(test_species_born_from_nothing_do_not_stop_the_run)
     assert_close(value_of(&r, "X4"), exp(-0.01) * 1e-8 / 24, 1e-9, 0);
     rig_to(&r, 2);
     assert_close(value_of(&r, "X9"), exp(-2) * 512 / 362880, 1e-9, 0);
-    ck_assert_uint_lt(integrator_steps(r.it), 400);
+    ck_assert_uint_lt(integrator_steps(r.it), 1500);
     rig_free(&r);
 }
 END_TEST
@@ -346,12 +346,13 @@ START_TEST(test_the_explicit_method_comes_back_when_stiffness_ends)
     rig r = rig_new("units none\nsigned U, V\n[E]0 = 1e4\n[F]0 = 1\n[U]0 = 1\nE ->, k = 1\nF -> F + Q, k = 1\n"
                     "Q + E -> E, k = 1\n-> U, v = [V]\n-> V, v = -[U]\nQ ->, k = 1\n", NULL);
     rig_to(&r, 3);
-    size_t before = integrator_steps(r.it);
     ck_assert_ptr_nonnull(strstr(integrator_method(r.it), "Rodas5P"));
+    rig_to(&r, 20);
+    size_t before = integrator_steps(r.it);
     rig_to(&r, 100);
-    /* At 1e-8 the oscillation alone takes 2.2 explicit steps, or 11.3 stiff
-     * ones, a time unit. */
-    ck_assert_uint_lt(integrator_steps(r.it) - before, 97 * 5);
+    /* At 1e-8 the oscillation alone takes 2 explicit steps, or 10 stiff ones, a
+     * time unit. */
+    ck_assert_uint_lt(integrator_steps(r.it) - before, 80 * 4);
     assert_close(value_of(&r, "U"), cos(100), 0, 1e-6);
     rig_free(&r);
 }

@@ -38,7 +38,8 @@ enum {
     STIFF_EVIDENCE = 4,         /* checks near the bound of stability before the explicit method is left */
     CHECK_INTERVAL = 4,         /* accepted explicit steps between two checks, after the first sixteen */
     LEAST_PATIENCE = 6,         /* stiff steps inside the bound before it is taken up again */
-    MOST_PATIENCE = 1024
+    MOST_PATIENCE = 1024,
+    MOST_STALLED = 1000         /* accepted steps in a row that do not change t */
 };
 
 /* Why the last attempt was refused. */
@@ -75,9 +76,11 @@ struct integrator {
     int patience;
     size_t since_change;        /* accepted steps with the method in use */
     size_t steps, rejected, stiff_count, changes;
+    int stalled;                /* accepted steps since t last changed */
 
     refusal refused;
     int culprit;                /* the state it was refused for; -1: none known */
+    int worst;                  /* the state with the largest error in the last step */
 };
 
 /* ---- Life ---------------------------------------------------------------------- */
@@ -178,6 +181,7 @@ void integrator_start(integrator *it, double t, const double *x)
     }
     it->is_begun = it->is_stiff = it->last_was_stiff = it->has_stages = false;
     it->steps = it->rejected = it->stiff_count = it->changes = 0;
+    it->stalled = 0;
     stiffness_reset(&it->estimate);
 }
 
@@ -231,7 +235,7 @@ static lb_status fail_negative(integrator *it, lb_error *err)
                         "[%s] falls below zero at t = %.6g: %s takes it away though there is none left", name, it->t, step);
 }
 
-/* The smallest step was refused. */
+/* The smallest step was refused, or steps too small for t go on and on. */
 static lb_status fail(integrator *it, lb_error *err)
 {
     const char *name = it->culprit >= 0 ? species_name(it, it->culprit) : NULL;
@@ -249,7 +253,8 @@ static lb_status fail(integrator *it, lb_error *err)
         break;
     }
     return status_raise(err, LB_E_STEP, "the solution may grow without bound or a rate law may jump there",
-                        "at t = %.6g no step is short enough for [%s], which is %.6g", it->t, name, it->x[it->culprit]);
+                        "at t = %.6g no step is short enough for [%s], which is %.6g", it->t,
+                        species_name(it, it->worst), it->x[it->worst]);
 }
 
 /* ---- Start ---------------------------------------------------------------------- */
@@ -399,7 +404,7 @@ static bool attempt_step(integrator *it, double h, double *norm, double *shrink)
     if (outcome != STEPPER_DONE)
         return false;
 
-    *norm = tolerance_norm(&it->control, it->x, it->x_new, it->error, &it->culprit);
+    *norm = tolerance_norm(&it->control, it->x, it->x_new, it->error, &it->worst);
     if (it->tangents)
         *norm = fmax(*norm, tolerance_tangent_norm(&it->control, it->tangents, it->tangents_new, it->tangents_error));
     it->refused = REFUSED_ERROR;
@@ -424,7 +429,7 @@ static double growth(integrator *it, double norm, bool was_refused)
 {
     double order = it->is_stiff ? ROSENBROCK_ERROR_ORDER : EXPLICIT_ERROR_ORDER;
     double error = fmax(norm, 1e-10);
-    double factor = 0.9 * pow(error, -0.7 / order) * pow(it->error_last, 0.4 / order);
+    double factor = 0.9 * pow(error, -1.0 / order) * pow(it->error_last, 0.4 / order);
     it->error_last = fmax(error, 1e-4);
     return fmax(0.2, fmin(was_refused ? 1 : 6, factor));
 }
@@ -444,6 +449,7 @@ static void accept(integrator *it, double h, double t_new)
     double *kept = it->tangents;
     it->tangents = it->tangents_new;
     it->tangents_new = kept;
+    it->stalled = t_new > it->t ? 0 : it->stalled + 1;
     it->t_last = it->t;
     it->t = t_new;
     it->h_last = h;
@@ -474,6 +480,9 @@ lb_status integrator_step(integrator *it, double t_limit, lb_error *err)
     if (it->is_stiff && !rosenbrock_prepare(it->stiff_steps, it->x))
         return status_raise(err, LB_E_FINITE, NULL, "the derivative of a rate is not finite at t = %.6g", it->t);
 
+    it->refused = REFUSED_ERROR;
+    if (it->stalled > MOST_STALLED)
+        return fail(it, err);
     for (bool was_refused = false; ; was_refused = true) {
         /* Land on the limit, and do not leave a sliver before it. */
         double rest = t_limit - it->t, h = it->h, norm = 0, shrink;
