@@ -1,8 +1,7 @@
 /* Tables of aligned columns, two blanks between them.
  *
  * Numbers are set with their decimal points under each other: each cell is
- * split before the point (or the exponent, or its end) and padded on both
- * sides.  Only the last column may be wrapped, so the others stay readable. */
+ * split before the point (or the exponent, or its end) and padded before that.  Only the last column may be wrapped, so the others stay readable. */
 #include "output/grid.h"
 
 #include <assert.h>
@@ -131,11 +130,7 @@ static void write_cell(const grid *g, const measure *m, size_t i, bool is_last, 
 {
     int c = (int)(i % (size_t)g->columns);
     int whole = layout_columns(g->cell[i]);
-    int left = 0;
-    if (is_aligned(g, i))
-        left = m->width[c] - m->after[c] - columns_before(g->cell[i]);
-    else if (g->align[c] == GRID_NUMBER)
-        left = m->width[c] - whole;
+    int left = is_aligned(g, i) ? m->before[c] - columns_before(g->cell[i]) : 0;
     buffer_repeat(line, ' ', left);
     buffer_append(line, g->cell[i]);
     if (!is_last)

@@ -9,7 +9,7 @@
 
 typedef enum grid_align {
     GRID_LEFT,
-    GRID_NUMBER     /* decimal points under each other; words to the right */
+    GRID_NUMBER     /* decimal points under each other; words to the left */
 } grid_align;
 
 enum { GRID_COLUMNS = 24 };

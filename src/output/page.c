@@ -19,8 +19,9 @@ static void write_ranges_hint(buffer *out, const lb_layout *layout, const lb_net
     if (ranges == 0)
         return;
     buffer_char(out, '\n');
-    layout_printf(out, layout, 0, "%d constant%s a range, not searched here: limbeck oscillate %s", ranges,
-                  ranges == 1 ? " has" : "s have", net->file);
+    layout_printf(out, layout, 0, "%d constant%s a range; to search %s:", ranges, ranges == 1 ? " has" : "s have",
+                  ranges == 1 ? "it" : "them");
+    buffer_printf(out, "  limbeck oscillate %s\n", net->file);
 }
 
 lb_status lb_text_page(const lb_system *system, const lb_oscillate *oscillate, const lb_layout *layout, lb_text *out)

@@ -45,9 +45,9 @@ static void write_verdict(buffer *out, const lb_layout *layout, const lb_network
     if (answer->verdict == LB_OSCILLATES && answer->cycle)
         buffer_printf(out, " (witnessed): %s, period %s\n", attraction_text(answer->cycle->stable), buffer_get(&period));
     else if (answer->verdict == LB_IS_CENTRE && answer->cycle)
-        buffer_printf(out, " (witnessed): closed orbits of every size; period of this one %s\n", buffer_get(&period));
+        buffer_printf(out, " (witnessed): neutral closed orbits, one beside the other; period of this one %s\n", buffer_get(&period));
     else
-        buffer_append(out, " (searched): no sustained oscillation was found, which does not prove that there is none\n");
+        buffer_append(out, " (searched): no sustained oscillation, which does not prove that there is none\n");
     layout_end(&period, out);
 }
 
@@ -101,12 +101,12 @@ static void write_confirmation(buffer *out, const lb_layout *layout, const lb_cy
     buffer text;
     buffer_init(&text);
     buffer_printf(&text, "The orbit closes to %s of its swing", closure);
-    if (cycle->method && *cycle->method)
-        buffer_printf(&text, " (%s)", cycle->method);
     if (isnan(cycle->confirmed))
-        buffer_append(&text, "; it was not confirmed by a second method.");
+        buffer_append(&text, "; it was not confirmed on a second path.");
     else
-        buffer_printf(&text, "; a second method and tolerance gives the same period to %s.", confirmed);
+        buffer_printf(&text, ", and a second path gives the same period to %s.", confirmed);
+    if (cycle->method && *cycle->method)
+        buffer_printf(&text, " Method: %s.", cycle->method);
     layout_printf(out, layout, 2, "%s", buffer_get(&text));
     layout_end(&text, out);
 }
@@ -160,21 +160,24 @@ static void write_effort(buffer *out, const lb_layout *layout, const lb_oscillat
 {
     buffer text;
     buffer_init(&text);
-    buffer_append(&text, "Looked at ");
-    describe_count(&text, answer->samples, "set");
-    buffer_append(&text, " of constants, ");
+    if (answer->scope == LB_SCOPE_RANGES) {
+        buffer_append(&text, "Tried ");
+        describe_count(&text, answer->samples, "set");
+        buffer_append(&text, " of constants: met ");
+    } else {
+        buffer_append(&text, "Met ");
+    }
     describe_count(&text, answer->steady, "steady state");
-    buffer_printf(&text, " (%zu unstable), ", answer->unstable);
-    describe_count(&text, answer->integrations, "trajectory");
-    buffer_append(&text, ".");
-    if (answer->method && *answer->method)
-        buffer_printf(&text, " Method: %s", answer->method);
+    buffer_printf(&text, " (%zu unstable), followed %zu trajector%s.", answer->unstable, answer->integrations,
+                  answer->integrations == 1 ? "y" : "ies");
+    if (answer->verdict == LB_NOT_FOUND && answer->method && *answer->method)
+        buffer_printf(&text, " Method: %s.", answer->method);
     if (answer->interrupted)
         buffer_append(&text, " The search was interrupted, and is not complete.");
     layout_printf(out, layout, 2, "%s", buffer_get(&text));
     layout_end(&text, out);
     if (answer->verdict == LB_NOT_FOUND && answer->limits && *answer->limits)
-        layout_printf(out, layout, 2, "%s", answer->limits);
+        layout_printf(out, layout, 2, "Not covered: %s", answer->limits);
 }
 
 void oscillate_write_answer(buffer *out, const lb_layout *layout, const lb_system *system, const lb_oscillate_answer *answer)

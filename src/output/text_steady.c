@@ -37,8 +37,7 @@ static void write_search(buffer *out, const lb_layout *layout, const lb_network 
     buffer_init(&text);
     describe_states(&text, net, steady->accumulating);
     if (*buffer_get(&text))
-        layout_printf(out, layout, 2, "No rate depends on %s and no conserved total fixes it: it may accumulate, and has no place below.",
-                      buffer_get(&text));
+        layout_printf(out, layout, 2, "Set aside, since no rate depends on it and no conserved total fixes it: %s.", buffer_get(&text));
     layout_end(&text, out);
 }
 
@@ -64,7 +63,7 @@ static void rate_cell(grid *g, const lb_mode *mode, const char *time_unit)
     }
     char time[LAYOUT_NUMBER];
     layout_number(mode->time, DIGITS, time);
-    grid_cell(g, "%s %s%s%s", mode->eigenvalue.re > 0 ? "grows in" : "decays in", time, *time_unit ? " " : "", time_unit);
+    grid_cell(g, "%s %s%s%s", mode->eigenvalue.re > 0 ? "grows in" : "relaxes in", time, *time_unit ? " " : "", time_unit);
 }
 
 /* The states first..last as columns beside the names of the species. */
@@ -88,7 +87,7 @@ static void write_block(buffer *out, const lb_layout *layout, const lb_network *
             grid_number(&g, steady->state[s].x[i], DIGITS);
     }
     if (with_rates) {
-        grid_cell(&g, "slowest");
+        grid_cell(&g, "%s", "");
         for (size_t s = first; s <= last; s++)
             rate_cell(&g, leading_mode(&steady->state[s]), describe_time_unit(net));
     }
@@ -113,7 +112,7 @@ void steady_write(buffer *out, const lb_layout *layout, const lb_system *system,
     }
 }
 
-/* "decays in 6.7 s" and, of a pair, "swings every 6.4 s, each swing 0.39 times the last". */
+/* "relaxes in 6.7 s" and, of a pair, "swings every 6.4 s, each swing 0.39 times the last". */
 static void mode_cells(grid *g, const lb_mode *mode, const char *time_unit)
 {
     char eigenvalue[LAYOUT_COMPLEX], damping[LAYOUT_NUMBER];
@@ -158,7 +157,7 @@ static void write_state(buffer *out, const lb_layout *layout, const lb_network *
 {
     char residual[LAYOUT_NUMBER];
     layout_number(state->residual, 2, residual);
-    layout_printf(out, layout, 2, "%zu: %s, %s%s; residual %s of the terms", number, lb_kind_text(state->kind),
+    layout_printf(out, layout, 2, "%zu: %s, %s%s; balanced to %s of its rates", number, lb_kind_text(state->kind),
                   stability_text(state->stable), state->is_boundary ? ", a species is absent" : "", residual);
     if (!state->routh_hurwitz_agrees)
         layout_paragraph(out, layout, 4, 0,
