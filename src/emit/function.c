@@ -547,14 +547,14 @@ static lb_status append_plain(function_file *file, sums *s, lb_status status, co
 lb_status function_rates(function_file *file)
 {
     sums s = {0};
-    lb_status status = sums_of_rates(file->net, &s);
+    lb_status status = sums_of_rates(file->net, &file->graph, &s);
     return append_plain(file, &s, status, NULL);
 }
 
 lb_status function_rhs(function_file *file)
 {
     sums s = {0};
-    lb_status status = sums_of_rhs(file->net, &s);
+    lb_status status = sums_of_rhs(file->net, &file->graph, &s);
     return append_plain(file, &s, status, NULL);
 }
 

@@ -59,11 +59,32 @@ static double exact_coefficient(const network_entry *entry)
 
 /* ---- Rates and right-hand side --------------------------------------------- */
 
-lb_status sums_of_rates(const lb_network *net, sums *s)
+/* product * x^order */
+static expression times_power(expression_graph *g, expression product, network_order power)
+{
+    expression x = expression_state(g, power.state);
+    expression factor = expression_binary(g, EXPRESSION_POWER, x, expression_number(g, power.order));
+    return expression_binary(g, EXPRESSION_MULTIPLY, product, factor);
+}
+
+static expression times_powers(expression_graph *g, expression product, const network_step *step)
+{
+    for (int i = 0; i < step->order_count; i++)
+        product = times_power(g, product, step->orders[i]);
+    return product;
+}
+
+/* A power law's orders are what counts, however the file writes them: x*x^(-0.7) is x^0.3. */
+static expression rate_of(expression_graph *g, const network_step *step)
+{
+    return step->is_power_law ? times_powers(g, step->factor, step) : step->rate;
+}
+
+lb_status sums_of_rates(const lb_network *net, expression_graph *graph, sums *s)
 {
     s->kind = SUMS_RATES;
     for (int i = 0; i < net->reaction_steps; i++) {
-        int item = add_item(s, (sums_item){net->steps[i].rate, i, -1, true});
+        int item = add_item(s, (sums_item){rate_of(graph, &net->steps[i]), i, -1, true});
         sums_term term = {.target = (size_t)i, .item = item, .number = 1, .coefficient = EXPRESSION_NONE};
         if (item < 0 || add_term(s, term) != LB_OK)
             return LB_E_NOMEM;
@@ -71,12 +92,12 @@ lb_status sums_of_rates(const lb_network *net, sums *s)
     return LB_OK;
 }
 
-lb_status sums_of_rhs(const lb_network *net, sums *s)
+lb_status sums_of_rhs(const lb_network *net, expression_graph *graph, sums *s)
 {
     s->kind = SUMS_RHS;
     for (int i = 0; i < net->step_count; i++) {
         const network_step *step = &net->steps[i];
-        int item = add_item(s, (sums_item){step->rate, i, -1, i >= net->reaction_steps});
+        int item = add_item(s, (sums_item){rate_of(graph, step), i, -1, i >= net->reaction_steps});
         if (item < 0)
             return LB_E_NOMEM;
         for (int e = 0; e < step->entry_count; e++) {
@@ -90,14 +111,6 @@ lb_status sums_of_rhs(const lb_network *net, sums *s)
 }
 
 /* ---- Derivatives of one rate ------------------------------------------------ */
-
-/* product * x^order */
-static expression times_power(expression_graph *g, expression product, network_order power)
-{
-    expression x = expression_state(g, power.state);
-    expression factor = expression_binary(g, EXPRESSION_POWER, x, expression_number(g, power.order));
-    return expression_binary(g, EXPRESSION_MULTIPLY, product, factor);
-}
 
 static bool is_whole(double order)
 {
@@ -133,10 +146,7 @@ static expression rate_by_constant(expression_graph *g, const network_step *step
 {
     if (!step->is_power_law)
         return expression_derivative(g, step->rate, EXPRESSION_CONSTANT, constant);
-    expression product = expression_derivative(g, step->factor, EXPRESSION_CONSTANT, constant);
-    for (int i = 0; i < step->order_count; i++)
-        product = times_power(g, product, step->orders[i]);
-    return product;
+    return times_powers(g, expression_derivative(g, step->factor, EXPRESSION_CONSTANT, constant), step);
 }
 
 /* Derivatives of flows are few operations each and used once. */
@@ -220,7 +230,8 @@ static lb_status add_coefficient_terms(const lb_network *net, expression_graph *
             return LB_E_NOMEM;
         if (is_zero(g, slope))
             continue;
-        if (rate < 0 && (rate = add_item(s, (sums_item){of->rate, step, -1, is_plain(net, g, step, of->rate)})) < 0)
+        expression value = rate_of(g, of);
+        if (rate < 0 && (rate = add_item(s, (sums_item){value, step, -1, is_plain(net, g, step, value)})) < 0)
             return LB_E_NOMEM;
         size_t target = (size_t)entry->state + (size_t)constant * (size_t)net->states;
         if (add_term(s, (sums_term){target, rate, 1, slope}) != LB_OK)

@@ -47,8 +47,8 @@ void sums_pattern_clear(sums_pattern *pattern);
 
 /* Each fills an empty record; graph is a copy of the network's with the same
  * numbers, and grows by the derivatives.  LB_OK or LB_E_NOMEM; sums_clear after both. */
-lb_status sums_of_rates(const lb_network *net, sums *s);
-lb_status sums_of_rhs(const lb_network *net, sums *s);
+lb_status sums_of_rates(const lb_network *net, expression_graph *graph, sums *s);
+lb_status sums_of_rhs(const lb_network *net, expression_graph *graph, sums *s);
 lb_status sums_of_jacobian(const lb_network *net, const sums_pattern *pattern, expression_graph *graph, sums *s);
 lb_status sums_of_dfdk(const lb_network *net, expression_graph *graph, sums *s);
 void sums_clear(sums *s);

@@ -11,6 +11,8 @@
 
 #include "emit/spell.h"
 
+enum { HIGHEST_IN_PLACE = 4 }; /* powers written as x*x*x*x */
+
 static bool is_local(const writer *w, expression e)
 {
     return w->plan->is_local[e];
@@ -63,7 +65,7 @@ static void write_call(writer *w, const char *function, expression a, expression
 /* base^order, order > 0 */
 static void write_whole_power(writer *w, expression base, int order)
 {
-    if (order > 4) {
+    if (order > HIGHEST_IN_PLACE) {
         w->uses_whole_power[order] = true;
         buffer_printf(w->out, "power_%d(", order);
         write_expression(w, base, WRITE_SUM);
@@ -86,17 +88,32 @@ static bool is_whole_power(const writer *w, const expression_node *node, int *or
     return n != 0;
 }
 
+static void write_divisor(writer *w, expression base, int order)
+{
+    bool is_enclosed = order > 1 && order <= HIGHEST_IN_PLACE;
+    if (order == 1) {
+        write_expression(w, base, WRITE_OPERAND);
+        return;
+    }
+    if (is_enclosed)
+        buffer_char(w->out, '(');
+    write_whole_power(w, base, order);
+    if (is_enclosed)
+        buffer_char(w->out, ')');
+}
+
 static void write_power(writer *w, const expression_node *node)
 {
     int order;
     double n = NAN;
     bool is_number = expression_is_number(w->graph, node->right, &n);
     if (is_whole_power(w, node, &order)) {
-        if (order < 0)
-            buffer_append(w->out, order < -1 && order >= -4 ? "1.0/(" : "1.0/");
-        write_whole_power(w, node->left, order < 0 ? -order : order);
-        if (order < -1 && order >= -4)
-            buffer_char(w->out, ')');
+        if (order > 0) {
+            write_whole_power(w, node->left, order);
+        } else {
+            buffer_append(w->out, "1.0/");
+            write_divisor(w, node->left, -order);
+        }
     } else if (is_number && n == 0.5) {
         w->uses_root = w->uses_math = true;
         write_call(w, "real_root", node->left, EXPRESSION_NONE);
@@ -120,30 +137,41 @@ static write_place binding(const writer *w, const expression_node *node)
         return WRITE_TERM;
     case EXPRESSION_POWER:
         if (is_whole_power(w, node, &order))
-            return order < 0 ? WRITE_TERM : order <= 4 ? WRITE_FACTOR : WRITE_OPERAND;
+            return order < 0 ? WRITE_TERM : order <= HIGHEST_IN_PLACE ? WRITE_FACTOR : WRITE_OPERAND;
         return WRITE_OPERAND;
     default:
         return WRITE_OPERAND;
     }
 }
 
-/* `*right`, or `/base` where the right operand is a negative power.  A product on the
- * right goes without parentheses: the grouping changes the rounding alone. */
+/* What a factor divides by, when it is 1/e or a negative power of e: its node, and the
+ * order of the power (1: e itself); EXPRESSION_NONE otherwise. */
+static expression divisor_of(const writer *w, expression factor, int *order)
+{
+    const expression_node *node = &w->graph->nodes[factor];
+    double top;
+    *order = 1;
+    if (is_local(w, factor))
+        return EXPRESSION_NONE;
+    if (node->kind == EXPRESSION_DIVIDE && expression_is_number(w->graph, node->left, &top) && top == 1)
+        return node->right;
+    if (node->kind != EXPRESSION_POWER || !is_whole_power(w, node, order) || *order > 0)
+        return EXPRESSION_NONE;
+    *order = -*order;
+    return node->left;
+}
+
+/* `*right`, or `/base`.  A product on the right goes without parentheses: the
+ * grouping changes the rounding alone. */
 static void write_factor(writer *w, expression right)
 {
-    const expression_node *node = &w->graph->nodes[right];
     int order;
-    bool is_negative = node->kind == EXPRESSION_POWER && is_whole_power(w, node, &order) && order < 0;
-    if (is_negative && !is_local(w, right)) {
-        bool is_enclosed = order < -1 && order >= -4;
-        buffer_append(w->out, is_enclosed ? "/(" : "/");
-        write_whole_power(w, node->left, -order);
-        if (is_enclosed)
-            buffer_char(w->out, ')');
-        return;
-    }
-    buffer_char(w->out, '*');
-    write_expression(w, right, node->kind == EXPRESSION_MULTIPLY ? WRITE_TERM : WRITE_FACTOR);
+    expression divisor = divisor_of(w, right, &order);
+    buffer_char(w->out, divisor == EXPRESSION_NONE ? '*' : '/');
+    if (divisor != EXPRESSION_NONE)
+        write_divisor(w, divisor, order);
+    else
+        write_expression(w, right, w->graph->nodes[right].kind == EXPRESSION_MULTIPLY ? WRITE_TERM : WRITE_FACTOR);
 }
 
 static void write_binary(writer *w, const expression_node *node)
