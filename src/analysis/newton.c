@@ -22,7 +22,7 @@
 #include "base/memory.h"
 #include "base/status.h"
 
-enum { MOST_ITERATIONS = 60, MOST_HALVINGS = 10, MOST_POLISHING = 6, MOST_RELAXATIONS = 80, ALL_ROWS_LIMIT = 40 };
+enum { MOST_ITERATIONS = 60, MOST_HALVINGS = 10, MOST_POLISHING = 30, MOST_RELAXATIONS = 80, ALL_ROWS_LIMIT = 40 };
 
 static const double STEP_LIMIT = 5;             /* e^5: two decades */
 static const double RESIDUAL_TOLERANCE = 1e-11; /* a root, before polishing */
@@ -61,8 +61,8 @@ lb_status newton_init(newton *w, equations *eq, lb_error *err)
     w->F = memory_array(rows, sizeof *w->F);
     w->trial_F = memory_array(rows, sizeof *w->trial_F);
     w->A = memory_array(rows * count, sizeof *w->A);
-    w->work = memory_array(rows * count, sizeof *w->work);
-    w->right = memory_array(rows, sizeof *w->right);
+    w->work = memory_array((rows + 1) * (count + 1), sizeof *w->work);
+    w->right = memory_array(rows + 1, sizeof *w->right);
     w->step = memory_array(count, sizeof *w->step);
     w->trial = memory_array(count, sizeof *w->trial);
     w->pivot = memory_array(count, sizeof *w->pivot);
@@ -122,15 +122,23 @@ static bool solve_square(newton *w)
     return isfinite(norm2(count, w->step));
 }
 
-/* step = least-norm solution of A step = -F over all rows. */
+/* step = least-norm solution of A step = -F over all rows.  A row and a column of
+ * their own with a one in them make the rank absolute: the rows are sums of terms
+ * of size one, and what is left of them below rcond is rounding. */
 static lb_status solve_all(newton *w, double rcond, int *rank, lb_error *err)
 {
     int count = w->eq->count, rows = w->eq->rows;
-    memcpy(w->work, w->A, (size_t)rows * (size_t)count * sizeof *w->work);
+    memset(w->work, 0, (size_t)(rows + 1) * (size_t)(count + 1) * sizeof *w->work);
+    for (int j = 0; j < count; j++)
+        memcpy(w->work + (size_t)j * (size_t)(rows + 1), w->A + (size_t)j * (size_t)rows,
+               (size_t)rows * sizeof *w->work);
+    w->work[rows + (size_t)count * (size_t)(rows + 1)] = 1;
     for (int i = 0; i < rows; i++)
         w->right[i] = -w->F[i];
-    lb_status status = linalg_least_squares(rows, count, w->work, w->right, rcond, rank, err);
+    w->right[rows] = 0;
+    lb_status status = linalg_least_squares(rows + 1, count + 1, w->work, w->right, rcond, rank, err);
     memcpy(w->step, w->right, (size_t)count * sizeof *w->step);
+    *rank -= 1;
     return status;
 }
 

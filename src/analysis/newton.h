@@ -13,8 +13,8 @@ typedef struct newton {
     bool is_square;         /* no laws, or too many unknowns to solve with all the balances */
     int *row;               /* [count] rows of the square form */
     double *F, *trial_F;    /* [rows] */
-    double *A, *work;       /* [rows*count] */
-    double *right;          /* [rows] */
+    double *A;              /* [rows*count] */
+    double *work, *right;   /* [(rows+1)*(count+1)], [rows+1] */
     double *step, *trial;   /* [count] */
     int *pivot;             /* [count] */
 } newton;

@@ -236,22 +236,21 @@ static void start_from_x0(const starts *s, double *u)
 }
 
 /* Four kinds of samples in turn: in the natural range; a decade or two beyond;
- * all species within a decade of one common level; and the widest box. */
-static void widen(uint64_t i, double level, double *low, double *high)
+ * all species within a decade of one common level; and the widest box.  What is
+ * far below the range of a signed unknown is all near zero alike. */
+static void widen(uint64_t i, double level, bool is_signed, double *low, double *high)
 {
-    double middle = *low - 2 + level * (*high - *low + 3);
+    double below = is_signed ? 1 : i % 4 == 3 ? WIDE : 2, above = is_signed || i % 4 == 3 ? WIDE : 1;
+    double middle = *low - below + level * (*high - *low + below + above);
     switch (i % 4) {
     case 1:
-        *low -= 2;
-        *high += 1;
+    case 3:
+        *low -= below;
+        *high += above;
         break;
     case 2:
         *low = middle - 1;
         *high = middle + 1;
-        break;
-    case 3:
-        *low -= WIDE;
-        *high += WIDE;
         break;
     default:
         break;
@@ -269,7 +268,7 @@ void starts_point(starts *s, uint64_t i, double *u)
     for (int j = 0; j < eq->count; j++) {
         double low = s->low[j], high = s->high[j], at = i == 1 ? 0.5 : s->point[j];
         if (i > 1)
-            widen(i, s->point[2 * eq->count], &low, &high);
+            widen(i, s->point[2 * eq->count], eq->is_signed[j], &low, &high);
         high = fmin(high, s->bound[j]);
         low = fmin(low, high);
         u[j] = unknown_at(eq, j, low + at * (high - low), s->point[eq->count + j]);
