@@ -106,6 +106,10 @@ static void complete(lower *l)
     l->status = network_finish(l->net);
     if (l->status == LB_OK)
         lower_warnings(l);
+    if (l->status == LB_OK)
+        lower_law_warnings(l);
+    if (l->status == LB_OK)
+        lower_start_warnings(l);
 }
 
 lb_status lower_tree(const syntax_tree *tree, lb_diagnostics *list, const lb_setting *settings, size_t setting_count,

@@ -88,7 +88,9 @@ typedef struct lower_species {
     const char *name;
     span where;                     /* first mention */
     int held, initial, feed;        /* definitions, or -1 */
-    bool in_reaction, is_signed, is_retained, is_read; /* is_read: an expression contains it */
+    bool in_reaction, is_signed, is_retained;
+    bool is_read;                   /* an expression contains its concentration */
+    bool is_used;                   /* a reaction uses it up, or a mass-action rate contains it */
     const syntax_statement *formula;
     formula atoms;
     bool has_atoms;

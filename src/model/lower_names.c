@@ -131,12 +131,14 @@ static void define_concentration(lower *l, const syntax_statement *s)
 
 /* ---- Reactions ----------------------------------------------------------------------- */
 
-static void enter_terms(lower *l, const syntax_term *term)
+static void enter_terms(lower *l, const syntax_term *term, bool is_used)
 {
     for (; term; term = term->next) {
         int species = enter_species(l, term->species.text, term->species.where);
-        if (species >= 0)
-            l->species[species].in_reaction = true;
+        if (species < 0)
+            return;
+        l->species[species].in_reaction = true;
+        l->species[species].is_used = l->species[species].is_used || is_used;
     }
 }
 
@@ -146,8 +148,8 @@ static void enter_reaction(lower *l, const syntax_statement *s)
         lower_no_memory(l);
         return;
     }
-    enter_terms(l, s->left);
-    enter_terms(l, s->right);
+    enter_terms(l, s->left, true);
+    enter_terms(l, s->right, s->is_reversible);
     lower_reaction *r = &l->reactions[l->reaction_count++];
     *r = (lower_reaction){.statement = s, .label = s->label, .index = -1};
     if (!s->label)
@@ -266,8 +268,8 @@ static void enter_broken(lower *l)
         if (s->kind == SYNTAX_DEFINE_NAME) {
             define_name(l, s);
         } else if (s->kind == SYNTAX_REACTION) {
-            enter_terms(l, s->left);
-            enter_terms(l, s->right);
+            enter_terms(l, s->left, true);
+            enter_terms(l, s->right, s->is_reversible);
         } else if (s->kind == SYNTAX_DEFINE_CONCENTRATION || s->kind == SYNTAX_DEFINE_INITIAL || s->kind == SYNTAX_DEFINE_FEED) {
             define_concentration(l, s);
         }
