@@ -14,6 +14,7 @@ typedef struct builder {
     lb_diagnostics *diagnostics;
     lb_status       status;      /* LB_OK, or LB_E_NOMEM for good */
     span            muted;       /* faults up to this place were reported when the text was first read */
+    bool            is_mute;     /* the rest of a faulty statement is passed over: its faults would not be its own */
     bool            has_bad_side; /* of the reaction being read: a fault was reported for a side */
     syntax_tree    *tree;
     syntax_expression *value;    /* of syntax_parse_value */

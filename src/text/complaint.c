@@ -144,13 +144,23 @@ static void say_expected(complaint *c)
                          i == 0 ? ", expected " : i == list.count - 1 ? " or " : ", ", list.word[i]);
 }
 
+/* The same word but for capitals, and an `s` or a `d` at the end. */
+static bool is_nearly(const char *word, const char *keyword)
+{
+    size_t i = 0;
+    while (keyword[i] && (word[i] == keyword[i] || word[i] == keyword[i] - 'a' + 'A'))
+        i++;
+    size_t rest = strlen(word + i), missing = strlen(keyword + i);
+    return i >= 4 && rest <= 1 && missing <= 2;
+}
+
 /* ---- The usual slips ------------------------------------------------------- */
 
 /* The faulty token continues a line that should have ended. */
 static bool swallowed_line(complaint *c)
 {
     lexical *l = c->l;
-    if (!l->above || !lexical_is_statement(l, l->where_offset, l->above))
+    if (!lexical_is_swallowed(l))
         return false;
     static const struct { int token; const char *text; } ending[] = {
         {PLUS, "+"}, {MINUS, "-"}, {TIMES, "*"}, {OVER, "/"}, {POWER, "^"}, {EQUALS, "="}, {COMMA, ","},
@@ -175,6 +185,52 @@ static bool blank_behind_bracket(complaint *c)
     SAY(c, "a blank between the bracket and `%s`", c->text);
     ADVISE(c, "write `[X]%s` in one piece", c->text);
     return true;
+}
+
+/* `[A]_0 = 1`, `[A](0) = 1`, `d[A]/dt = ...`. */
+static bool odd_bracket(complaint *c)
+{
+    if (c->got == HELD && c->l->first == NAME && c->l->previous == NAME && expects(c, EQUALS)) {
+        say_expected(c);
+        ADVISE(c, "write reactions; a rate law is `A -> B, v = ...`");
+        return true;
+    }
+    if (c->l->first != HELD || c->l->previous != HELD || !expects(c, EQUALS))
+        return false;
+    say_expected(c);
+    ADVISE(c, "write `[X] = ...` for a held, `[X]0 = ...` for an initial, `[X]in = ...` for a feed concentration");
+    return true;
+}
+
+/* `// a remark`. */
+static bool foreign_comment(complaint *c)
+{
+    const char *rest = lexical_rest(c->l);
+    if (c->got != OVER || (c->l->previous != OVER && *rest != '/' && *rest != '*'))
+        return false;
+    say_expected(c);
+    ADVISE(c, "a comment starts with `#`");
+    return true;
+}
+
+/* `Title "..."`, `unit M s`. */
+static bool odd_keyword(complaint *c)
+{
+    static const char *keyword[] = {"title", "units", "retained", "signed", "formula"};
+    bool is_second = c->l->previous == NAME && c->l->first == NAME && c->where.line == c->l->first_where.line;
+    if (!is_second || (c->got != NAME && c->got != QUOTED) || !expects(c, EQUALS) || c->l->arrows)
+        return false;
+    char word[4 * EXCERPT + 8];
+    copy_span(c->l->source, c->l->first_where, word, sizeof word);
+    for (size_t i = 0; i < sizeof keyword / sizeof keyword[0]; i++) {
+        if (!is_nearly(word, keyword[i]))
+            continue;
+        c->where = c->l->first_where;
+        SAY(c, "there is no statement `%s`", word);
+        ADVISE(c, "did you mean `%s`?", keyword[i]);
+        return true;
+    }
+    return false;
 }
 
 static bool equals_for_arrow(complaint *c)
@@ -418,7 +474,8 @@ static bool bad_label(complaint *c)
 void complaint_report(lexical *l, uint64_t expected)
 {
     static bool (*const slips[])(complaint *) = {
-        swallowed_line, bare_title, bare_units, dashes_for_arrow, bad_label, blank_behind_bracket, bracket_in_reaction, equals_for_arrow, quoted_definition,
+        swallowed_line, bare_title, bare_units, dashes_for_arrow, foreign_comment, odd_keyword,
+        bad_label, blank_behind_bracket, bracket_in_reaction, odd_bracket, equals_for_arrow, quoted_definition,
         definition_for_reaction, unclosed_parenthesis, stray_close, missing_arrow, second_arrow,
         nameless_setting, unquoted_name, bracketed_species, initial_in_expression, within_without_factor,
         range_without_dots, missing_operator, quoted_in_expression, reserved_in, leading_operator, missing_plus,

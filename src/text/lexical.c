@@ -93,6 +93,7 @@ bool lexical_is_setting(const char *text)
     return is_word(text, length, settings, sizeof settings / sizeof settings[0]) && is_equals(text + length);
 }
 
+/* Before the line's end, a comment or a `;`. */
 static bool has_arrow(const char *at)
 {
     for (bool is_quoted = false; *at && *at != '\n' && *at != '\r'; at++) {
@@ -100,7 +101,7 @@ static bool has_arrow(const char *at)
             is_quoted = !is_quoted;
         if (is_quoted)
             continue;
-        if (*at == '#')
+        if (*at == '#' || *at == ';')
             return false;
         if (at[1] == '>' && (*at == '-' || *at == '='))
             return true;
@@ -144,6 +145,14 @@ bool lexical_is_statement(const lexical *l, size_t offset, int above)
     return has_arrow(at);
 }
 
+/* An arrow that was read on the line as part of the statement shows that the
+ * line belongs to it. */
+bool lexical_is_swallowed(const lexical *l)
+{
+    bool is_arrow = l->current == ARROW || l->current == REVERSIBLE;
+    return l->above && l->arrows - l->arrows_above - is_arrow == 0 && lexical_is_statement(l, l->where_offset, l->above);
+}
+
 /* ---- Tokens ---------------------------------------------------------------- */
 
 static bool goes_on(int kind)
@@ -167,10 +176,10 @@ static void forget_statement(lexical *l)
 {
     l->previous = l->current = NEWLINE;
     l->above = 0;
-    l->arrows = 0;
+    l->arrows = l->arrows_above = 0;
     l->formula = 0;
     l->level = l->waiting = l->pending[0] = 0;
-    l->is_skipping = false;
+    l->build.is_mute = false;
 }
 
 /* Count nesting; false when it is too deep. */
@@ -209,7 +218,7 @@ static int formula_step(const lexical *l, int kind)
 
 int lexical_accept(lexical *l, int kind, span where)
 {
-    if (!l->is_skipping && !nest(l, kind, where)) {
+    if (!l->build.is_mute && !nest(l, kind, where)) {
         builder_fault(&l->build, where, "give the inner parts names of their own",
                       "parentheses, powers and signs are nested deeper than %d levels", LEXICAL_NESTING);
         kind = BAD;
@@ -217,12 +226,14 @@ int lexical_accept(lexical *l, int kind, span where)
     l->formula = formula_step(l, kind);
     if (l->current == NEWLINE) {
         l->first = kind;
+        l->first_where = where;
         l->statement_line = where.line;
     }
-    if (kind == ARROW || kind == REVERSIBLE)
-        l->arrows++;
-    if (where.line != l->where.line)
+    if (where.line != l->where.line) {
         l->above = where.line > l->statement_line ? l->current : 0;
+        l->arrows_above = l->arrows;
+    }
+    l->arrows += kind == ARROW || kind == REVERSIBLE;
     l->where = where;
     l->where_offset = l->line_offset;
     l->previous = l->current;
@@ -246,7 +257,7 @@ bool lexical_newline(lexical *l, span *where)
     if (l->current == NEWLINE)
         return false;
     if (goes_on(l->current)) {
-        bool must_part = l->is_skipping || l->formula == 3;
+        bool must_part = l->build.is_mute || l->formula == 3;
         if (!must_part || !lexical_is_statement(l, l->offset, l->current))
             return false;
     }
@@ -282,7 +293,7 @@ int lexical_word(lexical *l, const char *text, bool is_first)
 bool lexical_misses_comma(const lexical *l)
 {
     bool is_behind_side = l->current == NAME || l->current == QUOTED || l->current == NUMBER || l->current == CLOSE;
-    return l->arrows > 0 && l->level == 0 && is_behind_side && !l->is_skipping
+    return l->arrows > 0 && l->level == 0 && is_behind_side && !l->build.is_mute
         && lexical_is_setting(source_text(l->source) + l->token_offset);
 }
 
@@ -326,6 +337,8 @@ syntax_text lexical_bracket(lexical *l, const char *text, size_t length, span wh
 
 int lexical_semicolon(lexical *l, span where)
 {
+    if (l->build.is_mute)
+        return 0;
     const char *rest = skip_blanks(lexical_rest(l));
     bool is_last = !*rest || strchr("\r\n#", *rest);
     bool is_comma = lexical_is_setting(rest);
@@ -375,6 +388,24 @@ int lexical_stranger(lexical *l, const char *text, size_t length, span where)
     return BAD;
 }
 
+bool lexical_is_reaction(const lexical *l)
+{
+    return has_arrow(lexical_rest(l));
+}
+
+int lexical_colon(lexical *l, span where)
+{
+    if (l->current == LABEL && l->first == LABEL) {
+        builder_fault(&l->build, where, "leave it out", "a colon behind a label");
+        return 0;
+    }
+    if (l->current == NAME && l->previous == NEWLINE) {
+        builder_fault(&l->build, where, "write `=`", "`:` defines nothing");
+        return EQUALS;
+    }
+    return lexical_stranger(l, ":", 1, where);
+}
+
 /* ---- The parser's side ----------------------------------------------------- */
 
 /* A line swallowed by the statement above is read again as a statement. */
@@ -394,13 +425,11 @@ void lexical_complain(lexical *l, uint64_t expected)
         return;
     complaint_report(l, expected);
     bool is_ended = l->current == NEWLINE;
-    int above = l->above;
-    bool is_swallowed = above && lexical_is_statement(l, l->where_offset, above);
-    if (is_swallowed) {
+    if (lexical_is_swallowed(l)) {
         read_again(l);
         l->must_end = !is_ended;
     } else if (!is_ended) {
-        l->is_skipping = true;
+        l->build.is_mute = true;
     }
 }
 
@@ -430,7 +459,7 @@ int lexical_next(union YYSTYPE *value, span *where, lexical *l)
     }
     if (l->was_ended)
         forget_statement(l);
-    kind = l->is_skipping ? skip(l, value, where) : lexer_token(value, where, l->scanner);
+    kind = l->build.is_mute ? skip(l, value, where) : lexer_token(value, where, l->scanner);
     if (kind == END && l->current != NEWLINE) {
         l->is_file_end = true;
         kind = end_statement(l, where);

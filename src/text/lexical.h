@@ -40,13 +40,14 @@ typedef struct lexical {
     int    above;               /* last token of the line above, when this line continues it; else 0 */
     int    statement_line;      /* line of the statement's first token */
     int    first;               /* kind of the statement's first token */
+    span   first_where;
     int    arrows;              /* in this statement */
+    int    arrows_above;        /* those on its earlier lines */
     int    formula;             /* tokens of `formula NAME =` seen so far: 1, 2, 3; else 0 */
     bool   is_within;           /* the last NAME is the word `within` */
     bool   is_file_end;         /* the last NEWLINE stands for the end of the text */
     bool   was_ended;           /* the last token was a NEWLINE: the next one starts a statement */
     bool   must_end;            /* after a fault: the parser is to get a NEWLINE first */
-    bool   is_skipping;         /* after a fault: tokens are thrown away up to the end of the statement */
 
     /* Nesting: level open parentheses, each with where it was opened and how
      * many powers and signs wait for their operand in it. */
@@ -85,7 +86,9 @@ int  lexical_accept(lexical *l, int kind, span where);   /* note a token; return
 bool lexical_newline(lexical *l, span *where);           /* true: the statement ends here */
 int  lexical_word(lexical *l, const char *text, bool is_first);  /* NAME or a keyword */
 bool lexical_misses_comma(const lexical *l); /* `A -> B k = 1`: before k */
+bool lexical_is_reaction(const lexical *l);              /* an arrow follows on the line */
 int  lexical_number(lexical *l, const char *text, size_t length, span where, syntax_number *value);
+int  lexical_colon(lexical *l, span where);              /* EQUALS, BAD, or 0 to ignore it */
 int  lexical_semicolon(lexical *l, span where);          /* COMMA, NEWLINE, or 0 to ignore it */
 int  lexical_stranger(lexical *l, const char *text, size_t length, span where);  /* a character with no meaning: BAD */
 syntax_text lexical_bracket(lexical *l, const char *text, size_t length, span where); /* `[X]...` */
@@ -94,6 +97,9 @@ syntax_text lexical_bracket(lexical *l, const char *text, size_t length, span wh
 
 /* The text behind the last token; terminated. */
 const char *lexical_rest(const lexical *l);
+/* Whether the last token stands on a line that the statement went on to only
+ * because the line above ends in, say, a comma. */
+bool lexical_is_swallowed(const lexical *l);
 /* Whether the line that starts at an offset reads like a statement of its own,
  * given the last token of the line above. */
 bool lexical_is_statement(const lexical *l, size_t offset, int above);

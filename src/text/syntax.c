@@ -39,7 +39,7 @@ static bool is_after(span place, span mark)
 
 void builder_fault(builder *b, span where, const char *remedy, const char *format, ...)
 {
-    if (!is_after(where, b->muted))
+    if (b->is_mute || !is_after(where, b->muted))
         return;
     char message[512];
     va_list arguments;
