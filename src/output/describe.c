@@ -7,6 +7,8 @@
 #include "output/layout.h"
 #include "system/system.h"
 
+enum { LIST_SHOWN = 8 };
+
 const char *describe_concentration_unit(const lb_network *net)
 {
     return net->units.none ? "" : net->units.concentration_text;
@@ -38,35 +40,48 @@ static size_t count_held(const lb_network *net)
     return held;
 }
 
-static bool has_boundary_step(const lb_network *net)
+static bool is_boundary_reaction(const network_reaction *reaction)
 {
-    for (int i = 0; i < net->reaction_count; i++)
-        if (net->reactions[i].reactant_count == 0 || net->reactions[i].product_count == 0)
-            return true;
-    return false;
+    return reaction->reactant_count == 0 || reaction->product_count == 0;
 }
 
+static size_t count_boundary_reactions(const lb_network *net)
+{
+    size_t count = 0;
+    for (int i = 0; i < net->reaction_count; i++)
+        count += is_boundary_reaction(&net->reactions[i]);
+    return count;
+}
+
+/* The first few names of a list that may be long. */
 static void append_held(buffer *out, const lb_network *net)
 {
+    size_t shown = 0;
     bool is_first = true;
-    for (int i = 0; i < net->species_count; i++) {
+    for (int i = 0; i < net->species_count && shown < LIST_SHOWN; i++) {
         if (net->species[i].role != ROLE_HELD)
             continue;
         separate(out, &is_first);
         buffer_printf(out, "[%s]", net->species[i].name);
+        shown++;
     }
+    if (shown < count_held(net))
+        buffer_printf(out, " and %zu more", count_held(net) - shown);
 }
 
-static void append_boundary_steps(buffer *out, const lb_network *net)
+static void append_boundary_reactions(buffer *out, const lb_network *net)
 {
+    size_t shown = 0;
     bool is_first = true;
-    for (int i = 0; i < net->reaction_count; i++) {
-        const network_reaction *reaction = &net->reactions[i];
-        if (reaction->reactant_count > 0 && reaction->product_count > 0)
+    for (int i = 0; i < net->reaction_count && shown < LIST_SHOWN; i++) {
+        if (!is_boundary_reaction(&net->reactions[i]))
             continue;
         separate(out, &is_first);
-        buffer_append(out, reaction->label);
+        buffer_append(out, net->reactions[i].label);
+        shown++;
     }
+    if (shown < count_boundary_reactions(net))
+        buffer_printf(out, " and %zu more", count_boundary_reactions(net) - shown);
 }
 
 /* Open or closed, and what makes it so. */
@@ -87,10 +102,10 @@ static void append_boundary(buffer *out, const lb_network *net)
         append_held(out, net);
         buffer_append(out, " held constant");
     }
-    if (has_boundary_step(net)) {
+    if (count_boundary_reactions(net)) {
         separate(out, &is_first);
         buffer_append(out, "sources or sinks (");
-        append_boundary_steps(out, net);
+        append_boundary_reactions(out, net);
         buffer_append(out, ")");
     }
     buffer_append(out, ".");

@@ -6,6 +6,7 @@
 #include "output/text_oscillate.h"
 
 #include <math.h>
+#include <stdarg.h>
 #include <string.h>
 
 #include "output/describe.h"
@@ -31,6 +32,30 @@ static const char *attraction_text(lb_answer stable)
     return "closed orbit whose attraction is undecided";
 }
 
+static void verdict_line(buffer *out, const lb_layout *layout, const char *word, const char *format, ...)
+    __attribute__((format(printf, 4, 5)));
+
+/* The verdict's word, strong, and the sentence behind it as one paragraph. */
+static void verdict_line(buffer *out, const lb_layout *layout, const char *word, const char *format, ...)
+{
+    buffer sentence, lines;
+    buffer_init(&sentence);
+    buffer_init(&lines);
+    buffer_printf(&sentence, "%s ", word);
+    va_list list;
+    va_start(list, format);
+    buffer_vprintf(&sentence, format, list);
+    va_end(list);
+    layout_paragraph(&lines, layout, 2, 0, buffer_get(&sentence));
+    if (buffer_status(&lines) == LB_OK && buffer_status(&sentence) == LB_OK) {
+        buffer_append(out, "  ");
+        layout_strong(out, layout, word);
+        buffer_append(out, buffer_get(&lines) + 2 + strlen(word));
+    }
+    layout_end(&sentence, out);
+    layout_end(&lines, out);
+}
+
 static void write_verdict(buffer *out, const lb_layout *layout, const lb_network *net, const lb_oscillate_answer *answer)
 {
     const char *word = answer->verdict == LB_OSCILLATES ? "Oscillates"
@@ -40,14 +65,13 @@ static void write_verdict(buffer *out, const lb_layout *layout, const lb_network
     buffer_init(&period);
     if (answer->cycle)
         layout_quantity(&period, answer->cycle->period, DIGITS, describe_time_unit(net));
-    buffer_append(out, "  ");
-    layout_strong(out, layout, word);
     if (answer->verdict == LB_OSCILLATES && answer->cycle)
-        buffer_printf(out, " (witnessed): %s, period %s\n", attraction_text(answer->cycle->stable), buffer_get(&period));
+        verdict_line(out, layout, word, "(witnessed): %s, period %s.", attraction_text(answer->cycle->stable), buffer_get(&period));
     else if (answer->verdict == LB_IS_CENTRE && answer->cycle)
-        buffer_printf(out, " (witnessed): neutral closed orbits, one beside the other; period of this one %s\n", buffer_get(&period));
+        verdict_line(out, layout, word, "(witnessed): neutral closed orbits, one beside the other; period of this one %s.",
+                     buffer_get(&period));
     else
-        buffer_append(out, " (searched): no sustained oscillation, which does not prove that there is none\n");
+        verdict_line(out, layout, word, "(searched): no sustained oscillation was found, which does not prove that there is none.");
     layout_end(&period, out);
 }
 

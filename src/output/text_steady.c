@@ -13,7 +13,8 @@ enum {
     DIGITS = 5,
     LABEL_WIDTH = 16,      /* columns kept for the names beside the states */
     STATE_WIDTH = 21,      /* columns per state, so many that "2: stable focus" fits */
-    MODES_SHOWN = 24
+    MODES_SHOWN = 24,
+    BRIEF_STATES = 6
 };
 
 static void write_search(buffer *out, const lb_layout *layout, const lb_network *net, const lb_steady *steady)
@@ -32,7 +33,7 @@ static void write_search(buffer *out, const lb_layout *layout, const lb_network 
     layout_end(&text, out);
     if (steady->continuum > 0)
         layout_printf(out, layout, 2,
-                      "There is a continuum of steady states (of dimension %d), not single ones; a point of it is shown.",
+                      "They are not single points but a continuum, of dimension %d; points of it are shown.",
                       steady->continuum);
     buffer_init(&text);
     describe_states(&text, net, steady->accumulating);
@@ -51,13 +52,14 @@ static const lb_mode *leading_mode(const lb_steady_state *state)
     return leading;
 }
 
-static void rate_cell(grid *g, const lb_mode *mode, const char *time_unit)
+/* A real part that is zero to within its error is called neutral. */
+static void rate_cell(grid *g, const lb_steady_state *state, const lb_mode *mode, const char *time_unit)
 {
     if (!mode) {
         grid_cell(g, "%s", "");
         return;
     }
-    if (!isfinite(mode->time)) {
+    if (!isfinite(mode->time) || fabs(mode->eigenvalue.re) <= state->real_part_error) {
         grid_cell(g, "neutral");
         return;
     }
@@ -89,36 +91,42 @@ static void write_block(buffer *out, const lb_layout *layout, const lb_network *
     if (with_rates) {
         grid_cell(&g, "%s", "");
         for (size_t s = first; s <= last; s++)
-            rate_cell(&g, leading_mode(&steady->state[s]), describe_time_unit(net));
+            rate_cell(&g, &steady->state[s], leading_mode(&steady->state[s]), describe_time_unit(net));
     }
     buffer_char(out, '\n');
     grid_write(&g, layout, 2, out);
 }
 
-void steady_write(buffer *out, const lb_layout *layout, const lb_system *system, const lb_steady *steady, bool with_rates)
+void steady_write(buffer *out, const lb_layout *layout, const lb_system *system, const lb_steady *steady, bool is_brief)
 {
     const lb_network *net = system->network;
     buffer heading;
     buffer_init(&heading);
-    describe_count(&heading, steady->count, "steady state");
+    if (steady->continuum > 0)
+        buffer_append(&heading, "Steady states: a continuum");
+    else
+        describe_count(&heading, steady->count, "steady state");
     layout_heading(out, layout, buffer_get(&heading));
     layout_end(&heading, out);
     write_search(out, layout, net, steady);
     int room = (layout_width(layout) - LABEL_WIDTH) / STATE_WIDTH;
     size_t columns = room < 1 ? 1 : room > GRID_COLUMNS - 1 ? GRID_COLUMNS - 1 : (size_t)room;
-    for (size_t first = 0; first < steady->count; first += columns) {
-        size_t last = first + columns - 1 < steady->count - 1 ? first + columns - 1 : steady->count - 1;
-        write_block(out, layout, net, steady, first, last, with_rates);
+    size_t shown = is_brief && steady->count > BRIEF_STATES ? BRIEF_STATES : steady->count;
+    for (size_t first = 0; first < shown; first += columns) {
+        size_t last = first + columns - 1 < shown - 1 ? first + columns - 1 : shown - 1;
+        write_block(out, layout, net, steady, first, last, is_brief);
     }
+    if (shown < steady->count)
+        buffer_printf(out, "\n  and %zu more: limbeck steady %s\n", steady->count - shown, net->file);
 }
 
 /* "relaxes in 6.7 s" and, of a pair, "swings every 6.4 s, each swing 0.39 times the last". */
-static void mode_cells(grid *g, const lb_mode *mode, const char *time_unit)
+static void mode_cells(grid *g, const lb_steady_state *state, const lb_mode *mode, const char *time_unit)
 {
     char eigenvalue[LAYOUT_COMPLEX], damping[LAYOUT_NUMBER];
     layout_complex(mode->eigenvalue, DIGITS, eigenvalue);
     grid_cell(g, "%s", eigenvalue);
-    rate_cell(g, mode, time_unit);
+    rate_cell(g, state, mode, time_unit);
     if (mode->period == 0) {
         grid_cell(g, "%s", "");
         return;
@@ -137,7 +145,7 @@ static void write_modes(buffer *out, const lb_layout *layout, const lb_network *
     grid_init(&g, "lll", false);
     int shown = state->mode_count < MODES_SHOWN ? state->mode_count : MODES_SHOWN;
     for (int i = 0; i < shown; i++)
-        mode_cells(&g, &state->modes[i], describe_time_unit(net));
+        mode_cells(&g, state, &state->modes[i], describe_time_unit(net));
     grid_write(&g, layout, 4, out);
     if (shown < state->mode_count)
         layout_printf(out, layout, 4, "and %d faster ones (--json gives them all)", state->mode_count - shown);

@@ -6,7 +6,8 @@
 #include "limbeck.h"
 
 /* How many, how they were found, and a table of concentrations with a column
- * per state; with_rates adds the slowest decay (or the fastest growth) of each. */
-void steady_write(buffer *out, const lb_layout *layout, const lb_system *system, const lb_steady *steady, bool with_rates);
+ * per state.  is_brief: the first few only, with the slowest relaxation (or the
+ * fastest growth) of each below. */
+void steady_write(buffer *out, const lb_layout *layout, const lb_system *system, const lb_steady *steady, bool is_brief);
 
 #endif
