@@ -231,7 +231,7 @@ lb_status closed_confirm(const closed_orbit *c, const lb_monitor *monitor, doubl
 
 /* ---- Families ---------------------------------------------------------------------- */
 
-#define FAMILY_STEP 0.1           /* in amplitudes */
+#define FAMILY_STEP 0.02          /* in amplitudes: the orbit closed next to it drifts back by the square of it */
 #define FAMILY_KEPT 0.5           /* of the step must be left after closing */
 
 /* Close from a place `step` amplitudes along the neutral direction; kept: how much

@@ -26,7 +26,9 @@ enum {
     FIRST_EPOCH = 128,            /* steps */
     EPOCH_RETURNS = 6,            /* an epoch with fewer was too short */
     REST_EVERY = 32,              /* steps between questions about rest */
-    SHARPEN_AFTER = 300           /* returns without success: integrate more closely */
+    SHARPEN_AFTER = 300,          /* returns without success: integrate more closely */
+    GROWTH_STEPS = 1024,          /* first look at growth; then whenever the steps have doubled */
+    GROWTH_DOUBLINGS = 3
 };
 
 #define DEFAULT_TOLERANCE 1e-11
@@ -40,7 +42,8 @@ enum {
 #define STARTS_AT_REST 1e-10
 #define STILL 1e-6
 #define RUNAWAY 1e60
-#define RUNAWAY_GROWTH 1e6
+#define RUNAWAY_GROWTH 1e6        /* before the integration fails */
+#define STILL_GROWS 1.5           /* factor while the number of steps doubles, without a return */
 
 typedef struct explorer {
     space s;
@@ -62,6 +65,9 @@ typedef struct explorer {
     size_t epoch_end, epoch_length, epoch_returns, max_returns, max_steps;
     double repeat;                /* how close the next repeat must be */
     double first_distance;        /* from the stable steady state, when first near it; else infinite */
+    double last_largest;          /* magnitude when the steps had last doubled */
+    size_t last_returns;
+    int doublings;                /* in a row through which it grew */
     double elapsed;               /* before the integrator's last start */
     bool is_sharp, is_done;
 } explorer;
@@ -171,9 +177,8 @@ static lb_status settle(explorer *e, const double *where, const char *why, lb_er
     if (!report->rest)
         return status_no_memory(err);
     memcpy(report->rest, where, n * sizeof *where);
-    swings_summary(&e->swings, e->reach, &report->swings, &report->swing_decay, &report->swing_species);
     finish(e, CYCLE_SETTLED, why);
-    return LB_OK;
+    return swings_summary(&e->swings, e->reach, &report->swings, &report->swing_decay, &report->swing_species, err);
 }
 
 /* A point of the orbit as a state to start from: species set aside take what the
@@ -243,11 +248,22 @@ static double growth(const explorer *e, double *largest)
     return start > 0 ? *largest / start : 0;
 }
 
+/* A power of time as well as an exponential: it grows whenever the number of steps
+ * doubles, several times in a row, and nothing comes back. */
 static void look_for_runaway(explorer *e)
 {
     double largest;
+    size_t steps = e->report->steps;
     growth(e, &largest);
     if (largest > RUNAWAY)
+        finish(e, CYCLE_UNBOUNDED, "it grows without bound");
+    if (steps < GROWTH_STEPS || (steps & (steps - 1)) != 0)
+        return;
+    bool grew = largest > STILL_GROWS * e->last_largest && e->report->returns == e->last_returns;
+    e->doublings = steps > GROWTH_STEPS && grew ? e->doublings + 1 : 0;
+    e->last_largest = largest;
+    e->last_returns = e->report->returns;
+    if (e->doublings >= GROWTH_DOUBLINGS)
         finish(e, CYCLE_UNBOUNDED, "it grows without bound");
 }
 

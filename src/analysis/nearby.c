@@ -18,6 +18,8 @@
 #define PUSH 0.01                 /* relative to the species' size, along an unstable direction */
 #define PUSH_NEUTRAL 0.1
 #define SMALL_FRACTION 1e-3       /* of the largest species: size of one that is zero */
+#define SIGNED_FRACTION 0.1       /* the same for a signed one, whose zero means nothing */
+#define SPREAD 10.0
 #define ON_THE_AXIS 1e-8          /* real part relative to imaginary part */
 
 typedef struct pusher {
@@ -47,8 +49,10 @@ static lb_status pusher_init(pusher *p, lb_evaluator *evaluator, const double *x
     }
     if (!(largest > 0))
         largest = largest_start > 0 ? largest_start : 1;
+    const lb_network *net = evaluator_system(evaluator)->network;
     for (int i = 0; i < n; i++)
-        p->size[i] = fmax(fabs(whole[i]), SMALL_FRACTION * largest);
+        p->size[i] = fmax(fabs(whole[i]), largest * (net->species[net->state_species[i]].is_signed ? SIGNED_FRACTION
+                                                                                                  : SMALL_FRACTION));
     p->x = whole;
     return space_init(&p->s, evaluator, whole, err);
 }
@@ -129,7 +133,7 @@ lb_status nearby_spread(lb_evaluator *evaluator, const double *x, const double *
             int state = space_state(&p.s, j);
             double u = 2 * p.direction[j] - 1;
             bool is_signed = net->species[net->state_species[state]].is_signed;
-            p.direction[j] = is_signed ? 2 * u * p.size[state] : p.size[state] * pow(10, u) - p.x[state];
+            p.direction[j] = is_signed ? u * SPREAD * p.size[state] : p.size[state] * pow(SPREAD, u) - p.x[state];
         }
         space_lift(&p.s, p.direction, p.change);
         double fraction = 1;

@@ -41,7 +41,7 @@ lb_status orbit_turn(const orbit_turning *turning, int i, double ta, double fa, 
             tb = t, fb = f, fa *= 0.5;
         }
     }
-    lb_status status = integrator_dense(turning->it, t, turning->x, err);
+    lb_status status = integrator_restep(turning->it, t, turning->x, err);
     *value = turning->x[i];
     return status;
 }

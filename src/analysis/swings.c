@@ -6,6 +6,7 @@
 #include "analysis/swings.h"
 
 #include <math.h>
+#include <stdlib.h>
 #include <string.h>
 
 #include "base/memory.h"
@@ -58,39 +59,64 @@ size_t swings_turns(const swings *w, int state)
     return w->track[state].turns;
 }
 
-/* Falls of one track that stand above noise: their number, the first and the last. */
-static int prominent(const swings_track *track, double *largest, double *first, double *last)
+/* Falls of one track that stand above noise: their number and the largest. */
+static int prominent(const swings_track *track, double *largest)
 {
     int count = 0;
     *largest = 0;
     for (size_t j = 0; j + 1 < track->count; j += 2)
         *largest = fmax(*largest, track->value[j] - track->value[j + 1]);
-    for (size_t j = 0; j + 1 < track->count; j += 2) {
-        double fall = track->value[j] - track->value[j + 1];
-        if (fall <= SWING_NOISE * *largest)
-            continue;
-        if (count++ == 0)
-            *first = fall;
-        *last = fall;
-    }
+    for (size_t j = 0; j + 1 < track->count; j += 2)
+        count += track->value[j] - track->value[j + 1] > SWING_NOISE * *largest;
     return count;
 }
 
-void swings_summary(const swings *w, const double *reach, int *count, double *decay, int *state)
+static int ascending(const void *a, const void *b)
 {
-    double best = SMALLEST_SWING;
+    double x = *(const double *)a, y = *(const double *)b;
+    return (x > y) - (x < y);
+}
+
+/* Median ratio of successive prominent falls: the first swings of a wide start and
+ * the last of a fine end do not sway it.  scratch has room for the track. */
+static double median_ratio(const swings_track *track, double largest, double *scratch)
+{
+    double last = 0;
+    size_t count = 0;
+    for (size_t j = 0; j + 1 < track->count; j += 2) {
+        double fall = track->value[j] - track->value[j + 1];
+        if (fall <= SWING_NOISE * largest)
+            continue;
+        if (last > 0)
+            scratch[count++] = fall / last;
+        last = fall;
+    }
+    qsort(scratch, count, sizeof *scratch, ascending);
+    return count % 2 ? scratch[count / 2] : 0.5 * (scratch[count / 2 - 1] + scratch[count / 2]);
+}
+
+lb_status swings_summary(const swings *w, const double *reach, int *count, double *decay, int *state, lb_error *err)
+{
+    double best = SMALLEST_SWING, largest = 0;
     *count = 0;
     *decay = 0;
     *state = -1;
     for (int k = 0; k < w->s->core; k++) {
-        int i = w->s->system->core_state[k];
-        double largest, first = 0, last = 0;
-        int found = prominent(&w->track[i], &largest, &first, &last);
+        int i = w->s->system->core_state[k], found = prominent(&w->track[i], &largest);
         if (found < FEWEST || !(largest > best * reach[i]))
             continue;
         best = largest / reach[i];
         *count = found;
-        *decay = pow(last / first, 1.0 / (found - 1));
         *state = i;
     }
+    if (*state < 0)
+        return LB_OK;
+    const swings_track *track = &w->track[*state];
+    double *scratch = memory_array(track->count, sizeof *scratch);
+    if (!scratch)
+        return status_no_memory(err);
+    prominent(track, &largest);
+    *decay = median_ratio(track, largest, scratch);
+    memory_free(scratch);
+    return LB_OK;
 }
