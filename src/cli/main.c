@@ -56,7 +56,7 @@ static int show_help(const options *given)
         return help_command(&command_page);
     lb_error error = {.code = LB_E_ARG};
     const char *nearest = command_nearest(given->topic);
-    snprintf(error.message, sizeof error.message, "there is no command \"%.400s\"", given->topic);
+    snprintf(error.message, sizeof error.message, "there is no command `%.400s`", given->topic);
     if (nearest)
         snprintf(error.remedy, sizeof error.remedy, "did you mean `limbeck help %s`?", nearest);
     return session_report(given, &error, NULL, EXIT_USAGE);

@@ -130,7 +130,7 @@ static bool add_setting(options *o, const char *text)
 {
     const char *equals = strchr(text, '=');
     if (!equals || equals == text || !equals[1])
-        return fail(o, "write --set NAME=VALUE, for example --set k2=0.1", "\"%s\" is not NAME=VALUE", text);
+        return fail(o, "write --set NAME=VALUE, for example --set k2=0.1", "`%s` is not NAME=VALUE", text);
     lb_setting *more = realloc(o->settings, (o->setting_count + 1) * sizeof *more);
     if (!more)
         return fail_memory(o);
@@ -149,7 +149,7 @@ static bool read_whole(options *o, const option_spec *spec, const char *text, ui
     errno = 0;
     unsigned long long number = strtoull(text, &end, 10);
     if (text[0] < '0' || text[0] > '9' || *end || errno || number < low)
-        return fail(o, NULL, "%s takes a whole number%s, and \"%s\" is none", spec->name, low ? " above zero" : "", text);
+        return fail(o, NULL, "%s takes a whole number%s, and `%s` is none", spec->name, low ? " above zero" : "", text);
     *value = number;
     return true;
 }
@@ -160,9 +160,9 @@ static bool read_positive(options *o, const option_spec *spec, const char *text,
     char *end;
     double number = strtod(text, &end);
     if (end == text || *end || !isfinite(number) || number <= 0)
-        return fail(o, NULL, "%s takes a number above zero, and \"%s\" is none", spec->name, text);
+        return fail(o, NULL, "%s takes a number above zero, and `%s` is none", spec->name, text);
     if (number > high)
-        return fail(o, NULL, "%s takes at most %g, and \"%s\" is more", spec->name, high, text);
+        return fail(o, NULL, "%s takes at most %g, and `%s` is more", spec->name, high, text);
     *value = number;
     return true;
 }
@@ -178,7 +178,7 @@ static bool read_scopes(options *o, const char *text)
             o->ranges = true;
         else
             return fail(o, "write --scope given, --scope ranges or --scope given,ranges",
-                        "\"%.*s\" is not a scope", (int)length, word);
+                        "`%.*s` is not a scope", (int)length, word);
         word += length;
         if (!*word)
             return true;
@@ -269,15 +269,15 @@ static bool fail_second_word(options *o, const char *word)
     char remedy[200];
     if (!*o->command->name && command_find(word)) {
         snprintf(remedy, sizeof remedy, "the command comes first: limbeck %s %s", word, o->file);
-        return fail(o, remedy, "\"%s\" stands after the file", word);
+        return fail(o, remedy, "`%s` stands after the file", word);
     }
     if (!*o->command->name && access(o->file, F_OK) != 0) {
         const char *nearest = command_nearest(o->file);
         if (nearest)
             snprintf(remedy, sizeof remedy, "did you mean `limbeck %s %s`?", nearest, word);
-        return fail(o, nearest ? remedy : "`limbeck --help` lists the commands", "there is no command \"%s\"", o->file);
+        return fail(o, nearest ? remedy : "`limbeck --help` lists the commands", "there is no command `%s`", o->file);
     }
-    return fail(o, NULL, "one mechanism file at a time: \"%s\" is a second one", word);
+    return fail(o, NULL, "one mechanism file at a time: `%s` is a second one", word);
 }
 
 static bool add_word(options *o, const char *word)

@@ -26,7 +26,7 @@ static lb_status save_witness(const session *s, const lb_oscillate *oscillate, l
     }
     lb_status status = files_write(s->given->output, answer->witness, strlen(answer->witness), error);
     if (status == LB_OK)
-        session_note(s, "the witness for the scope \"%s\" to %s", lb_scope_text(answer->scope), s->given->output);
+        session_note(s, "the witness for the scope `%s` to %s", lb_scope_text(answer->scope), s->given->output);
     return status;
 }
 

@@ -32,7 +32,7 @@ static int fail_word(const options *given)
 {
     lb_error error = {.code = LB_E_ARG};
     const char *nearest = command_nearest(given->file);
-    snprintf(error.message, sizeof error.message, "there is no command and no file \"%.400s\"", given->file);
+    snprintf(error.message, sizeof error.message, "there is no command and no file `%.400s`", given->file);
     if (nearest)
         snprintf(error.remedy, sizeof error.remedy, "did you mean `limbeck %s FILE`?", nearest);
     else

@@ -16,20 +16,16 @@ static lb_status read_time(const session *s, const char *option, const char *tex
     if (status == LB_OK)
         return LB_OK;
     *error = (lb_error){.code = status};
-    snprintf(error->message, sizeof error->message, "%s takes a time above zero, and \"%.80s\" is none%s%.300s", option, text,
-             *reason.message ? ": " : "", reason.message);
+    if (*reason.message)
+        snprintf(error->message, sizeof error->message, "%s: %.400s", option, reason.message);
+    else
+        snprintf(error->message, sizeof error->message, "%s takes a time above zero, and `%.80s` is none", option, text);
     snprintf(error->remedy, sizeof error->remedy, "write it in the file's unit, or with one: %s 3600, %s \"1 h\"", option, option);
     return status;
 }
 
 static lb_status read_times(const session *s, lb_run_options *run_options, lb_error *error)
 {
-    if (!s->given->until) {
-        *error = (lb_error){.code = LB_E_ARG,
-                            .message = "run needs the time at which to end",
-                            .remedy = "write it in the file's unit, or with one: --until 3600, --until \"1 h\""};
-        return LB_E_ARG;
-    }
     lb_status status = read_time(s, "--until", s->given->until, &run_options->until, error);
     if (status == LB_OK && s->given->every)
         status = read_time(s, "--every", s->given->every, &run_options->every, error);
@@ -115,6 +111,12 @@ static int solve(session *s)
 
 static int run_command(const options *given)
 {
+    if (!given->until) {
+        lb_error error = {.code = LB_E_ARG,
+                          .message = "run needs the time at which to end",
+                          .remedy = "write it in the file's unit, or with one: --until 3600, --until \"1 h\""};
+        return session_report(given, &error, NULL, EXIT_USAGE);
+    }
     session s;
     int result = session_open_system(&s, given);
     if (result == EXIT_ANSWERED) {

@@ -69,12 +69,6 @@ static double now(void)
     return (double)time.tv_sec + 1e-9 * (double)time.tv_nsec;
 }
 
-static bool should_stop(void *context)
-{
-    (void)context;
-    return terminal_interrupted();
-}
-
 /* At most ten times a second, and not before half a second of work. */
 static void show(void *context, const char *what, double done)
 {
@@ -89,6 +83,16 @@ static void show(void *context, const char *what, double done)
         fprintf(stderr, "\r\033[K%s: %.0f %%", what, 100 * done);
     else
         fprintf(stderr, "\r\033[K%s: %.0f s", what, time - progress->started);
+}
+
+/* Asked often, so this is also where work that says nothing shows that it goes on. */
+static bool should_stop(void *context)
+{
+    const double silence = 1;
+    terminal_progress *progress = context;
+    if (progress->is_shown && now() - progress->last >= silence)
+        show(progress, "working", -1);
+    return terminal_interrupted();
 }
 
 lb_monitor terminal_monitor(terminal_progress *progress, bool quiet)

@@ -130,10 +130,11 @@ static void append_counts(buffer *out, const lb_network *net)
 void describe_opening(buffer *out, const lb_layout *layout, const lb_network *net)
 {
     bool has_title = net->title && *net->title;
-    layout_strong(out, layout, has_title ? net->title : net->file);
+    const char *file = strcmp(net->file, "-") == 0 ? "standard input" : net->file;
+    layout_strong(out, layout, has_title ? net->title : file);
     buffer_char(out, '\n');
     if (has_title)
-        buffer_printf(out, "%s\n", net->file);
+        buffer_printf(out, "%s\n", file);
     buffer_char(out, '\n');
     buffer text;
     buffer_init(&text);

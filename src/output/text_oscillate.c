@@ -94,24 +94,29 @@ static void write_amplitudes(buffer *out, const lb_layout *layout, const lb_netw
     buffer_char(out, '\n');
 }
 
+/* Smaller ones are the noise of the integration. */
+static bool is_resolved(lb_complex multiplier)
+{
+    return hypot(multiplier.re, multiplier.im) >= 1e-8;
+}
+
 static void write_multipliers(buffer *out, const lb_layout *layout, const lb_cycle *cycle)
 {
     if (cycle->multiplier_count == 0)
         return;
     buffer text;
     buffer_init(&text);
-    int shown = cycle->multiplier_count < MULTIPLIERS_SHOWN ? cycle->multiplier_count : MULTIPLIERS_SHOWN;
-    bool is_first = true;
-    for (int i = 0; i < shown; i++) {
-        if (cycle->multipliers[i].im < 0)
-            continue;
+    int shown = 0;
+    while (shown < cycle->multiplier_count && shown < MULTIPLIERS_SHOWN && is_resolved(cycle->multipliers[shown])) {
+        lb_complex multiplier = cycle->multipliers[shown++];
         char one[LAYOUT_COMPLEX];
-        layout_complex(cycle->multipliers[i], 4, one);
-        buffer_printf(&text, "%s%s", is_first ? "" : ", ", one);
-        is_first = false;
+        layout_complex(multiplier, 4, one);
+        if (multiplier.im >= 0)
+            buffer_printf(&text, "%s%s", *buffer_get(&text) ? ", " : "", one);
     }
     if (shown < cycle->multiplier_count)
-        buffer_printf(&text, " and %d smaller", cycle->multiplier_count - shown);
+        buffer_printf(&text, "%s%d of less than %s", *buffer_get(&text) ? ", and " : "", cycle->multiplier_count - shown,
+                      shown < MULTIPLIERS_SHOWN ? "1e-8" : "that");
     const char *judgement = cycle->stable == LB_YES ? ", all inside the unit circle" : "";
     layout_printf(out, layout, 2, "Floquet multipliers, the one along the orbit left out%s: %s.", judgement, buffer_get(&text));
     layout_end(&text, out);
@@ -164,7 +169,7 @@ static void write_constants(buffer *out, const lb_layout *layout, const lb_netwo
 
 static void write_transient(buffer *out, const lb_layout *layout, const lb_network *net, const lb_oscillate_answer *answer)
 {
-    if (answer->swings <= 0)
+    if (answer->swings <= 0 || answer->verdict != LB_NOT_FOUND)
         return;
     const char *species = answer->swing_species >= 0 ? lb_network_state_name(net, answer->swing_species) : NULL;
     buffer text;
