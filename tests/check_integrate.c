@@ -5,6 +5,7 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "analysis/explicit.h"
 #include "analysis/rosenbrock.h"
 #include "base/memory.h"
 #include "stiff_problems.h"
@@ -336,6 +337,12 @@ START_TEST(test_the_method_fits_the_problem)
     ck_assert_ptr_nonnull(strstr(integrator_reason(r.it), "damped"));
     ck_assert_uint_lt(integrator_steps(r.it), 1200);
     rig_free(&r);
+
+    /* Fast but growing: nothing that an explicit step could not follow. */
+    r = rig_new("units none\n[Y]0 = 1\nX -> 2 X, k = 1000\nY ->, k = 1\n", NULL);
+    rig_to(&r, 0.01);
+    ck_assert_ptr_null(strstr(integrator_method(r.it), "Rodas5P"));
+    rig_free(&r);
 }
 END_TEST
 
@@ -437,6 +444,27 @@ START_TEST(test_crossings_are_found_once_and_exactly)
 }
 END_TEST
 
+/* The point is the end of a step of its own, on the section to rounding. */
+START_TEST(test_a_crossing_is_as_good_as_a_step)
+{
+    const double weight[2] = {1, 0};
+    integrator_options options = {.tolerance = 1e-4, .method = _i ? LB_METHOD_STIFF : LB_METHOD_EXPLICIT};
+    rig r = rig_new(BRUSSELATOR, &options);
+    bool found = false;
+    double t, x[2], again[2];
+    for (int count = 0; count < 5; count += found) {
+        ck_assert_int_eq(integrator_step(r.it, INFINITY, &r.err), LB_OK);
+        ck_assert_int_eq(integrator_crossing(r.it, weight, 1.5, 1, &found, &t, x, &r.err), LB_OK);
+        if (found) {
+            ck_assert_int_eq(integrator_restep(r.it, t, again, &r.err), LB_OK);
+            ck_assert(x[0] == again[0] && x[1] == again[1]);
+            assert_close(x[0], 1.5, 0, 1e-13);
+        }
+    }
+    rig_free(&r);
+}
+END_TEST
+
 /* A start on the section does not cross it; a touch between the ends of a long
  * step does: level 0.999 is passed twice within 0.09. */
 START_TEST(test_short_visits_and_starts_on_the_section)
@@ -445,6 +473,14 @@ START_TEST(test_short_visits_and_starts_on_the_section)
     integrator_options options = {.tolerance = 1e-4, .method = LB_METHOD_EXPLICIT};
     rig r = rig_new(OSCILLATOR, &options);
     int on_start = 0, visits = 0, longest = 0;
+    const double rising[2] = {0, 1};
+    bool crosses;
+    double when, where[2];
+    integrator_start(r.it, 0, rising);
+    ck_assert_int_eq(integrator_step(r.it, 1, &r.err), LB_OK);
+    ck_assert_int_eq(integrator_crossing(r.it, weight, 0, 0, &crosses, &when, where, &r.err), LB_OK);
+    ck_assert(!crosses);
+    integrator_start(r.it, 0, r.start);
     for (int k = 0; integrator_time(r.it) < 63; k++) {
         bool found;
         double t, x[2];
@@ -464,14 +500,18 @@ END_TEST
 
 START_TEST(test_landing_on_many_times_does_not_shorten_the_steps)
 {
-    rig r = rig_new(DECAY, NULL);
-    for (int k = 1; k <= 10; k++)
-        rig_to(&r, 1e-6 * k);
-    size_t before = integrator_steps(r.it);
-    rig_to(&r, 10);
-    ck_assert_uint_eq(before, 10);
-    ck_assert_uint_lt(integrator_steps(r.it) - before, 40);
-    rig_free(&r);
+    size_t steps[2];
+    for (int often = 0; often < 2; often++) {
+        rig r = rig_new(DECAY, NULL);
+        rig_to(&r, 5);
+        for (int k = 1; often && k <= 10; k++)
+            rig_to(&r, 5 + 1e-9 * k);
+        rig_to(&r, 10);
+        steps[often] = integrator_steps(r.it);
+        rig_free(&r);
+    }
+    ck_assert_uint_ge(steps[1], steps[0] + 9);
+    ck_assert_uint_le(steps[1], steps[0] + 12);
 }
 END_TEST
 
@@ -531,6 +571,38 @@ START_TEST(test_tangents_are_right_at_rest)
     assert_close(P[0], exp(-1), 1e-7, 0);
     assert_close(P[3], exp(-50), 0, 1e-13);
     ck_assert(P[1] == 0 && P[2] == 0);
+    rig_free(&r);
+}
+END_TEST
+
+/* One step of a fixed, large size: P is the derivative of the step itself, with
+ * its error, and not only of the solution.  Central differences of the step: their
+ * error is (1e-5)^2 and rounding/1e-5; the differences of J inside the stiff method
+ * add some 1e-9, times constants of size 100. */
+START_TEST(test_tangents_are_the_exact_derivative_of_a_step)
+{
+    const char *text = "units none\n[S]0 = 1\n[P]0 = 0.5\n-> S, k = 1\nS -> P, v = 3*[S]/(0.2 + [S] + [P]^2)\n2 P ->, k = 1.5\n";
+    rig r = rig_new(text, NULL);
+    explicit_method *explicit_steps;
+    rosenbrock *stiff_steps;
+    ck_assert_int_eq(explicit_new(r.evaluator, true, &explicit_steps, NULL), LB_OK);
+    ck_assert_int_eq(rosenbrock_new(r.evaluator, true, &stiff_steps, NULL), LB_OK);
+    const double identity[4] = {1, 0, 0, 1};
+    double x[2], f[2], side[3][2], error[2], P[4], unused[4], P_error[4];
+    for (int j = 0; j < 2; j++)
+        for (int k = 2; k >= 0; k--) {
+            memcpy(x, r.start, sizeof x);
+            x[j] += k == 2 ? 0 : k == 1 ? 1e-5 : -1e-5;
+            lb_rhs(r.evaluator, x, f);
+            stepper_attempt attempt = {0.8, x, f, identity, side[k], error, k == 2 ? P : unused, P_error, -1};
+            ck_assert(rosenbrock_prepare(stiff_steps, x));
+            ck_assert_int_eq(_i ? rosenbrock_attempt(stiff_steps, &attempt) : explicit_attempt(explicit_steps, &attempt),
+                             STEPPER_DONE);
+            for (int i = 0; i < 2 && k == 0; i++)
+                assert_close(P[i + 2 * j], (side[1][i] - side[0][i]) / 2e-5, 0, _i ? 1e-8 : 1e-10);
+        }
+    rosenbrock_free(stiff_steps);
+    explicit_free(explicit_steps);
     rig_free(&r);
 }
 END_TEST
@@ -682,18 +754,20 @@ END_TEST
 
 START_TEST(test_a_start_forgets_earlier_runs)
 {
-    double end[3], t[3];
-    rig r = rig_new(OREGO_TEXT, NULL);
-    rig_to(&r, 50);
-    t[0] = (double)integrator_steps(r.it);
-    memcpy(end, integrator_state(r.it), sizeof end);
-    rig_to(&r, 360);
-    integrator_start(r.it, 0, r.start);
-    rig_to(&r, 50);
-    t[1] = (double)integrator_steps(r.it);
-    ck_assert_int_eq(memcmp(end, integrator_state(r.it), sizeof end), 0);
-    ck_assert(t[0] == t[1]);
-    rig_free(&r);
+    const stiff_problem *problem = &stiff_problems[_i];
+    double end[32];
+    for (int tenths = 1; tenths < 10; tenths++) {
+        rig r = rig_new(problem->text, NULL);
+        rig_to(&r, problem->until * pow(0.1, tenths));
+        size_t steps = integrator_steps(r.it);
+        memcpy(end, integrator_state(r.it), (size_t)r.n * sizeof *end);
+        rig_to(&r, problem->until);
+        integrator_start(r.it, 0, r.start);
+        rig_to(&r, problem->until * pow(0.1, tenths));
+        ck_assert_int_eq(memcmp(end, integrator_state(r.it), (size_t)r.n * sizeof *end), 0);
+        ck_assert_uint_eq(integrator_steps(r.it), steps);
+        rig_free(&r);
+    }
 }
 END_TEST
 
@@ -753,12 +827,14 @@ static void add_methods(Suite *suite)
     TCase *within = tcase_create("within");
     tcase_add_loop_test(within, test_dense_output_follows_the_solution, 0, 2);
     tcase_add_loop_test(within, test_crossings_are_found_once_and_exactly, 0, 2);
+    tcase_add_loop_test(within, test_a_crossing_is_as_good_as_a_step, 0, 2);
     tcase_add_test(within, test_short_visits_and_starts_on_the_section);
     tcase_add_test(within, test_landing_on_many_times_does_not_shorten_the_steps);
     suite_add_tcase(suite, within);
     TCase *tangents = tcase_create("tangents");
     tcase_add_loop_test(tangents, test_determinant_of_tangents_is_the_trace_integral, 0, 2);
     tcase_add_loop_test(tangents, test_tangents_are_the_derivative_of_the_flow, 0, 2);
+    tcase_add_loop_test(tangents, test_tangents_are_the_exact_derivative_of_a_step, 0, 2);
     tcase_add_loop_test(tangents, test_tangents_are_right_at_rest, 0, 2);
     suite_add_tcase(suite, tangents);
 }
@@ -776,7 +852,7 @@ static void add_failures(Suite *suite)
     tcase_add_test(wrong, test_a_limit_of_steps_is_kept);
     tcase_add_test(wrong, test_options_outside_their_domain_are_refused);
     tcase_add_test(wrong, test_absolute_tolerances_are_per_species);
-    tcase_add_test(wrong, test_a_start_forgets_earlier_runs);
+    tcase_add_loop_test(wrong, test_a_start_forgets_earlier_runs, 0, STIFF_PROBLEMS);
     tcase_add_test(wrong, test_failing_allocations_leave_nothing_behind);
     suite_add_tcase(suite, wrong);
 }

@@ -61,6 +61,18 @@ START_TEST(test_solution_satisfies_the_equations)
 }
 END_TEST
 
+/* Without pivoting the small entry swamps the second equation: x = (1, 1) - 1e-20. */
+START_TEST(test_small_pivots_are_avoided)
+{
+    double A[4] = {1e-20, 1, 1, 1}, b[2] = {1, 2};
+    int pivot[2];
+    ck_assert(linalg_factor(2, A, pivot));
+    linalg_solve(2, A, pivot, 1, b);
+    assert_close(b[0], 1, 1e-15, 0);
+    assert_close(b[1], 1, 1e-15, 0);
+}
+END_TEST
+
 START_TEST(test_singular_and_not_finite_matrices_are_refused)
 {
     int pivot[3];
@@ -235,6 +247,7 @@ Suite *linalg_suite(void)
     Suite *suite = suite_create("linalg");
     TCase *solve = tcase_create("solve");
     tcase_add_test(solve, test_solution_satisfies_the_equations);
+    tcase_add_test(solve, test_small_pivots_are_avoided);
     tcase_add_test(solve, test_singular_and_not_finite_matrices_are_refused);
     tcase_add_test(solve, test_condition_of_a_diagonal_matrix_is_the_ratio);
     tcase_add_test(solve, test_least_squares_gives_the_shortest_solution);

@@ -53,8 +53,9 @@ END_TEST
 
 START_TEST(test_the_last_row_stands_at_the_end_whatever_the_spacing)
 {
-    const double until[] = {1, 1, 1, 0.3, 1}, every[] = {0.3, 0.1, 5, 0.1, 1};
-    const size_t rows[] = {5, 11, 2, 4, 2};
+    /* 0.3/0.1 is a little below 3 in binary, 1.1/0.1 a little above 11. */
+    const double until[] = {1, 1, 1, 0.3, 1.1}, every[] = {0.3, 0.1, 5, 0.1, 0.1};
+    const size_t rows[] = {5, 11, 2, 4, 12};
     rig r = rig_new(DECAY);
     for (int k = 0; k < 5; k++) {
         lb_run_options options = {.until = until[k], .every = every[k]};
