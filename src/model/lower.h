@@ -82,6 +82,7 @@ typedef struct lower_definition {
     int plain;                      /* index, or -1 when derived */
     lower_value value;              /* once evaluated; kind GENERAL or BAD */
     bool is_done, is_used;
+    bool is_rejected;               /* its name belongs to the language: there so that uses stay quiet */
 } lower_definition;
 
 typedef struct lower_species {
@@ -221,8 +222,9 @@ lower_value value_call(lower *l, const syntax_expression *node, lower_value *arg
 lower_value value_temperature(lower *l, span where);
 /* State that two dimensions agree.  False on a conflict, with both as texts. */
 bool lower_agree(lower *l, const form *a, const form *b, int line, const char **a_text, const char **b_text);
-/* State that a finished value has a dimension; a conflict is a fault "WHAT needs ...". */
-bool lower_need(lower *l, lower_value *v, const dimension *d, const char *what);
+/* State that a finished value has a dimension; a conflict is a fault "WHAT must be in ...".
+ * remedy: NULL, or what to write instead. */
+bool lower_need(lower *l, lower_value *v, const dimension *d, const char *what, const char *remedy);
 dimension lower_dimension(int concentration_num, int concentration_den, int time, int energy, int amount, int temperature);
 
 /* ---- lower_define.c --------------------------------------------------------------- */

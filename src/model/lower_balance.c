@@ -85,12 +85,12 @@ static void report(lower *l, const lower_reaction *r, const struct tally *t)
     for (int i = 0; i < QUANTITIES && shown < SHOWN; i++) {
         if (is_balanced(t, i))
             continue;
-        list = lower_text(l, "%s%s%.10g %s and %.10g", list, shown > 0 ? ", " : "", t->sum[0][i],
-                          i == CHARGE ? "elementary charges" : formula_symbol(i), t->sum[1][i]);
+        list = lower_text(l, "%s%s%s (%.10g on the left, %.10g on the right)", list, shown > 0 ? ", " : "",
+                          i == CHARGE ? "charge" : formula_symbol(i), t->sum[0][i], t->sum[1][i]);
         shown++;
     }
     if (shown > 0)
-        diagnostics_fault(l->list, r->statement->arrow_where, NULL, "`%s` is not balanced: left and right have %s", r->label, list);
+        diagnostics_fault(l->list, r->statement->arrow_where, NULL, "`%s` is not balanced in %s", r->label, list);
 }
 
 static bool have_formulas(const lower *l, const syntax_term *term)

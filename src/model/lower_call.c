@@ -134,7 +134,7 @@ static lower_value elementary(lower *l, const struct function *f, const syntax_e
     if (is_good && f->kind == EXPRESSION_SQRT)
         is_good = form_power(&v->dim, (rational){1, 2});
     else if (is_good)
-        is_good = lower_need(l, v, &none, lower_text(l, "the argument of `%s`", f->name));
+        is_good = lower_need(l, v, &none, lower_text(l, "the argument of `%s`", f->name), NULL);
     if (!is_good)
         return value_bad(node->where);
     v->e = expression_unary(&l->net->graph, f->kind, v->e);
@@ -229,16 +229,16 @@ static form eyring_dimension(lower *l, const lower_context *context, span where)
 static bool need_energy(lower *l, lower_value *v, const char *name, int temperature)
 {
     dimension d = lower_dimension(0, 1, 0, 1, -1, temperature);
-    return lower_need(l, v, &d, lower_text(l, "`%s`", name));
+    return lower_need(l, v, &d, lower_text(l, "`%s`", name), NULL);
 }
 
 static bool need_all(lower *l, const struct function *f, lower_value **a)
 {
     dimension none = dimension_none(), kelvin = lower_dimension(0, 1, 0, 0, 0, 1);
     if (strcmp(f->name, "arrhenius") == 0)
-        return need_energy(l, a[1], "Ea", 0) & (!a[2] || lower_need(l, a[2], &none, "`n`"));
+        return need_energy(l, a[1], "Ea", 0) & (!a[2] || lower_need(l, a[2], &none, "`n`", NULL));
     if (strcmp(f->name, "arrhenius_ref") == 0)
-        return need_energy(l, a[2], "Ea", 0) & lower_need(l, a[1], &kelvin, "`Tref`");
+        return need_energy(l, a[2], "Ea", 0) & lower_need(l, a[1], &kelvin, "`Tref`", NULL);
     return need_energy(l, a[0], "dH", 0) & need_energy(l, a[1], "dS", -1);
 }
 

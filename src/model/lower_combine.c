@@ -6,37 +6,51 @@
 
 /* ---- A unit behind a number ------------------------------------------------------------------ */
 
+/* What to write for a name that is no unit: `cm^3` for `cm3`, `uM` for `µM`, the nearest one. */
+static const char *unit_remedy(lower *l, const char *text)
+{
+    size_t count, letters = strlen(text);
+    const char *const *known = unit_names(&count);
+    unit u;
+    while (letters > 0 && text[letters - 1] >= '0' && text[letters - 1] <= '9')
+        letters--;
+    if (text[letters] && unit_find(lower_text(l, "%.*s", (int)letters, text), &u))
+        return lower_text(l, "write `%.*s^%s`", (int)letters, text, text + letters);
+    if (strncmp(text, "\xC2\xB5", 2) == 0 || strncmp(text, "\xCE\xBC", 2) == 0)  /* micro sign, Greek mu */
+        return lower_text(l, "write `u%s`", text + 2);
+    const char *near = lb_nearest(text, known, count);
+    return near ? lower_text(l, "did you mean `%s`?", near)
+                : "the units are M mM uM nM pM, mol molecule, L mL, m dm cm, s ms min h, K, J kJ cal kcal";
+}
+
+static void fault_product(lower *l, const syntax_expression *node, const char *right)
+{
+    const syntax_expression *left = node->left;
+    bool is_short = (left->kind == SYNTAX_NUMBER || left->kind == SYNTAX_NAME) && left->text && node->right->kind == SYNTAX_NAME;
+    diagnostics_fault(l->list, node->where,
+                      is_short ? lower_text(l, "write `%s*%s`", left->text, right) : "write `*` between the two",
+                      "a product needs `*`");
+}
+
 /* `2 k2`, `k s`, `1 cm3`: something else than a number and its unit side by side. */
-static lower_value fault_juxtaposed(lower *l, const syntax_expression *node, bool left_is_bare)
+static void fault_juxtaposed(lower *l, const syntax_expression *node, bool is_number)
 {
     const syntax_expression *name = node->right->kind == SYNTAX_POWER ? node->right->left : node->right;
     const char *text = name->text ? name->text : "";
     unit u;
+    bool is_unit = unit_find(text, &u);
     bool is_known = names_find(&l->definition_names, text) >= 0 || strcmp(text, "T") == 0 || strcmp(text, "R") == 0;
-    if (l->net->units.none || is_known || (left_is_bare && !unit_find(text, &u))) {
-        const syntax_expression *left = node->left;
-        bool is_short = (left->kind == SYNTAX_NUMBER || left->kind == SYNTAX_NAME) && node->right->kind == SYNTAX_NAME && left->text;
-        diagnostics_fault(l->list, node->where,
-                          is_short ? lower_text(l, "write `%s*%s`", left->text, text) : "write `*` between the two",
-                          l->net->units.none ? "there are no units after `units none`, and a product needs `*`"
-                                             : "a product needs `*`");
-    } else if (!unit_find(text, &u)) {
-        size_t count, letters = strlen(text);
-        const char *const *known = unit_names(&count);
-        while (letters > 0 && text[letters - 1] >= '0' && text[letters - 1] <= '9')
-            letters--;
-        const char *stem = lower_text(l, "%.*s", (int)letters, text), *near = lb_nearest(text, known, count);
-        const char *remedy = near ? lower_text(l, "did you mean `%s`?", near) : NULL;
-        if (text[letters] && unit_find(stem, &u))
-            remedy = lower_text(l, "write `%s^%s`", stem, text + letters);
-        diagnostics_fault(l->list, name->where, remedy, "there is no unit `%s`", text);
-    } else if (left_is_bare) {
+    if (l->net->units.none && is_unit && !is_known)
+        diagnostics_fault(l->list, node->right->where, "leave the unit out", "there are no units after `units none`");
+    else if (l->net->units.none || is_known || (!is_number && !is_unit))
+        fault_product(l, node, text);
+    else if (!is_unit)
+        diagnostics_fault(l->list, name->where, unit_remedy(l, text), "there is no unit `%s`", text);
+    else if (!is_number)
         diagnostics_fault(l->list, node->where, lower_text(l, "multiply by the unit: write `*` before `%s`", text),
                           "a unit follows a plain number");
-    } else {
+    else
         diagnostics_fault(l->list, node->right->where, "write it as in `M^-0.5` or `M^(-1/2)`", "the exponent of a unit is a number");
-    }
-    return value_bad(node->where);
 }
 
 lower_value value_juxtaposed(lower *l, const syntax_expression *node, lower_value left)
@@ -45,8 +59,10 @@ lower_value value_juxtaposed(lower *l, const syntax_expression *node, lower_valu
     bool is_number = left.kind == VALUE_PLAIN || left.kind == VALUE_UNIT;
     if (left.kind == VALUE_BAD)
         return left;
-    if (!is_number || !lower_unit_factor(l, node->right, &factor))
-        return fault_juxtaposed(l, node, !is_number);
+    if (!is_number || !lower_unit_factor(l, node->right, &factor)) {
+        fault_juxtaposed(l, node, is_number);
+        return value_bad(node->where);
+    }
     left.has_unit = true;
     if (unit_multiply(&left.measure, &factor, &left.measure))
         return left;
@@ -89,7 +105,8 @@ static bool fault_open_division(lower *l, const syntax_expression *node, const l
 /* `M^-1/2`: is the exponent -1/2?  Also `x^1/2`, where ^1 has no other sense. */
 static bool fault_open_exponent(lower *l, const syntax_expression *node)
 {
-    if (node->kind != SYNTAX_DIVIDE || node->right->kind != SYNTAX_NUMBER)
+    const syntax_expression *divisor = node->kind == SYNTAX_DIVIDE ? leftmost(node->right) : node;
+    if (divisor->kind != SYNTAX_NUMBER)
         return false;
     const syntax_expression *power = node->left;
     if (power->kind == SYNTAX_JUXTAPOSED || power->kind == SYNTAX_MULTIPLY || power->kind == SYNTAX_DIVIDE)
@@ -105,10 +122,10 @@ static bool fault_open_exponent(lower *l, const syntax_expression *node)
     bool is_unit = power->left->kind == SYNTAX_NAME && lower_is_unit_name(l, power->left->text);
     if (!is_unit && exponent->number != 1)
         return false;
-    double value = (is_negative ? -1 : 1) * exponent->number / node->right->number;
+    double value = (is_negative ? -1 : 1) * exponent->number / divisor->number;
     const char *sign = is_negative ? "-" : "";
     diagnostics_fault(l->list, power->where,
-                      lower_text(l, "write `^(%s%s/%s)` or `^%g`", sign, exponent->text, node->right->text, value),
+                      lower_text(l, "write `^(%s%s/%s)` or `^%g`", sign, exponent->text, divisor->text, value),
                       "it is open how much of this is the exponent");
     return true;
 }
@@ -207,7 +224,7 @@ static lower_value raise(lower *l, const syntax_expression *node, lower_value *l
     value_finish(l, left);
     value_finish(l, right);
     dimension none = dimension_none();
-    if (left->kind == VALUE_BAD || !lower_need(l, right, &none, "an exponent"))
+    if (left->kind == VALUE_BAD || !lower_need(l, right, &none, "an exponent", NULL))
         return value_bad(node->where);
     lower_value v = value_general(node->where, EXPRESSION_NONE, 0, left->dim);
     rational power;
@@ -218,7 +235,7 @@ static lower_value raise(lower *l, const syntax_expression *node, lower_value *l
         return value_bad(node->where);
     }
     v.dim = form_none();
-    return lower_need(l, left, &none, "the base of this power") ? v : value_bad(node->where);
+    return lower_need(l, left, &none, "the base of this power", NULL) ? v : value_bad(node->where);
 }
 
 lower_value value_binary(lower *l, const syntax_expression *node, lower_value left, lower_value right)

@@ -55,7 +55,7 @@ static void check_demand(lower *l, lower_definition *d)
     const struct demand *demand = &demands[d->kind];
     dimension wanted = lower_dimension(demand->concentration, 1, demand->time, 0, 0, demand->temperature);
     bool is_signed = d->species >= 0 && l->species[d->species].is_signed;
-    lower_need(l, &d->value, &wanted, demand->what);
+    lower_need(l, &d->value, &wanted, demand->what, NULL);
     lower_require_sign(l, &d->value, is_signed ? SIGN_ANY : demand->sign, demand->why, demand->what);
 }
 
@@ -90,7 +90,7 @@ static void evaluate(lower *l, lower_definition *d)
     context.what = d->kind == DEFINE_CONSTANT ? d->name : demands[d->kind].what;
     if (d->plain >= 0)
         d->value = value_of_plain(l, d->plain, l->plains[d->plain].where);
-    else if (node)
+    else if (node && !d->is_rejected)
         d->value = lower_evaluate(l, node, &context);
     if (d->kind != DEFINE_CONSTANT)
         check_demand(l, d);
@@ -104,9 +104,13 @@ static void evaluate(lower *l, lower_definition *d)
 static void store_in_species(lower *l, const lower_definition *d)
 {
     int index = d->species >= 0 ? l->species[d->species].index : -1;
-    if (index < 0 || d->value.kind == VALUE_BAD)
+    if (index < 0)
         return;
     network_species *s = &l->net->species[index];
+    if (d->kind == DEFINE_HELD && d->value.kind == VALUE_BAD)
+        s->held = expression_number(&l->net->graph, 1);     /* so that reactions can be read on; there is a fault */
+    if (d->value.kind == VALUE_BAD)
+        return;
     if (d->kind == DEFINE_HELD)
         s->held = d->value.e;
     else if (d->kind == DEFINE_FEED && l->residence >= 0)

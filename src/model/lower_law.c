@@ -44,7 +44,7 @@ static void check_law(lower *l, const lower_reaction *r, probe *p)
         return;
     }
     double scale = scale_of(p);
-    for (int i = 0; i < step->entry_count && p->work < PROBE_LIMIT; i++) {
+    for (int i = 0; isfinite(scale) && i < step->entry_count && p->work < PROBE_LIMIT; i++) {
         const network_entry *e = &step->entries[i];
         const network_species *s = &l->net->species[l->net->state_species[e->state]];
         int direction = e->expression == EXPRESSION_NONE && e->num < 0 ? 1 : -1;

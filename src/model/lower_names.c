@@ -85,13 +85,11 @@ static bool is_free(lower *l, const char *name, span where)
 static void define_name(lower *l, const syntax_statement *s)
 {
     const char *meaning = reserved_meaning(l, s->text);
-    if (meaning) {
+    if (meaning)
         diagnostics_fault(l->list, s->text_where,
                           strcmp(s->text, "T") == 0 ? "write `temperature = ...`"
                                                     : lower_text(l, "choose another name, such as `%s_`", s->text),
                           "`%s` is %s and cannot be defined", s->text, meaning);
-        return;
-    }
     if (!is_free(l, s->text, s->text_where))
         return;
     lower_definition_kind kind = DEFINE_CONSTANT;
@@ -100,6 +98,8 @@ static void define_name(lower *l, const syntax_statement *s)
     else if (strcmp(s->text, "temperature") == 0)
         kind = DEFINE_TEMPERATURE;
     int index = lower_add_definition(l, kind, s->text, -1, s);
+    if (index >= 0)
+        l->definitions[index].is_rejected = meaning != NULL;
     if (kind == DEFINE_RESIDENCE)
         l->residence = index;
     else if (kind == DEFINE_TEMPERATURE)
@@ -279,6 +279,7 @@ static void enter_broken(lower *l)
 void lower_names(lower *l)
 {
     const syntax_statement *title = NULL;
+    bool is_read = lb_diagnostics_faults(l->list) == 0;     /* every line, that is */
     for (const syntax_statement *s = l->tree->first; s && l->status == LB_OK; s = s->next) {
         if (s->kind == SYNTAX_TITLE)
             set_title(l, s, &title);
@@ -301,7 +302,7 @@ void lower_names(lower *l)
     number_reactions(l);
     for (size_t i = 0; i < l->species_count; i++)
         check_species(l, &l->species[i]);
-    if (l->reaction_count == 0 && l->status == LB_OK && lb_diagnostics_faults(l->list) == 0)
+    if (l->reaction_count == 0 && l->status == LB_OK && is_read)
         diagnostics_fault(l->list, end_of_file(l), "write one, such as `A -> B, k = 1 s^-1`", "the file has no reaction");
 }
 

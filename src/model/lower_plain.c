@@ -219,6 +219,8 @@ static void enter_definition(lower *l, lower_definition *d)
         [DEFINE_CONSTANT] = CONSTANT_NAMED, [DEFINE_HELD] = CONSTANT_HELD, [DEFINE_INITIAL] = CONSTANT_NAMED,
         [DEFINE_FEED] = CONSTANT_FEED, [DEFINE_RESIDENCE] = CONSTANT_RESIDENCE, [DEFINE_TEMPERATURE] = CONSTANT_TEMPERATURE};
     const syntax_statement *s = d->statement;
+    if (d->is_rejected)
+        return;
     d->plain = make_plain(l, d->name, kinds[d->kind], s->value, s->range);
     if (d->plain >= 0) {
         l->plains[d->plain].is_initial = d->kind == DEFINE_INITIAL;

@@ -114,7 +114,7 @@ static bool evaluate_coefficient(lower *l, const syntax_term *term, bool is_prod
     lower_context context = {.what = "a coefficient"};
     lower_value v = lower_evaluate(l, term->expression, &context);
     dimension none = dimension_none();
-    lower_need(l, &v, &none, "a coefficient");
+    lower_need(l, &v, &none, "a coefficient", NULL);
     lower_require_sign(l, &v, SIGN_NOT_NEGATIVE, "coefficient", "a coefficient");
     *out = v.e;
     return v.kind != VALUE_BAD;
@@ -153,7 +153,8 @@ static bool add_side(lower *l, lower_reaction *r, const syntax_term *term, bool 
 static const char law_remedy[] = "write the whole rate law, `v = ...`";
 
 /* State that a value has concentration^(to - from)/time, where both are known. */
-static void need_order(lower *l, lower_value *v, const struct side *from, const struct side *to, int time, const char *what)
+static void need_order(lower *l, lower_value *v, const struct side *from, const struct side *to, int time,
+                       const char *what, const char *remedy)
 {
     rational power = {-from->order.num, from->order.den};
     dimension d;
@@ -161,18 +162,29 @@ static void need_order(lower *l, lower_value *v, const struct side *from, const 
         || power.num > 1000000 || power.num < -1000000 || power.den > 1000000
         || !dimension_concentration_time((int)power.num, (int)power.den, time, 1, &d))
         return;
-    lower_need(l, v, &d, what);
+    lower_need(l, v, &d, what, remedy);
+}
+
+/* What a setting is called in messages. */
+static const char *what_is(const char *name)
+{
+    if (strcmp(name, "K") == 0)
+        return "the equilibrium constant K";
+    if (strcmp(name, "kf") == 0)
+        return "the rate constant kf";
+    return strcmp(name, "kr") == 0 ? "the rate constant kr" : "the rate constant k";
 }
 
 /* A rate constant of a step that uses up `side`. */
 static lower_value rate_constant(lower *l, const syntax_argument *a, const struct side *side)
 {
     const struct side one = {{1, 1}, true};
-    lower_context context = {.what = a->name, .state_remedy = law_remedy, .has_order = side->is_known
+    const char *what = what_is(a->name);
+    lower_context context = {.what = what, .state_remedy = law_remedy, .has_order = side->is_known
                              && side->order.num <= 1000000 && side->order.den <= 1000000, .order = side->order};
     lower_value v = lower_evaluate(l, a->value, &context);
-    need_order(l, &v, side, &one, -1, a->name);
-    lower_require_sign(l, &v, SIGN_NOT_NEGATIVE, "rate constant", a->name);
+    need_order(l, &v, side, &one, -1, what, NULL);
+    lower_require_sign(l, &v, SIGN_NOT_NEGATIVE, "rate constant", what);
     return v;
 }
 
@@ -192,10 +204,11 @@ static void add_reverse(lower *l, const lower_reaction *r, const struct settings
             add_mass_action(l, r, STEP_REVERSE, kr.e);
         return;
     }
-    lower_context context = {.what = "K", .state_remedy = law_remedy};
+    const char *what = what_is("K");
+    lower_context context = {.what = what, .state_remedy = law_remedy};
     lower_value K = lower_evaluate(l, g->K->value, &context);
-    need_order(l, &K, left, right, 0, "K");
-    lower_require_sign(l, &K, SIGN_POSITIVE, "equilibrium constant", "K");
+    need_order(l, &K, left, right, 0, what, "K is kf/kr; the reverse rate constant is called kr");
+    lower_require_sign(l, &K, SIGN_POSITIVE, "equilibrium constant", what);
     if (K.kind != VALUE_BAD && kf.kind != VALUE_BAD)
         add_mass_action(l, r, STEP_REVERSE, expression_binary(&l->net->graph, EXPRESSION_DIVIDE, kf.e, K.e));
 }
@@ -205,7 +218,7 @@ static void add_law(lower *l, lower_reaction *r, const syntax_argument *a)
     lower_context context = {.allows_state = true, .what = "v"};
     lower_value v = lower_evaluate(l, a->value, &context);
     dimension d = lower_dimension(1, 1, -1, 0, 0, 0);
-    lower_need(l, &v, &d, "v");
+    lower_need(l, &v, &d, "the rate law v", NULL);
     if (v.kind != VALUE_BAD && !v.has_state && v.plain < 0 && !isfinite(v.number)) {
         diagnostics_fault(l->list, v.where, NULL, "this rate law has no finite value at the constants of the file");
         return;

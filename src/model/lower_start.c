@@ -81,35 +81,38 @@ static void reach_state(struct reach *r, int state)
     r->queue[r->queued++] = state;
 }
 
-/* Signs of the rate with what is absent at zero: 1 positive, 2 negative, 3 either. */
-static int signs_of_rate(struct reach *r, int step)
+/* Signs of the rate with what is absent (NULL: nothing) at zero: 1 positive, 2 negative, 3 either. */
+static int signs_of_rate(struct reach *r, int step, const unsigned char *is_absent)
 {
     const network_step *s = &r->net->steps[step];
     int signs = 0;
-    if (s->is_power_law) {
-        for (int i = 0; i < s->order_count; i++)
-            if (s->orders[i].order > 0 && r->is_zero[s->orders[i].state])
-                return 0;
-    }
+    for (int i = 0; s->is_power_law && is_absent && i < s->order_count; i++)
+        if (s->orders[i].order > 0 && is_absent[s->orders[i].state])
+            return 0;
     if (probe_take(&r->p, s->rate) != LB_OK) {
         lower_no_memory(r->l);
         return 0;
     }
     for (int point = 0; point < PROBE_POINTS; point++) {
-        double v = probe_value(&r->p, point, r->is_zero, -1);
+        double v = probe_value(&r->p, point, is_absent, -1);
         signs |= isnan(v) ? 3 : v > 0 ? 1 : v < 0 ? 2 : 0;
     }
     return signs;
 }
 
+/* Net coefficients that are expressions belong to products. */
+static bool is_gain(const network_entry *e)
+{
+    return e->expression != EXPRESSION_NONE || e->num > 0;
+}
+
 static void run_step(struct reach *r, int step)
 {
     const network_step *s = &r->net->steps[step];
-    int signs = r->is_done[step] == 3 ? 0 : signs_of_rate(r, step) & ~r->is_done[step];
+    int signs = r->is_done[step] == 3 ? 0 : signs_of_rate(r, step, r->is_zero) & ~r->is_done[step];
     r->is_done[step] |= (unsigned char)signs;
     for (int i = 0; signs && i < s->entry_count; i++) {
-        bool is_gain = s->entries[i].expression != EXPRESSION_NONE || s->entries[i].num > 0;
-        if (signs & (is_gain ? 1 : 2))
+        if (signs & (is_gain(&s->entries[i]) ? 1 : 2))
             reach_state(r, s->entries[i].state);
     }
 }
@@ -136,16 +139,15 @@ static void explore(struct reach *r)
     follow(r);
 }
 
-/* A species that some step makes, in either direction of a law. */
+/* A species that some step makes; a law that changes its sign makes both sides. */
 static void mark_made(struct reach *r)
 {
-    for (int s = 0; s < r->net->step_count; s++) {
+    for (int s = 0; s < r->net->step_count && r->l->status == LB_OK; s++) {
         const network_step *step = &r->net->steps[s];
-        for (int i = 0; i < step->entry_count; i++) {
-            const network_entry *e = &step->entries[i];
-            if (e->expression != EXPRESSION_NONE || e->num > 0 || (!step->is_power_law && step->reaction >= 0))
-                r->is_made[e->state] = 1;
-        }
+        int signs = step->is_power_law ? 1 : signs_of_rate(r, s, NULL);
+        for (int i = 0; i < step->entry_count; i++)
+            if (signs & (is_gain(&step->entries[i]) ? 1 : 2))
+                r->is_made[step->entries[i].state] = 1;
     }
 }
 
@@ -184,8 +186,7 @@ static void warn_unmade(struct reach *r)
             continue;
         const lower_species *p = &r->l->species[lower_find_species(r->l, species_of(r, i)->name)];
         diagnostics_warn(r->l->list, p->where,
-                         lower_near(r->l, &r->l->species_names, p->name,
-                                    lower_text(r->l, "give it an initial concentration, `%s = ...`", lower_bracket(r->l, p->name, "0"))),
+                         lower_text(r->l, "give it an initial concentration, `%s = ...`", lower_bracket(r->l, p->name, "0")),
                          "nothing makes `%s`, and it starts at zero", p->name);
         reach_state(r, i);
     }
@@ -248,7 +249,8 @@ static void warn_face(struct reach *r)
         return;
     while (!r->is_zero[first])
         first++;
-    diagnostics_warn(r->l->list, place_of(r, first), "give one of them an initial concentration",
+    diagnostics_warn(r->l->list, place_of(r, first),
+                     count == 1 ? "give it an initial concentration" : "give one of them an initial concentration",
                      "nothing that is there at the start can make %s, so %s zero", list_states(r, r->is_zero, count),
                      count == 1 ? "it stays" : "they stay");
 }

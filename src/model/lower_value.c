@@ -76,7 +76,7 @@ bool lower_agree(lower *l, const form *a, const form *b, int line, const char **
     return false;
 }
 
-bool lower_need(lower *l, lower_value *v, const dimension *d, const char *what)
+bool lower_need(lower *l, lower_value *v, const dimension *d, const char *what, const char *remedy)
 {
     if (v->kind == VALUE_BAD)
         return false;
@@ -89,10 +89,10 @@ bool lower_need(lower *l, lower_value *v, const dimension *d, const char *what)
         diagnostics_fault(l->list, v->where, NULL, "`%s` is used as %s here and as %s in line %d", p->name, needed, is,
                           l->inf.unknowns[p->unknown].line);
     else if (dimension_is_none(d))
-        diagnostics_fault(l->list, v->where, lower_text(l, "divide by a quantity in %s", is),
+        diagnostics_fault(l->list, v->where, remedy ? remedy : lower_text(l, "divide by a quantity in %s", is),
                           "%s must be a pure number, but this is in %s", what, is);
     else
-        diagnostics_fault(l->list, v->where, NULL, "%s must be in %s, but this is %s%s", what, needed,
+        diagnostics_fault(l->list, v->where, remedy, "%s must be in %s, but this is %s%s", what, needed,
                           strcmp(is, "a pure number") == 0 ? "" : "in ", is);
     v->kind = VALUE_BAD;
     return false;

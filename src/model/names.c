@@ -164,7 +164,7 @@ const char *lb_nearest(const char *word, const char *const *candidates, size_t c
     for (size_t i = 0; i < count; i++) {
         int other_length = characters(candidates[i], other);
         int gap = other_length > length ? other_length - length : length - other_length;
-        if (other_length < 0 || EDIT * gap >= best)
+        if (other_length < 0 || EDIT * gap >= best || strcmp(word, candidates[i]) == 0)
             continue;
         int d = distance(wanted, length, other, other_length);
         if (d < best) {

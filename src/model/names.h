@@ -18,7 +18,7 @@ void names_clear(names *table);
 int  names_find(const names *table, const char *name);            /* the number, or -1 */
 /* Enter a name that is not there yet.  0, or -1 without memory. */
 int  names_add(names *table, const char *name, int value);
-/* The nearest name of the table, or NULL when none is near. */
+/* The nearest other name of the table, or NULL when none is near. */
 const char *names_nearest(const names *table, const char *word);
 
 #endif
