@@ -143,12 +143,25 @@ static void trim(buffer *line)
         line->data[--line->length] = '\0';
 }
 
-/* The last cell, wrapped beside the others or below them. */
+static int widest_word(const char *text)
+{
+    int most = 0;
+    while (*text) {
+        size_t length = strcspn(text, " ");
+        int columns = layout_columns_n(text, length);
+        most = columns > most ? columns : most;
+        text += length + strspn(text + length, " ");
+    }
+    return most;
+}
+
+/* The last cell, wrapped beside the others, or below them where its words need the room. */
 static void write_wrapped(const lb_layout *layout, int start, int indent, const char *cell, buffer *line)
 {
     buffer text;
     buffer_init(&text);
-    bool beside = layout_width(layout) - start >= LEAST_WRAP;
+    int room = layout_width(layout) - start;
+    bool beside = room >= LEAST_WRAP && room >= widest_word(cell);
     if (beside) {
         layout_paragraph(&text, layout, start, 0, cell);
         buffer_append(line, buffer_get(&text) + (buffer_status(&text) == LB_OK ? start : 0));

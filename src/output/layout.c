@@ -20,7 +20,7 @@ int layout_width(const lb_layout *layout)
 
 /* Columns of the first `length` bytes of UTF-8: bytes that continue a character
  * take none, nor do the combining marks U+0300..U+036F (lead bytes CC and CD). */
-static int columns_n(const char *text, size_t length)
+int layout_columns_n(const char *text, size_t length)
 {
     int columns = 0;
     for (size_t i = 0; i < length; i++) {
@@ -36,7 +36,7 @@ static int columns_n(const char *text, size_t length)
 
 int layout_columns(const char *text)
 {
-    return columns_n(text, strlen(text));
+    return layout_columns_n(text, strlen(text));
 }
 
 void layout_number(double value, int digits, char text[LAYOUT_NUMBER])
@@ -116,7 +116,7 @@ void layout_paragraph(buffer *out, const lb_layout *layout, int indent, int hang
         size_t length = strcspn(word, " \n");
         if (!length)
             break;
-        int columns = columns_n(word, length);
+        int columns = layout_columns_n(word, length);
         if (used > 0 && used + 1 + columns > width) {
             buffer_char(out, '\n');
             used = 0;

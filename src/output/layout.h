@@ -10,6 +10,7 @@ int layout_width(const lb_layout *layout);
 
 /* Columns that text takes on a terminal: one per character, none for a combining mark. */
 int layout_columns(const char *text);
+int layout_columns_n(const char *text, size_t length);     /* of the first length bytes */
 
 /* A number as a person writes it, with so many significant digits: "0.0012",
  * "3.1e-7", "1e10".  Texts fit in LAYOUT_NUMBER bytes. */

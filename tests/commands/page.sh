@@ -1,0 +1,9 @@
+# The page; figures that are rounding noise are masked.
+mask() { sed -E 's/(closes to|balanced to|period to) [0-9][-0-9.e]*[0-9]/\1 #/'; }
+page() { try "$@" --quiet | mask; }
+page networks/demo.mech
+page networks/brusselator.mech --set '[B]=1.7'
+page networks/lotka-volterra.mech
+page networks/wilhelm.mech
+page networks/michaelis-menten.mech
+try networks/michaelis-menten.mech | tail -n 3
