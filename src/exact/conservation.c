@@ -24,6 +24,20 @@ void conservation_clear(conservation *laws)
     *laws = (conservation){0};
 }
 
+lb_status conservation_copy(const conservation *laws, conservation *out)
+{
+    *out = *laws;
+    size_t entries = (size_t)laws->count * (size_t)laws->width;
+    out->law = memory_array(entries, sizeof *out->law);
+    if (!out->law) {
+        *out = (conservation){0};
+        return LB_E_NOMEM;
+    }
+    if (entries > 0)
+        memcpy(out->law, laws->law, entries * sizeof *out->law);
+    return LB_OK;
+}
+
 /* ---- The kernel ----------------------------------------------------------------- */
 
 typedef struct ranked {
@@ -159,7 +173,7 @@ static lb_status choice_init(choice *c, int width, int nullity, const int *free_
     c->columns = memory_array((size_t)nullity, sizeof *c->columns);
     if (!c->preference || !c->values || !c->columns)
         return LB_E_NOMEM;
-    return elimination_init(&c->chosen, nullity, c->preference);
+    return elimination_init(&c->chosen, nullity, c->preference, false);
 }
 
 static lb_status is_independent(choice *c, const int64_t *vector, bool *result)
@@ -309,23 +323,74 @@ static lb_status assemble(conservation *out, const cone *rays, const int64_t *ke
     return status;
 }
 
-static lb_status laws_of_kernel(elimination *e, conservation *out)
+/* Do all vectors of the kernel obey all equations? */
+static bool obeys(const balance *b, const int64_t *kernel, int nullity, int width)
 {
-    int nullity = e->width - (int)e->rank;
-    out->is_complete = true;
-    if (nullity == 0)
-        return LB_OK;
-    if ((size_t)nullity * (size_t)e->width > CONSERVATION_LIMIT)
-        return LB_E_LIMIT;
-    int64_t *kernel = NULL;
+    bool ok = true;
+    fmpz_t sum;
+    fmpz_init(sum);
+    for (int v = 0; v < nullity && ok; v++) {
+        const int64_t *vector = kernel + (size_t)v * (size_t)width;
+        for (size_t i = 0; i < b->count && ok; i++) {
+            fmpz_zero(sum);
+            for (size_t at = b->start[i]; at < b->start[i + 1]; at++)
+                if (vector[b->column[at]] != 0)
+                    fmpz_addmul_si(sum, &b->value[at], vector[b->column[at]]);
+            ok = fmpz_is_zero(sum);
+        }
+    }
+    fmpz_clear(sum);
+    return ok;
+}
+
+/* The kernel of the balance, one vector for each free column (the caller's arrays).  Modulo a
+ * prime first: a kernel there has at least the dimension of the true one, so when all its
+ * lifted vectors obey the equations over the integers, they span the true one.  *is_lifted is
+ * false when they do not: then only exact elimination can tell. */
+static lb_status kernel_of_balance(const balance *b, int width, const int *preference, bool is_modular,
+                                   int *nullity, int **free_column, int64_t **kernel, bool *is_lifted)
+{
+    elimination e;
+    lb_status status = elimination_init(&e, width, preference, is_modular);
+    *free_column = NULL;
+    *kernel = NULL;
+    *is_lifted = true;
+    if (status == LB_OK)
+        status = eliminate_balance(&e, b);
+    *nullity = width - (int)e.rank;
+    if (status == LB_OK && (size_t)*nullity * (size_t)width > CONSERVATION_LIMIT)
+        status = LB_E_LIMIT;
+    if (status == LB_OK)
+        status = elimination_solve(&e, CONSERVATION_LIMIT);
+    if (status == LB_OK && is_modular)
+        *is_lifted = elimination_lift(&e);
+    if (status == LB_OK && *is_lifted) {
+        *free_column = memory_array((size_t)*nullity, sizeof **free_column);
+        status = *free_column ? find_kernel(&e, *nullity, *free_column, kernel) : LB_E_NOMEM;
+    }
+    if (status == LB_OK && *is_lifted && is_modular)
+        *is_lifted = obeys(b, *kernel, *nullity, width);
+    elimination_clear(&e);
+    return status;
+}
+
+static lb_status laws_of_balance(const balance *b, const int *preference, conservation *out)
+{
+    int nullity;
+    int *free_column;
+    int64_t *kernel;
     cone rays = {0};
-    int *free_column = memory_array((size_t)nullity, sizeof *free_column);
-    lb_status status = free_column ? elimination_solve(e, CONSERVATION_LIMIT) : LB_E_NOMEM;
-    if (status == LB_OK)
-        status = find_kernel(e, nullity, free_column, &kernel);
-    if (status == LB_OK)
-        status = cone_find(kernel, nullity, e->width, free_column, &rays, &out->is_complete);
-    if (status == LB_OK)
+    bool is_lifted;
+    lb_status status = kernel_of_balance(b, out->width, preference, true, &nullity, &free_column, &kernel, &is_lifted);
+    if (status == LB_OK && !is_lifted) {
+        memory_free(free_column);
+        memory_free(kernel);
+        status = kernel_of_balance(b, out->width, preference, false, &nullity, &free_column, &kernel, &is_lifted);
+    }
+    out->is_complete = true;
+    if (status == LB_OK && nullity > 0)
+        status = cone_find(kernel, nullity, out->width, free_column, &rays, &out->is_complete);
+    if (status == LB_OK && nullity > 0)
         status = assemble(out, &rays, kernel, nullity, free_column);
     cone_clear(&rays);
     memory_free(kernel);
@@ -340,41 +405,36 @@ static lb_status report(lb_error *err, lb_status status)
     return status == LB_OK ? LB_OK : status_no_memory(err);
 }
 
-/* Elimination of the network's balance, ready to be solved. */
-static lb_status eliminate_network(const lb_network *net, const int *column_of, const bool *use, int *preference,
-                                   elimination *e)
+/* How many equations a species is in: one in few makes a sparse elimination. */
+static lb_status count_equations(const balance *b, int width, int **preference)
 {
-    balance b;
-    lb_status status = balance_collect(net, column_of, use, &b);
-    for (size_t i = 0; status == LB_OK && i < b.start[b.count]; i++)
-        preference[b.column[i]]++;
-    if (status == LB_OK)
-        status = eliminate_balance(e, &b);
-    balance_clear(&b);
-    return status;
+    *preference = memory_zeroed((size_t)width, sizeof **preference);
+    if (!*preference)
+        return LB_E_NOMEM;
+    for (size_t i = 0; i < b->start[b->count]; i++)
+        (*preference)[b->column[i]]++;
+    return LB_OK;
 }
 
 lb_status conservation_find(const lb_network *net, const int *state, int width, const bool *use,
                             conservation *out, lb_error *err)
 {
     *out = (conservation){.width = width};
-    elimination e = {0};
-    lb_status status = LB_E_NOMEM;
+    balance b = {0};
+    int *preference = NULL;
     int *column_of = memory_array((size_t)net->states, sizeof *column_of);
-    int *preference = memory_zeroed((size_t)width, sizeof *preference);
-    if (!column_of || !preference)
-        goto done;
-    for (int i = 0; i < net->states; i++)
+    lb_status status = column_of ? LB_OK : LB_E_NOMEM;
+    for (int i = 0; column_of && i < net->states; i++)
         column_of[i] = -1;
-    for (int j = 0; j < width; j++)
+    for (int j = 0; column_of && j < width; j++)
         column_of[state[j]] = j;
-    status = elimination_init(&e, width, preference);
     if (status == LB_OK)
-        status = eliminate_network(net, column_of, use, preference, &e);
+        status = balance_collect(net, column_of, use, &b);
     if (status == LB_OK)
-        status = laws_of_kernel(&e, out);
-done:
-    elimination_clear(&e);
+        status = count_equations(&b, width, &preference);
+    if (status == LB_OK)
+        status = laws_of_balance(&b, preference, out);
+    balance_clear(&b);
     memory_free(preference);
     memory_free(column_of);
     if (status != LB_OK)
@@ -387,7 +447,7 @@ done:
 /* Eliminates the basis rows of the laws, with pivots where the preference allows them. */
 static lb_status eliminate_laws(const conservation *laws, const int *preference, elimination *e)
 {
-    lb_status status = elimination_init(e, laws->width, preference);
+    lb_status status = elimination_init(e, laws->width, preference, false);
     int *column = memory_array((size_t)laws->width, sizeof *column);
     fmpz *value = memory_zeroed((size_t)laws->width, sizeof *value);
     if (!column || !value)

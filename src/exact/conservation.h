@@ -35,6 +35,7 @@ typedef struct conservation {
 lb_status conservation_find(const lb_network *net, const int *state, int width, const bool *use,
                             conservation *out, lb_error *err);
 void conservation_clear(conservation *laws);
+lb_status conservation_copy(const conservation *laws, conservation *out); /* LB_OK or LB_E_NOMEM */
 
 /* Choose dependent species by exact elimination of the first `basis` rows, and
  * give L: x_dep = const - L x_ind.  dependent [basis], independent [width-basis],

@@ -1,20 +1,23 @@
-/* Sparse elimination over the integers.
+/* Sparse elimination over the integers, or modulo a prime.
  *
  * Equations come one after the other.  Each is reduced by the rows before it, the
  * earliest first: a row holds no pivot of an earlier row, so a pivot that has been
  * eliminated never returns.  Rows stay whole and primitive (their content is
  * divided out), so that entries of stoichiometric matrices stay small; FLINT's
  * integers hold them whatever they become.  Pivots are taken where the caller
- * prefers, units first, in the spirit of Markowitz, Manag. Sci. 3 (1957) 255. */
+ * prefers, units first, in the spirit of Markowitz, Manag. Sci. 3 (1957) 255.
+ * Modulo 2^31 - 1 every product fits FLINT's small integers, and rows are monic. */
 #include "exact/elimination.h"
 
 #include <string.h>
 
 #include "base/memory.h"
 
-lb_status elimination_init(elimination *e, int width, const int *preference)
+lb_status elimination_init(elimination *e, int width, const int *preference, bool is_modular)
 {
-    *e = (elimination){.width = width, .preference = preference};
+    *e = (elimination){.width = width, .preference = preference, .work_left = ELIMINATION_WORK,
+                       .is_modular = is_modular};
+    fmpz_init_set_ui(e->prime, ELIMINATION_PRIME);
     size_t n = (size_t)width;
     e->row_of = memory_array(n, sizeof *e->row_of);
     e->work = memory_zeroed(n, sizeof *e->work);    /* the zero of FLINT is all bits zero */
@@ -99,6 +102,19 @@ static void list_column(elimination *e, int column, int *listed, int *due)
         heap_push(e->heap, due, e->row_of[column]);
 }
 
+static void reduce_residue(const elimination *e, fmpz *value)
+{
+    if (e->is_modular)
+        fmpz_mod(value, value, e->prime);
+}
+
+/* a - b*c modulo the prime.  FLINT stores an integer below 2^62 as itself, so residues are
+ * plain words. */
+static fmpz residue_submul(fmpz a, fmpz b, fmpz c)
+{
+    return (fmpz)(((uint64_t)a + (uint64_t)b * (ELIMINATION_PRIME - (uint64_t)c)) % ELIMINATION_PRIME);
+}
+
 /* work := (p/g) work - (c/g) row, where c is work's entry at the row's pivot, p the row's, g their gcd. */
 static void reduce_by(elimination *e, const elimination_row *row, int *listed, int *due)
 {
@@ -111,11 +127,19 @@ static void reduce_by(elimination *e, const elimination_row *row, int *listed, i
     fmpz_divexact(other, &e->work[row->pivot], common);
     for (int i = 0; i < row->count; i++)
         list_column(e, row->column[i], listed, due);
-    if (!fmpz_is_one(own))
+    e->work_left -= row->count;
+    if (!fmpz_is_one(own)) {
+        e->work_left -= *listed;
         for (int i = 0; i < *listed; i++)
             fmpz_mul(&e->work[e->list[i]], &e->work[e->list[i]], own);
-    for (int i = 0; i < row->count; i++)
-        fmpz_submul(&e->work[row->column[i]], &row->value[i], other);
+    }
+    for (int i = 0; i < row->count; i++) {
+        fmpz *to = &e->work[row->column[i]];
+        if (e->is_modular)
+            *to = residue_submul(*to, row->value[i], *other);
+        else
+            fmpz_submul(to, &row->value[i], other);
+    }
     fmpz_zero(&e->work[row->pivot]);
     fmpz_clear(common);
     fmpz_clear(own);
@@ -131,7 +155,7 @@ static int choose_pivot(const elimination *e, int listed)
         int j = e->list[i];
         if (fmpz_is_zero(&e->work[j]) || e->preference[j] == ELIMINATION_NEVER)
             continue;
-        bool is_unit = fmpz_is_pm1(&e->work[j]);
+        bool is_unit = e->is_modular || fmpz_is_pm1(&e->work[j]);
         bool is_better = best < 0 || is_unit > best_is_unit ||
                          (is_unit == best_is_unit &&
                           (e->preference[j] < e->preference[best] ||
@@ -144,16 +168,32 @@ static int choose_pivot(const elimination *e, int listed)
     return best;
 }
 
-/* Divides the equation in use by its content. */
-static void make_primitive(elimination *e, int listed)
+/* Divides the equation in use by its content, with the sign that makes the pivot positive: a
+ * row of units then never needs to be multiplied. */
+static void make_primitive(elimination *e, int pivot, int listed)
 {
     fmpz_t content;
     fmpz_init(content);
     for (int i = 0; i < listed && !fmpz_is_one(content); i++)
         fmpz_gcd(content, content, &e->work[e->list[i]]);
-    for (int i = 0; i < listed && !fmpz_is_one(content) && !fmpz_is_zero(content); i++)
+    if (fmpz_sgn(&e->work[pivot]) < 0)
+        fmpz_neg(content, content);
+    for (int i = 0; i < listed && !fmpz_is_one(content); i++)
         fmpz_divexact(&e->work[e->list[i]], &e->work[e->list[i]], content);
     fmpz_clear(content);
+}
+
+/* Divides the equation in use by its pivot, modulo the prime. */
+static void make_monic(elimination *e, int pivot, int listed)
+{
+    fmpz_t inverse;
+    fmpz_init(inverse);
+    fmpz_invmod(inverse, &e->work[pivot], e->prime);
+    for (int i = 0; i < listed && !fmpz_is_one(inverse); i++) {
+        fmpz_mul(&e->work[e->list[i]], &e->work[e->list[i]], inverse);
+        reduce_residue(e, &e->work[e->list[i]]);
+    }
+    fmpz_clear(inverse);
 }
 
 static lb_status store_row(elimination *e, int pivot, int listed)
@@ -190,15 +230,23 @@ lb_status elimination_add(elimination *e, const int *column, const fmpz *value, 
     for (int i = 0; i < count; i++) {
         list_column(e, column[i], &listed, &due);
         fmpz_set(&e->work[column[i]], &value[i]);
+        reduce_residue(e, &e->work[column[i]]);
     }
-    while (due > 0) {
+    while (due > 0 && e->work_left > 0) {
         const elimination_row *row = &e->row[heap_pop(e->heap, &due)];
         if (!fmpz_is_zero(&e->work[row->pivot]))
             reduce_by(e, row, &listed, &due);
     }
-    make_primitive(e, listed);
-    int pivot = choose_pivot(e, listed);
-    lb_status status = pivot >= 0 ? store_row(e, pivot, listed) : LB_OK;
+    lb_status status = e->work_left > 0 ? LB_OK : LB_E_LIMIT;
+    int pivot = status == LB_OK ? choose_pivot(e, listed) : -1;
+    if (pivot >= 0) {
+        if (e->is_modular)
+            make_monic(e, pivot, listed);
+        else
+            make_primitive(e, pivot, listed);
+        status = store_row(e, pivot, listed);
+    }
+    e->work_left -= listed;
     for (int i = 0; i < listed; i++) {
         fmpz_zero(&e->work[e->list[i]]);
         e->is_listed[e->list[i]] = false;
@@ -217,6 +265,7 @@ static void scatter(elimination *e, fmpq *sum, int column, const fmpz *factor, c
     fmpq_init(part);
     fmpq_mul_fmpz(part, value, factor);
     fmpq_add(&sum[column], &sum[column], part);
+    reduce_residue(e, fmpq_numref(&sum[column]));
     fmpq_clear(part);
     if (!e->is_listed[column]) {
         e->is_listed[column] = true;
@@ -239,6 +288,7 @@ static lb_status store_solved(elimination *e, elimination_row *row, fmpq *sum, i
             fmpq_init(value);
             fmpq_div_fmpz(value, &sum[j], row->pivot_value);
             fmpq_neg(value, value);
+            reduce_residue(e, fmpq_numref(value));
             row->solved_column[row->solved_count++] = j;
         }
         fmpq_zero(&sum[j]);
@@ -283,4 +333,20 @@ lb_status elimination_solve(elimination *e, size_t limit)
     fmpq_clear(one);
     memory_free(sum);
     return status;
+}
+
+bool elimination_lift(elimination *e)
+{
+    fmpz_t residue;
+    fmpz_init(residue);
+    bool ok = true;
+    for (size_t r = 0; r < e->rank && ok; r++) {
+        elimination_row *row = &e->row[r];
+        for (int k = 0; k < row->solved_count && ok; k++) {
+            fmpz_set(residue, fmpq_numref(&row->solved_value[k]));
+            ok = fmpq_reconstruct_fmpz(&row->solved_value[k], residue, e->prime) != 0;
+        }
+    }
+    fmpz_clear(residue);
+    return ok;
 }

@@ -43,7 +43,9 @@ static lb_status find_laws(lb_system *system, lb_error *err)
     for (int i = 0; i < system->n; i++)
         all[i] = i;
     lb_status status = conservation_find(net, all, system->n, NULL, &system->laws, err);
-    if (status == LB_OK)
+    if (status == LB_OK && system->core == system->n)
+        status = conservation_copy(&system->laws, &system->core_laws);
+    else if (status == LB_OK)
         status = conservation_find(net, system->core_state, system->core, system->core_step, &system->core_laws, err);
     if (status == LB_OK)
         status = core_reduce(system, err);
