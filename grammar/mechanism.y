@@ -75,7 +75,7 @@ static void yyerror(const span *where, struct lexical *l, const char *message);
 %token TITLE UNITS NONE RETAINED SIGNED FORMULA IN WITHIN
 %token EQUALS COMMA OPEN CLOSE PLUS MINUS TIMES OVER POWER DOTS
 
-%type <statement> statement reaction
+%type <statement> statement reaction broken broken_reaction
 %type <is_reversible> arrow
 %type <term> side term
 %type <terms> terms
@@ -98,6 +98,7 @@ value: expression NEWLINE          { B->value = $1; }
 
 file: %empty
     | file statement NEWLINE       { syntax_append(B, $2); yyerrok; }
+    | file broken                  { syntax_append(B, $2); yyerrok; }
     | file error NEWLINE           { yyerrok; }
     ;
 
@@ -109,15 +110,29 @@ statement
     | HELD EQUALS expression range              { $$ = syntax_define(B, SYNTAX_DEFINE_CONCENTRATION, $1, @1, $3, $4, @$); }
     | INITIAL_VALUE EQUALS expression range     { $$ = syntax_define(B, SYNTAX_DEFINE_INITIAL, $1, @1, $3, $4, @$); }
     | FEED EQUALS expression range              { $$ = syntax_define(B, SYNTAX_DEFINE_FEED, $1, @1, $3, $4, @$); }
-    | NAME EQUALS error                         { $$ = syntax_define_broken(B, SYNTAX_DEFINE_NAME, (syntax_text){$1, false}, @1, @$); }
-    | HELD EQUALS error                         { $$ = syntax_define_broken(B, SYNTAX_DEFINE_CONCENTRATION, $1, @1, @$); }
-    | INITIAL_VALUE EQUALS error                { $$ = syntax_define_broken(B, SYNTAX_DEFINE_INITIAL, $1, @1, @$); }
-    | FEED EQUALS error                         { $$ = syntax_define_broken(B, SYNTAX_DEFINE_FEED, $1, @1, @$); }
     | RETAINED names                            { $$ = syntax_list(B, SYNTAX_RETAINED, $2, @$); }
     | SIGNED names                              { $$ = syntax_list(B, SYNTAX_SIGNED, $2, @$); }
     | FORMULA species EQUALS FORMULA_TEXT       { $$ = syntax_formula(B, $2, $4, @4, @$); }
     | reaction
     | LABEL reaction                            { $$ = syntax_labelled($2, $1, @1, @$); }
+    ;
+
+/* What a fault cut short: the end of the line belongs to it, so that the tokens
+ * before it are passed over first. */
+broken
+    : NAME EQUALS error NEWLINE                 { $$ = syntax_define_broken(B, SYNTAX_DEFINE_NAME, (syntax_text){$1, false}, @1); }
+    | HELD EQUALS error NEWLINE                 { $$ = syntax_define_broken(B, SYNTAX_DEFINE_CONCENTRATION, $1, @1); }
+    | INITIAL_VALUE EQUALS error NEWLINE        { $$ = syntax_define_broken(B, SYNTAX_DEFINE_INITIAL, $1, @1); }
+    | FEED EQUALS error NEWLINE                 { $$ = syntax_define_broken(B, SYNTAX_DEFINE_FEED, $1, @1); }
+    | broken_reaction
+    | LABEL broken_reaction                     { $$ = syntax_labelled($2, $1, @1, @1); }
+    ;
+
+broken_reaction
+    : side arrow side settings COMMA error NEWLINE  { $$ = syntax_broken(syntax_reaction(B, $1, $2, @2, $3, $4, @2)); }
+    | side arrow terms error NEWLINE                { $$ = syntax_broken(syntax_reaction(B, $1, $2, @2, $3.first, (syntax_arguments){NULL, NULL}, @2)); }
+    | terms error NEWLINE                           { $$ = syntax_broken(syntax_reaction(B, $1.first, false, @1, NULL, (syntax_arguments){NULL, NULL}, @1)); }
+    | side arrow error NEWLINE                      { $$ = syntax_broken(syntax_reaction(B, $1, $2, @2, NULL, (syntax_arguments){NULL, NULL}, @2)); }
     ;
 
 names
@@ -129,8 +144,6 @@ names
 
 reaction
     : side arrow side settings                  { $$ = syntax_reaction(B, $1, $2, @2, $3, $4, @$); }
-    | side arrow side settings COMMA error      { $$ = syntax_broken(syntax_reaction(B, $1, $2, @2, $3, $4, @$)); }
-    | side arrow error                          { $$ = syntax_broken(syntax_reaction(B, $1, $2, @2, NULL, (syntax_arguments){NULL, NULL}, @$)); }
     ;
 
 arrow

@@ -66,8 +66,7 @@ syntax_statement *syntax_title(builder *b, const char *text, span text_where, sp
 syntax_statement *syntax_units(builder *b, syntax_expression *units, span where);
 syntax_statement *syntax_define(builder *b, syntax_statement_kind kind, syntax_text name, span text_where,
                                 syntax_expression *value, syntax_range *range, span where);
-syntax_statement *syntax_define_broken(builder *b, syntax_statement_kind kind, syntax_text name, span text_where,
-                                       span where);
+syntax_statement *syntax_define_broken(builder *b, syntax_statement_kind kind, syntax_text name, span where);
 syntax_statement *syntax_list(builder *b, syntax_statement_kind kind, syntax_names names, span where);
 syntax_statement *syntax_formula(builder *b, const syntax_name *species, const char *formula, span formula_where,
                                  span where);

@@ -194,9 +194,7 @@ syntax_expression *syntax_subtract(builder *b, syntax_expression *left, syntax_e
 /* A number, signed or not, with a unit or without. */
 static bool is_plain(const syntax_expression *e)
 {
-    if (e->kind == SYNTAX_NEGATE)
-        e = e->left;
-    while (e->kind == SYNTAX_JUXTAPOSED || e->kind == SYNTAX_DIVIDE)
+    while (e->kind == SYNTAX_JUXTAPOSED || e->kind == SYNTAX_DIVIDE || e->kind == SYNTAX_NEGATE)
         e = e->left;
     return e->kind == SYNTAX_NUMBER;
 }
@@ -451,14 +449,12 @@ syntax_statement *syntax_broken(syntax_statement *s)
     return s;
 }
 
-syntax_statement *syntax_define_broken(builder *b, syntax_statement_kind kind, syntax_text name, span text_where,
-                                       span where)
+syntax_statement *syntax_define_broken(builder *b, syntax_statement_kind kind, syntax_text name, span where)
 {
     syntax_statement *s = syntax_broken(statement(b, kind, where));
     if (s) {
         s->text = name.text;
         s->is_quoted = name.is_quoted;
-        s->text_where = text_where;
     }
     return s;
 }
