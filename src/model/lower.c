@@ -93,6 +93,8 @@ static lb_status read_all(lower *l, lb_error *err)
     for (size_t i = 0; i < sizeof before / sizeof *before && l->status == LB_OK; i++)
         before[i](l);
     lb_status status = l->status == LB_OK ? lower_settings(l, err) : LB_OK;
+    if (lb_diagnostics_faults(l->list) > 0)
+        status = LB_OK;     /* the file's faults come first; what a setting did to a value comes before those it caused */
     for (size_t i = 0; i < sizeof after / sizeof *after && l->status == LB_OK && status == LB_OK; i++)
         after[i](l);
     if (l->status == LB_OK && status == LB_OK)
@@ -121,9 +123,7 @@ lb_status lower_tree(const syntax_tree *tree, lb_diagnostics *list, const lb_set
     if (!start(&l))
         goto done;
     status = read_all(&l, err);
-    if (l.status == LB_OK && lb_diagnostics_faults(list) > 0)
-        status = LB_OK;
-    else if (l.status == LB_OK && status == LB_OK)
+    if (l.status == LB_OK && status == LB_OK && lb_diagnostics_faults(list) == 0)
         complete(&l);
     if (l.status == LB_OK)
         l.status = diagnostics_status(list);

@@ -138,8 +138,8 @@ typedef struct lower {
 /* ---- lower.c ----------------------------------------------------------------- */
 
 /* Tree to network.  Faults and warnings go to the list; *net is NULL when there
- * are faults.  Settings: LB_E_NAME or LB_E_ARG with err filled, when the file has
- * no fault of its own.  LB_OK also with faults. */
+ * are faults.  LB_E_NAME or LB_E_ARG with err filled when a setting is wrong, and
+ * the file has no fault in its syntax and names.  LB_OK also with faults. */
 lb_status lower_tree(const syntax_tree *tree, lb_diagnostics *list, const lb_setting *settings,
                      size_t setting_count, lb_network **net, lb_error *err);
 

@@ -25,11 +25,11 @@ void lower_require_sign(lower *l, lower_value *v, lower_sign sign, const char *w
     if (v->has_state)
         return;
     if (!isfinite(v->number))
-        diagnostics_fault(l->list, v->where, NULL, "%s has no finite value at the constants of the file", what);
+        diagnostics_fault(l->list, v->where, NULL, "%s comes out without a finite value", what);
     else if (sign == SIGN_NOT_NEGATIVE && v->number < 0)
-        diagnostics_fault(l->list, v->where, NULL, "%s is negative at the constants of the file: %.6g", what, v->number);
+        diagnostics_fault(l->list, v->where, NULL, "%s comes out negative: %.6g", what, v->number);
     else if (sign == SIGN_POSITIVE && !(v->number > 0))
-        diagnostics_fault(l->list, v->where, NULL, "%s is not positive at the constants of the file: %.6g", what, v->number);
+        diagnostics_fault(l->list, v->where, NULL, "%s does not come out positive: %.6g", what, v->number);
     else
         return;
     v->kind = VALUE_BAD;

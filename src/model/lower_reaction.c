@@ -220,7 +220,7 @@ static void add_law(lower *l, lower_reaction *r, const syntax_argument *a)
     dimension d = lower_dimension(1, 1, -1, 0, 0, 0);
     lower_need(l, &v, &d, "the rate law v", NULL);
     if (v.kind != VALUE_BAD && !v.has_state && v.plain < 0 && !isfinite(v.number)) {
-        diagnostics_fault(l->list, v.where, NULL, "this rate law has no finite value at the constants of the file");
+        diagnostics_fault(l->list, v.where, NULL, "the rate law v comes out without a finite value");
         return;
     }
     r->has_law = v.kind != VALUE_BAD;
