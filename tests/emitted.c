@@ -15,7 +15,7 @@
 
 #include "support.h"
 
-enum { PATH = 512, MOST_FILES = 1024 };
+enum { PATH = 512, FILE_NAME = 128, MOST_FILES = 1024 };
 
 emitted_folder emitted_begin(void)
 {
@@ -61,7 +61,7 @@ void emitted_write(const emitted_folder *folder, const lb_network *net, const ch
     lb_error err = {.code = LB_OK};
     lb_emit_options options = {.name = name};
     ck_assert_msg(lb_emit(net, &options, header, source, &err) == LB_OK, "%s", err.message);
-    char file[PATH];
+    char file[FILE_NAME];
     snprintf(file, sizeof file, "%s.h", name);
     emitted_write_file(folder, file, lb_text_get(header, NULL));
     snprintf(file, sizeof file, "%s.c", name);

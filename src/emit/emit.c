@@ -205,6 +205,11 @@ static const char *name_of_state(const lb_network *net, int state)
     return net->species[net->state_species[state]].name;
 }
 
+static const char *name_of_constant(const lb_network *net, int constant)
+{
+    return net->constants[constant].name;
+}
+
 static void write_species(const lb_network *net, buffer *out)
 {
     buffer_append(out, " *\n * Species, x[]:\n");
@@ -234,6 +239,26 @@ static void write_constants(const lb_network *net, buffer *out)
         }
         buffer_char(out, '\n');
     }
+}
+
+/* "x: 0 A, 1 B, ...", as many to a line as fit. */
+static void write_index(const lb_network *net, const char *what, int count,
+                        const char *(*text)(const lb_network *, int), buffer *out)
+{
+    enum { WIDTH = 92 };
+    size_t line = out->length;
+    buffer_printf(out, " * %s", what);
+    for (int i = 0; i < count; i++) {
+        if (out->length - line > WIDTH) {
+            line = out->length + 1;
+            buffer_append(out, "\n *   ");
+        }
+        buffer_printf(out, " %d ", i);
+        spell_comment(out, text(net, i), TEXT_LIMIT);
+        if (i + 1 < count)
+            buffer_char(out, ',');
+    }
+    buffer_append(out, count > 0 ? "\n" : " none\n");
 }
 
 static void write_terms_of_use(buffer *out)
@@ -318,11 +343,6 @@ static void write_strings(const function_file *file, const char *what, int count
     buffer_append(out, count > 0 ? "};\n\n" : "    \"\"\n};\n\n");
 }
 
-static const char *name_of_constant(const lb_network *net, int constant)
-{
-    return net->constants[constant].name;
-}
-
 static const char *name_of_step(const lb_network *net, int step)
 {
     return net->steps[step].name;
@@ -379,7 +399,9 @@ static void write_source(function_file *file, buffer *out)
     write_terms_of_use(out);
     buffer_append(out, " *\n");
     write_units(net, out);
-    buffer_printf(out, " * How to use it, and the lists of species and constants, are in %s.h.\n */\n", file->name);
+    write_index(net, "x:", net->states, name_of_state, out);
+    write_index(net, "k:", net->constant_count, name_of_constant, out);
+    buffer_printf(out, " *\n * How to use it, units and values of the constants are in %s.h.\n */\n", file->name);
     buffer_printf(out, "#include \"%s.h\"\n\n", file->name);
     bool needs_math = file->writer.uses_math || has_numbers_to_name(file);
     buffer_append(out, needs_math ? "#include <math.h>\n#include <stddef.h>\n\n" : "#include <stddef.h>\n\n");

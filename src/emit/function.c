@@ -191,7 +191,12 @@ static void write_term(const struct function *f, const sums_term *term, bool is_
         value = nodes[value].left;
         number = -number;
     }
-    bool is_number = nodes[value].kind == EXPRESSION_NUMBER && term->coefficient == EXPRESSION_NONE;
+    expression coefficient = term->coefficient;
+    if (coefficient != EXPRESSION_NONE && nodes[coefficient].kind == EXPRESSION_NUMBER) {
+        number *= nodes[coefficient].value;
+        coefficient = EXPRESSION_NONE;
+    }
+    bool is_number = nodes[value].kind == EXPRESSION_NUMBER && coefficient == EXPRESSION_NONE;
     if (is_number)
         number *= nodes[value].value;
 
@@ -203,10 +208,10 @@ static void write_term(const struct function *f, const sums_term *term, bool is_
         spell_number(w->out, magnitude);
     if (is_number)
         return;
-    if (term->coefficient != EXPRESSION_NONE) {
+    if (coefficient != EXPRESSION_NONE) {
         if (has_factor)
             buffer_char(w->out, '*');
-        write_expression(w, term->coefficient, has_factor ? WRITE_FACTOR : WRITE_TERM);
+        write_expression(w, coefficient, has_factor ? WRITE_FACTOR : WRITE_TERM);
         has_factor = true;
     }
     if (has_factor)

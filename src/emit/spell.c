@@ -115,6 +115,27 @@ void spell_comment(buffer *out, const char *text, size_t limit)
     }
 }
 
+/* A caller's locale may write the point in its own way. */
+static void restore_point(char *text)
+{
+    for (char *c = text; *c; c++)
+        if (!isdigit((unsigned char)*c) && !strchr("+-e", *c))
+            *c = '.';
+}
+
+/* "1.5e+09" becomes "1.5e9", "2.000e-05" "2e-5". */
+static void shorten_exponent(char *text)
+{
+    char *e = strchr(text, 'e'), *end = e;
+    int exponent = atoi(e + 1);
+    if (memchr(text, '.', (size_t)(e - text)))
+        while (end[-1] == '0')
+            end--;
+    if (end[-1] == '.')
+        end--;
+    snprintf(end, 8, "e%d", exponent);
+}
+
 void spell_number(buffer *out, double value)
 {
     if (!isfinite(value)) {
@@ -122,21 +143,19 @@ void spell_number(buffer *out, double value)
         return;
     }
     char text[40];
-    for (int digits = 15; digits <= 17; digits++) {
-        snprintf(text, sizeof text, "%.*g", digits, value);
-        if (strtod(text, NULL) == value)
-            break;
-    }
-    /* A caller's locale may write the point in its own way. */
-    bool is_double = false;
-    for (char *c = text; *c; c++) {
-        if (!isdigit((unsigned char)*c) && !strchr("+-e", *c))
-            *c = '.';
-        is_double = is_double || *c == '.' || *c == 'e';
-    }
-    buffer_append(out, text);
-    if (!is_double)
-        buffer_append(out, ".0");
+    int digits = 15;
+    while (snprintf(text, sizeof text, "%.*g", digits, value) > 0 && digits < 17 && strtod(text, NULL) != value)
+        digits++;
+    bool is_large = fabs(value) >= 1e6 && !strchr(text, 'e');
+    char scientific[40];
+    snprintf(scientific, sizeof scientific, "%.*e", digits - 1, value);
+    restore_point(text);
+    restore_point(scientific);
+    shorten_exponent(scientific);
+    if (strchr(text, 'e') || (is_large && strlen(scientific) < strlen(text)))
+        buffer_append(out, scientific);
+    else
+        buffer_printf(out, strchr(text, '.') ? "%s" : "%s.0", text);
 }
 
 static bool is_letter_or_digit(char c)

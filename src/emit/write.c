@@ -174,6 +174,21 @@ static void write_factor(writer *w, expression right)
         write_expression(w, right, w->graph->nodes[right].kind == EXPRESSION_MULTIPLY ? WRITE_TERM : WRITE_FACTOR);
 }
 
+/* A number that leads the right operand comes to the front: k*(2*x) is 2*k*x. */
+static void write_product(writer *w, const expression_node *node)
+{
+    const expression_node *right = &w->graph->nodes[node->right];
+    double number;
+    bool is_led = right->kind == EXPRESSION_MULTIPLY && !is_local(w, node->right) &&
+                  expression_is_number(w->graph, right->left, &number) && number > 0;
+    if (is_led) {
+        write_expression(w, right->left, WRITE_TERM);
+        buffer_char(w->out, '*');
+    }
+    write_expression(w, node->left, WRITE_TERM);
+    write_factor(w, is_led ? right->right : node->right);
+}
+
 static void write_binary(writer *w, const expression_node *node)
 {
     switch (node->kind) {
@@ -184,8 +199,7 @@ static void write_binary(writer *w, const expression_node *node)
         write_expression(w, node->right, WRITE_TERM);
         break;
     case EXPRESSION_MULTIPLY:
-        write_expression(w, node->left, WRITE_TERM);
-        write_factor(w, node->right);
+        write_product(w, node);
         break;
     default:
         write_expression(w, node->left, WRITE_TERM);
