@@ -386,8 +386,8 @@ static double draw(uint64_t network, uint64_t *counter, double low, double high)
     return low + (high - low) * sample_uniform(4711, network, (*counter)++);
 }
 
-/* n species, 2n random steps of at most two molecules a side; then four steps per
- * species whose constants make x and y steady states. */
+/* n species, 2n random steps of at most two molecules a side; then a flow in and out and
+ * two autocatalytic steps per species, whose constants make x and y steady states. */
 static void write_planted(uint64_t network, int n, double *x, double *y, struct text *t)
 {
     uint64_t counter = 0;
@@ -413,10 +413,10 @@ static void write_planted(uint64_t network, int n, double *x, double *y, struct 
         }
     }
     for (int i = 0; i < n; i++) {
-        double k[4];
-        plant(x[i], y[i], net[0][i], net[1][i], k);
-        put(t, "-> S%d, k = %.17g\nS%d ->, k = %.17g\n2 S%d -> 3 S%d, k = %.17g\n3 S%d -> 2 S%d, k = %.17g\n", i, k[0],
-            i, k[1], i, i, k[2], i, i, k[3]);
+        double k[4], in = pow(10, draw(network, &counter, -2, 2)), out = pow(10, draw(network, &counter, -2, 2));
+        plant(x[i], y[i], net[0][i] + in - out * x[i], net[1][i] + in - out * y[i], k);
+        put(t, "-> S%d, k = %.17g\nS%d ->, k = %.17g\n2 S%d -> 3 S%d, k = %.17g\n3 S%d -> 2 S%d, k = %.17g\n", i, in + k[0],
+            i, out + k[1], i, i, k[2], i, i, k[3]);
     }
 }
 

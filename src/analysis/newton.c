@@ -22,7 +22,7 @@
 #include "base/memory.h"
 #include "base/status.h"
 
-enum { MOST_ITERATIONS = 60, MOST_HALVINGS = 10, MOST_POLISHING = 30, MOST_RELAXATIONS = 80, ALL_ROWS_LIMIT = 40 };
+enum { MOST_ITERATIONS = 40, MOST_HALVINGS = 6, MOST_POLISHING = 30, MOST_RELAXATIONS = 80, ALL_ROWS_LIMIT = 40 };
 
 static const double STEP_LIMIT = 5;             /* e^5: two decades */
 static const double RESIDUAL_TOLERANCE = 1e-11; /* a root, before polishing */

@@ -19,7 +19,7 @@
 #include "base/memory.h"
 #include "base/status.h"
 
-enum { MOST_RELAXED = 6 };
+enum { MOST_RELAXED = 6, MOST_ROUNDS = 60 };
 
 static const double CONTINUUM_STEP = 0.2;
 static const double VANISHING = 10;         /* decades below the natural range */
@@ -129,17 +129,25 @@ static lb_status take_root(struct search *s, const double *u, const newton_repor
 
 /* ---- Starts --------------------------------------------------------------------------- */
 
+/* Every other start combines the roots that are known, once there are two. */
+static void set_start(struct search *s, uint64_t i)
+{
+    if (i % 2 == 1 && s->out->count > 1)
+        starts_combine(&s->starts, i, s->out->u, s->out->count, s->u);
+    else
+        starts_point(&s->starts, i, s->u);
+}
+
 static lb_status try_start(struct search *s, uint64_t i, bool is_deflated)
 {
     newton_report report;
-    int known = is_deflated ? s->out->count : 0;
-    starts_point(&s->starts, i, s->u);
+    set_start(s, i);
     s->out->starts++;
-    lb_status status = newton_solve(&s->newton, s->u, s->out->u, known, &report, s->err);
+    lb_status status = newton_solve(&s->newton, s->u, s->out->u, is_deflated ? s->out->count : 0, &report, s->err);
     if (status == LB_OK && !report.converged && !is_deflated && s->relaxed < MOST_RELAXED) {
         bool is_near = false;
         s->relaxed++;
-        starts_point(&s->starts, i, s->u);
+        set_start(s, i);
         status = newton_relax(&s->newton, s->u, &is_near, s->err);
         if (status == LB_OK && is_near)
             status = newton_solve(&s->newton, s->u, NULL, 0, &report, s->err);
@@ -155,13 +163,20 @@ static bool must_stop(struct search *s)
     return s->out->interrupted;
 }
 
+/* Plain starts, and more of them as long as one in `starts` finds a new root;
+ * then deflated ones. */
 static lb_status run_starts(struct search *s)
 {
-    size_t plain = s->options->starts, all = plain + plain / 2;
+    size_t wanted = s->options->starts, deflated = wanted / 2, i = 0;
     lb_status status = LB_OK;
-    for (size_t i = 0; status == LB_OK && i < all && !must_stop(s); i++)
-        if (i < plain || s->out->count > 0)
-            status = try_start(s, i, i >= plain);
+    for (size_t end = wanted; status == LB_OK && i < end && !must_stop(s); i++) {
+        int before = s->out->count;
+        status = try_start(s, i, false);
+        if (s->out->count > before && !s->options->is_fixed)
+            end = i + 1 + wanted < MOST_ROUNDS * wanted ? i + 1 + wanted : MOST_ROUNDS * wanted;
+    }
+    for (size_t end = i + deflated; status == LB_OK && i < end && s->out->count > 0 && !must_stop(s); i++)
+        status = try_start(s, i, true);
     return status;
 }
 
@@ -191,5 +206,37 @@ done:
     newton_clear(&s.newton);
     memory_free(s.walked);
     memory_free(s.u);
+    return status;
+}
+
+/* Beside an end the species that vanish are tiny and the rest is as at x: a
+ * singular root is then within reach of such a point, and stays beside it. */
+lb_status roots_end_at(equations *eq, const double *x, bool *is_end, lb_error *err)
+{
+    const double near = 1e-5;
+    newton w;
+    newton_report report;
+    *is_end = false;
+    lb_status status = newton_init(&w, eq, err);
+    if (status != LB_OK)
+        return status;
+    double *u = memory_array(2 * (size_t)eq->count, sizeof *u), *start = u ? u + eq->count : NULL, largest = 0;
+    if (!u) {
+        status = status_no_memory(err);
+        goto done;
+    }
+    for (int i = 0; i < eq->count; i++)
+        largest = fmax(largest, fabs(x[eq->state[i]]));
+    for (int i = 0; i < eq->count; i++) {
+        double value = x[eq->state[i]];
+        u[i] = eq->is_signed[i] ? value / eq->unit[i] : log(value > 0 ? value : near * (largest > 0 ? largest : 1));
+        start[i] = u[i];
+    }
+    status = newton_solve(&w, u, NULL, 0, &report, err);
+    if (status == LB_OK && report.converged && report.rank < eq->count)
+        *is_end = distance(eq, u, start) < 1;
+done:
+    memory_free(u);
+    newton_clear(&w);
     return status;
 }

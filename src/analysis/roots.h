@@ -15,7 +15,8 @@ typedef struct roots {
 } roots;
 
 typedef struct roots_options {
-    size_t starts;          /* plain ones; half as many deflated ones follow */
+    size_t starts;          /* without a new root that end the search; half as many deflated ones follow */
+    bool is_fixed;          /* no more than these, however many roots they find */
     uint64_t seed;
     const double *x0;       /* [n] */
     const double *bound;    /* [n] see starts.h */
@@ -26,5 +27,9 @@ typedef struct roots_options {
  * any case. */
 lb_status roots_find(equations *eq, const roots_options *options, roots *out, lb_error *err);
 void roots_clear(roots *r);
+
+/* Is x [n], which has zeros among the unknowns of eq, the end of a continuum of
+ * roots of eq?  Asked of faces within a face that has one. */
+lb_status roots_end_at(equations *eq, const double *x, bool *is_end, lb_error *err);
 
 #endif

@@ -198,6 +198,7 @@ void starts_clear(starts *s)
 /* ---- Points ------------------------------------------------------------------------------- */
 
 /* Scale the unknowns of each positive law in turn, so that it has its total. */
+static const double FRESH = 0.1;            /* share of unknowns that a combination draws anew */
 static void fit_laws(const equations *eq, double *u)
 {
     for (int sweep = 0; sweep < FITTING_SWEEPS; sweep++)
@@ -274,4 +275,15 @@ void starts_point(starts *s, uint64_t i, double *u)
         u[j] = unknown_at(eq, j, low + at * (high - low), s->point[eq->count + j]);
     }
     fit_laws(eq, u);
+}
+
+void starts_combine(starts *s, uint64_t i, double *const *known, int known_count, double *u)
+{
+    starts_point(s, i, u);
+    for (int j = 0; j < s->eq->count; j++) {
+        double draw = sample_uniform(s->seed, i, (uint64_t)j) / (1 - FRESH);
+        if (draw < 1)
+            u[j] = known[(int)(known_count * draw)][j];
+    }
+    fit_laws(s->eq, u);
 }

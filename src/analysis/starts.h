@@ -26,6 +26,11 @@ void starts_clear(starts *s);
  * the class where the laws have positive coefficients. */
 void starts_point(starts *s, uint64_t i, double *u);
 
+/* Start i from known roots, u [count] each: every unknown from one of them at
+ * random, put into the class.  Switches that are independent of each other come
+ * in all combinations. */
+void starts_combine(starts *s, uint64_t i, double *const *known, int known_count, double *u);
+
 /* The most that the laws of the whole network allow of each state, bound [n]. */
 void starts_bounds(const lb_system *system, const double *x0, double *bound);
 

@@ -30,6 +30,7 @@ struct search {
     double slack;           /* a species set aside is zero to rounding of the totals above minus this */
     equations_laws laws;
     faces faces;
+    faces continua;         /* those that have a continuum of steady states */
     lb_steady *out;
     size_t capacity;        /* of out->state */
     lb_error *err;
@@ -111,10 +112,50 @@ static size_t starts_for(const struct search *s, int unknowns, bool is_first)
 {
     size_t count = s->options->starts;
     if (count == 0 && unknowns <= 15)
-        count = 30 + 8 * (size_t)unknowns;
+        count = 40 + 16 * (size_t)unknowns;
     else if (count == 0)
         count = unknowns < 200 ? 2400 / (size_t)unknowns : 12;
     return is_first ? count : count / 4 > 6 ? count / 4 : 6;
+}
+
+static bool is_within(int n, const bool *is_zero, const bool *outer)
+{
+    for (int i = 0; i < n; i++)
+        if (outer[i] && !is_zero[i])
+            return false;
+    return true;
+}
+
+/* A state on a face within a face that has a continuum may be the end of that. */
+static lb_status ends_continuum(struct search *s, const bool *is_zero, equations *eq, const double *u, bool *is_end)
+{
+    lb_status status = LB_OK;
+    *is_end = false;
+    for (int c = 0; status == LB_OK && c < s->continua.count && !*is_end; c++) {
+        equations *outer = NULL;
+        if (!is_within(s->system->n, is_zero, s->continua.is_zero[c]))
+            continue;
+        status = equations_new(s->evaluator, &s->laws, s->x0, s->continua.is_zero[c], &outer, s->err);
+        equations_place(eq, u);
+        if (status == LB_OK)
+            status = roots_end_at(outer, eq->x, is_end, s->err);
+        equations_free(outer);
+    }
+    return status;
+}
+
+static lb_status add_states(struct search *s, const bool *is_zero, equations *eq, const roots *found)
+{
+    lb_status status = LB_OK;
+    for (int i = 0; status == LB_OK && i < found->count; i++) {
+        bool is_end = false;
+        status = ends_continuum(s, is_zero, eq, found->u[i], &is_end);
+        if (status == LB_OK && !is_end)
+            status = add_state(s, eq, found->u[i]);
+    }
+    if (status == LB_OK && found->continuum > 0)
+        status = faces_add(&s->continua, is_zero, s->err);
+    return status;
 }
 
 static lb_status search_face(struct search *s, const bool *is_zero, bool is_first, bool *is_possible)
@@ -124,11 +165,12 @@ static lb_status search_face(struct search *s, const bool *is_zero, bool is_firs
     lb_status status = equations_new(s->evaluator, &s->laws, s->x0, is_zero, &eq, s->err);
     if (status != LB_OK)
         return status;
-    roots_options options = {.starts = starts_for(s, eq->count, is_first), .seed = s->options->seed, .x0 = s->x0,
+    roots_options options = {.starts = starts_for(s, eq->count, is_first),
+                             .is_fixed = s->options->starts > 0, .seed = s->options->seed, .x0 = s->x0,
                              .bound = s->bound, .monitor = s->options->monitor};
     status = roots_find(eq, &options, &found, s->err);
-    for (int i = 0; status == LB_OK && i < found.count; i++)
-        status = add_state(s, eq, found.u[i]);
+    if (status == LB_OK)
+        status = add_states(s, is_zero, eq, &found);
     *is_possible = !eq->is_inconsistent;
     s->out->starts += found.starts;
     s->out->converged += found.converged;
@@ -250,6 +292,7 @@ lb_status lb_steady_solve(const lb_system *system, const lb_steady_options *opti
     *out = NULL;
     struct search s = {.system = system, .options = options ? options : &defaults, .err = err};
     faces_init(&s.faces, system->n);
+    faces_init(&s.continua, system->n);
     s.out = memory_zeroed(1, sizeof *s.out);
     lb_status status = s.out ? prepare(&s) : status_no_memory(err);
     if (status == LB_OK)
@@ -263,6 +306,7 @@ lb_status lb_steady_solve(const lb_system *system, const lb_steady_options *opti
     }
     lb_steady_free(s.out);
     equations_laws_clear(&s.laws);
+    faces_clear(&s.continua);
     faces_clear(&s.faces);
     memory_free(s.bound);
     memory_free(s.x0);
