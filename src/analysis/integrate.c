@@ -259,10 +259,10 @@ static lb_status fail(integrator *it, lb_error *err)
 
 /* ---- Start ---------------------------------------------------------------------- */
 
-static void set_scale(integrator *it)
+static void set_scale(integrator *it, const double *x)
 {
     for (int i = 0; i < it->n; i++)
-        it->scale[i] = fabs(it->x[i]) + it->control.absolute[i] / it->control.relative + DBL_MIN;
+        it->scale[i] = fabs(x[i]) + it->control.absolute[i] / it->control.relative + DBL_MIN;
 }
 
 static double largest(int n, const double *a)
@@ -345,7 +345,7 @@ static lb_status begin(integrator *it, double t_limit, lb_error *err)
     if (it->culprit >= 0)
         return status_raise(err, LB_E_NEGATIVE, NULL, "[%s] starts below zero, at %.6g", species_name(it, it->culprit),
                             it->x[it->culprit]);
-    set_scale(it);
+    set_scale(it, it->x);
     it->patience = LEAST_PATIENCE;
     bool stiff = it->method == LB_METHOD_STIFF ||
                  (it->method == LB_METHOD_AUTO && it->n <= ROSENBROCK_LIMIT && looks_stiff(it));
@@ -366,7 +366,7 @@ static lb_status review_method(integrator *it, lb_error *err)
     bool is_damped;
     if (it->is_stiff) {
         /* The Jacobian of the step's start is there for nothing. */
-        set_scale(it);
+        set_scale(it, it->x);
         double radius = stiffness_radius(&it->estimate, it->system, rosenbrock_jacobian(it->stiff_steps), it->scale, &is_damped);
         it->evidence = it->h * radius < 0.4 * EXPLICIT_STABILITY ? it->evidence + 1 : 0;
         if (it->evidence < it->patience)
@@ -377,7 +377,7 @@ static lb_status review_method(integrator *it, lb_error *err)
     if ((it->since_change > 16 && it->since_change % CHECK_INTERVAL != 0) ||
         !stepper_jacobian(it->evaluator, it->x, it->estimate.values))
         return LB_OK;
-    set_scale(it);
+    set_scale(it, it->x);
     double radius = stiffness_radius(&it->estimate, it->system, it->estimate.values, it->scale, &is_damped);
     it->evidence = is_damped && it->h * radius > 0.6 * EXPLICIT_STABILITY ? it->evidence + 1 : 0;
     if (it->evidence < STIFF_EVIDENCE)
@@ -477,7 +477,9 @@ lb_status integrator_step(integrator *it, double t_limit, lb_error *err)
         if (status != LB_OK)
             return status;
     }
-    if (it->is_stiff && !rosenbrock_prepare(it->stiff_steps, it->x))
+    if (it->is_stiff)
+        set_scale(it, it->x);
+    if (it->is_stiff && !rosenbrock_prepare(it->stiff_steps, it->x, it->scale))
         return status_raise(err, LB_E_FINITE, NULL, "the derivative of a rate is not finite at t = %.6g", it->t);
 
     it->refused = REFUSED_ERROR;
@@ -526,7 +528,8 @@ static lb_status fail_inside(double t, lb_error *err)
 static bool stiff_substep(integrator *it, rosenbrock *method, double h, double *x_new)
 {
     stepper_attempt attempt = {.h = h, .x = it->x_last, .f = it->f_last, .x_new = x_new, .error = it->error};
-    return rosenbrock_prepare(method, it->x_last) && rosenbrock_attempt(method, &attempt) == STEPPER_DONE;
+    set_scale(it, it->x_last);
+    return rosenbrock_prepare(method, it->x_last, it->scale) && rosenbrock_attempt(method, &attempt) == STEPPER_DONE;
 }
 
 /* The ends of the step are what they are; true when t is one. */

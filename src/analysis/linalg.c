@@ -21,6 +21,7 @@
 #include "base/status.h"
 
 enum { OWN_LIMIT = 128 };
+#define DIAGONAL_THRESHOLD 0.01
 
 /* 0*a is zero for a finite number and NAN for everything else, so the sum
  * tells in one pass without a branch. */
@@ -41,9 +42,10 @@ static void swap_rows(int n, double *A, int a, int b)
     }
 }
 
-/* Column k of L and U is final once step k is done; pivot[k] >= k is the row
- * that changed places with row k. */
-static bool factor_small(int n, double *A, int *pivot)
+/* Column k of L and U is final once step k is done; pivot[k] > k is the row,
+ * counted from one as LAPACK does, that changed places with row k.  The diagonal
+ * is the pivot when it is at least `threshold` of the largest entry below. */
+static bool factor_own(int n, double *A, int *pivot, double threshold)
 {
     for (int k = 0; k < n; k++) {
         double *column = A + (size_t)k * n;
@@ -51,25 +53,23 @@ static bool factor_small(int n, double *A, int *pivot)
         for (int i = k + 1; i < n; i++)
             if (fabs(column[i]) > fabs(column[best]))
                 best = i;
-        pivot[k] = best;
+        if (fabs(column[k]) >= threshold * fabs(column[best]))
+            best = k;
+        pivot[k] = best + 1;
         if (column[best] == 0 || !isfinite(column[best]))
             return false;
         if (best != k)
             swap_rows(n, A, k, best);
-        double inverse = 1 / column[k];
         for (int i = k + 1; i < n; i++)
-            column[i] = column[i] / column[k];
-        if (!isfinite(inverse))
-            return false;
+            column[i] /= column[k];
         for (int j = k + 1; j < n; j++) {
-            double *right = A + (size_t)j * n;
-            double factor = right[k];
+            double *right = A + (size_t)j * n, factor = right[k];
             if (factor != 0)
                 for (int i = k + 1; i < n; i++)
                     right[i] -= column[i] * factor;
         }
     }
-    return true;
+    return all_finite((size_t)n * n, A);
 }
 
 bool linalg_factor(int n, double *A, int *pivot)
@@ -77,15 +77,20 @@ bool linalg_factor(int n, double *A, int *pivot)
     if (!all_finite((size_t)n * n, A))
         return false;
     if (n <= OWN_LIMIT)
-        return factor_small(n, A, pivot) && all_finite((size_t)n * n, A);
+        return factor_own(n, A, pivot, 1);
     return LAPACKE_dgetrf_work(LAPACK_COL_MAJOR, n, n, A, n, pivot) == 0 && all_finite((size_t)n * n, A);
+}
+
+bool linalg_factor_diagonal(int n, double *A, int *pivot)
+{
+    return all_finite((size_t)n * n, A) && factor_own(n, A, pivot, DIAGONAL_THRESHOLD);
 }
 
 static void solve_small(int n, const double *LU, const int *pivot, double *b)
 {
     for (int k = 0; k < n; k++) {
-        double kept = b[pivot[k]];
-        b[pivot[k]] = b[k];
+        double kept = b[pivot[k] - 1];
+        b[pivot[k] - 1] = b[k];
         b[k] = kept;
     }
     for (int k = 0; k < n; k++)

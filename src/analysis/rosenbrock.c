@@ -26,7 +26,7 @@
 #include <math.h>
 #include <string.h>
 
-#include "analysis/linalg.h"
+#include "analysis/stiff_matrix.h"
 #include "base/memory.h"
 #include "base/status.h"
 
@@ -71,8 +71,7 @@ struct rosenbrock {
     int n;
     double *values;             /* [nonzeros] J at the start of the step */
     double *shifted;            /* [nonzeros] J elsewhere */
-    double *W;                  /* [n*n] */
-    int *pivot;                 /* [n] */
+    stiff_matrix matrix;
     double *u;                  /* [8*n] stages of the last attempt */
     double *Y;                  /* [n] */
     /* tangents only */
@@ -92,8 +91,7 @@ void rosenbrock_free(rosenbrock *method)
     memory_free(method->slope);
     memory_free(method->Y);
     memory_free(method->u);
-    memory_free(method->pivot);
-    memory_free(method->W);
+    stiff_matrix_clear(&method->matrix);
     memory_free(method->shifted);
     memory_free(method->values);
     memory_free(method);
@@ -116,11 +114,10 @@ lb_status rosenbrock_new(lb_evaluator *evaluator, bool tangents, rosenbrock **ou
     method->n = system->n;
     method->values = memory_array(z, sizeof *method->values);
     method->shifted = memory_array(z, sizeof *method->shifted);
-    method->W = memory_array(n * n, sizeof *method->W);
-    method->pivot = memory_array(n, sizeof *method->pivot);
     method->u = memory_array(STAGES * n, sizeof *method->u);
     method->Y = memory_array(n, sizeof *method->Y);
-    bool complete = method->values && method->shifted && method->W && method->pivot && method->u && method->Y;
+    bool complete = method->values && method->shifted && method->u && method->Y &&
+                    stiff_matrix_init(&method->matrix, system, tangents ? system->n : 1) == LB_OK;
     if (complete && tangents) {
         method->slope = memory_array(z, sizeof *method->slope);
         method->point = memory_array(n, sizeof *method->point);
@@ -136,29 +133,15 @@ lb_status rosenbrock_new(lb_evaluator *evaluator, bool tangents, rosenbrock **ou
     return LB_OK;
 }
 
-bool rosenbrock_prepare(rosenbrock *method, const double *x)
+bool rosenbrock_prepare(rosenbrock *method, const double *x, const double *size)
 {
+    stiff_matrix_choose(&method->matrix, size);
     return stepper_jacobian(method->evaluator, x, method->values);
 }
 
 const double *rosenbrock_jacobian(const rosenbrock *method)
 {
     return method->values;
-}
-
-/* W = I/(h gamma) - J, factored. */
-static bool factor(rosenbrock *method, double h)
-{
-    const lb_system *system = method->system;
-    size_t n = (size_t)method->n;
-    double diagonal = 1 / (h * rosenbrock_rodas5p.gamma);
-    memset(method->W, 0, n * n * sizeof *method->W);
-    for (size_t j = 0; j < n; j++) {
-        for (int e = system->column_start[j]; e < system->column_start[j + 1]; e++)
-            method->W[(size_t)system->row[e] + j * n] = -method->values[e];
-        method->W[j + j * n] += diagonal;
-    }
-    return linalg_factor(method->n, method->W, method->pivot);
 }
 
 /* Argument of stage i: from the start and the stages before, all of one size
@@ -235,7 +218,7 @@ static bool tangent_stage(rosenbrock *method, int i, const stepper_attempt *atte
     }
     stepper_multiply_add(method->system, J, 1, method->n, method->P, U);
     add_history(i, attempt->h, size, method->U, U);
-    linalg_solve(method->n, method->W, method->pivot, method->n, U);
+    stiff_matrix_solve(&method->matrix, method->n, U);
     return true;
 }
 
@@ -256,7 +239,7 @@ stepper_outcome rosenbrock_attempt(rosenbrock *method, stepper_attempt *attempt)
 {
     size_t n = (size_t)method->n;
     attempt->bad_state = -1;
-    if (!factor(method, attempt->h))
+    if (!stiff_matrix_factor(&method->matrix, 1 / (attempt->h * rosenbrock_rodas5p.gamma), method->values))
         return STEPPER_SINGULAR;
     for (int i = 0; i < STAGES; i++) {
         double *u = method->u + (size_t)i * n;
@@ -268,7 +251,7 @@ stepper_outcome rosenbrock_attempt(rosenbrock *method, stepper_attempt *attempt)
         if (attempt->bad_state >= 0)
             return STEPPER_NOT_FINITE;
         add_history(i, attempt->h, n, method->u, u);
-        linalg_solve(method->n, method->W, method->pivot, 1, u);
+        stiff_matrix_solve(&method->matrix, 1, u);
         if (attempt->tangents && !tangent_stage(method, i, attempt))
             return STEPPER_NOT_FINITE;
     }

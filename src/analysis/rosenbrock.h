@@ -23,9 +23,9 @@ typedef struct rosenbrock rosenbrock;
 lb_status rosenbrock_new(lb_evaluator *evaluator, bool tangents, rosenbrock **out, lb_error *err);
 void rosenbrock_free(rosenbrock *method);
 
-/* Evaluate the Jacobian at the start x [n] of the steps that follow; false when
- * it is not finite. */
-bool rosenbrock_prepare(rosenbrock *method, const double *x);
+/* Evaluate the Jacobian at the start x [n] of the steps that follow; size [n] > 0:
+ * magnitudes of the states, for the linear algebra.  False when it is not finite. */
+bool rosenbrock_prepare(rosenbrock *method, const double *x, const double *size);
 const double *rosenbrock_jacobian(const rosenbrock *method);   /* [nonzeros] of the last prepare */
 
 /* A step from the x that was prepared. */
