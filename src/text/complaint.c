@@ -198,6 +198,10 @@ static bool odd_bracket(complaint *c)
     if (c->l->first != HELD || c->l->previous != HELD || !expects(c, EQUALS))
         return false;
     say_expected(c);
+    if (lexical_is_reaction(c->l)) {
+        ADVISE(c, "in a reaction write species without brackets, and a label in parentheses");
+        return true;
+    }
     ADVISE(c, "write `[X] = ...` for a held, `[X]0 = ...` for an initial, `[X]in = ...` for a feed concentration");
     return true;
 }
@@ -235,7 +239,7 @@ static bool odd_keyword(complaint *c)
 
 static bool equals_for_arrow(complaint *c)
 {
-    if (c->got != EQUALS || !expects(c, ARROW) || c->l->previous == QUOTED)
+    if (c->got != EQUALS || !expects(c, ARROW) || c->l->previous == QUOTED || c->l->previous == NEWLINE)
         return false;
     SAY(c, "`=` is no arrow");
     ADVISE(c, "write `->`, or `<->` for a reversible reaction");
@@ -244,7 +248,7 @@ static bool equals_for_arrow(complaint *c)
 
 static bool quoted_definition(complaint *c)
 {
-    if (c->got != EQUALS || !expects(c, ARROW))
+    if (c->got != EQUALS || !expects(c, ARROW) || c->l->previous != QUOTED)
         return false;
     SAY(c, "a quoted name is a species and cannot be defined");
     ADVISE(c, "write `[\"X\"] = ...` for its concentration, or a plain name for a constant");
@@ -305,10 +309,11 @@ static bool second_arrow(complaint *c)
 
 static bool nameless_setting(complaint *c)
 {
-    if (c->l->previous != COMMA || c->l->arrows == 0 || c->l->level || c->got == NEWLINE || !expects(c, NAME)
-        || expects(c, NUMBER))
+    if (c->l->previous != COMMA || c->l->arrows == 0 || c->l->level || !expects(c, NAME) || expects(c, NUMBER))
         return false;
-    SAY(c, "unexpected `%s`, expected a setting", c->text);
+    char what[sizeof c->text + 32];
+    name_what_came(c, what, sizeof what);
+    SAY(c, "%s, expected a setting", what);
     ADVISE(c, "write `k = ...`, `kf = ..., kr = ...`, `kf = ..., K = ...` or `v = ...`");
     return true;
 }
@@ -424,8 +429,9 @@ static bool bare_units(complaint *c)
 
 static bool range_without_dots(complaint *c)
 {
-    if (!expects(c, DOTS) || (c->got != COMMA && c->got != MINUS && c->got != NEWLINE && c->got != NAME
-                              && c->got != NUMBER))
+    bool is_bare = c->got == DOTS && expects(c, IN);
+    if (!is_bare && (!expects(c, DOTS) || (c->got != COMMA && c->got != MINUS && c->got != NEWLINE && c->got != NAME
+                              && c->got != NUMBER)))
         return false;
     say_expected(c);
     ADVISE(c, "write a range as `in 0.5 .. 2`");

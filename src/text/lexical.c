@@ -315,6 +315,39 @@ int lexical_number(lexical *l, const char *text, size_t length, span where, synt
     return NUMBER;
 }
 
+/* The number with one stretch of its text replaced. */
+static int mended_number(lexical *l, const char *text, size_t length, const char *from, size_t count,
+                         const char *instead, span where, syntax_number *value)
+{
+    size_t head = (size_t)(from - text);
+    char *mended = builder_alloc(&l->build, length + 2);
+    if (!mended)
+        return BAD;
+    snprintf(mended, length + 2, "%.*s%s%s", (int)head, text, instead, from + count);
+    return lexical_number(l, mended, strlen(mended), where, value);
+}
+
+int lexical_comma_number(lexical *l, const char *text, size_t length, span where, syntax_number *value)
+{
+    const char *comma = strchr(text, ',');
+    char remedy[160];
+    int head = (int)(comma - text);
+    if (length < 40 && strspn(comma + 1, "0123456789") == 3)
+        snprintf(remedy, sizeof remedy, "write `%.*s.%s` with a point, or `%.*s%s`", head, text, comma + 1, head, text,
+                 comma + 1);
+    else
+        snprintf(remedy, sizeof remedy, "write `%.*s.%.40s` with a point", head < 40 ? head : 40, text, comma + 1);
+    builder_fault(&l->build, where, remedy, "a comma inside a number");
+    return mended_number(l, text, length, comma, 1, ".", where, value);
+}
+
+int lexical_dash_number(lexical *l, const char *text, size_t length, span where, syntax_number *value)
+{
+    const char *dash = strpbrk(text, "eE") + 1;
+    builder_fault(&l->build, where, "write `-`", "`%.3s` is no minus sign", dash);
+    return mended_number(l, text, length, dash, 3, "-", where, value);
+}
+
 syntax_text lexical_bracket(lexical *l, const char *text, size_t length, span where)
 {
     const char *end = memchr(text, ']', length), *start = skip_blanks(text + 1);

@@ -88,6 +88,9 @@ int  lexical_word(lexical *l, const char *text, bool is_first);  /* NAME or a ke
 bool lexical_misses_comma(const lexical *l); /* `A -> B k = 1`: before k */
 bool lexical_is_reaction(const lexical *l);              /* an arrow follows on the line */
 int  lexical_number(lexical *l, const char *text, size_t length, span where, syntax_number *value);
+/* `1,5` and `1e` with a pasted minus: faults, read as what was meant. */
+int  lexical_comma_number(lexical *l, const char *text, size_t length, span where, syntax_number *value);
+int  lexical_dash_number(lexical *l, const char *text, size_t length, span where, syntax_number *value);
 int  lexical_colon(lexical *l, span where);              /* EQUALS, BAD, or 0 to ignore it */
 int  lexical_semicolon(lexical *l, span where);          /* COMMA, NEWLINE, or 0 to ignore it */
 int  lexical_stranger(lexical *l, const char *text, size_t length, span where);  /* a character with no meaning: BAD */

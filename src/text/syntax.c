@@ -10,6 +10,7 @@
 #include "text/builder.h"
 
 #include <stdio.h>
+#include <stdlib.h>
 #include <string.h>
 
 #include "base/memory.h"
@@ -328,7 +329,7 @@ syntax_term *syntax_side_number(builder *b, syntax_number number, span where)
     if (!number.text || strcmp(number.text, "0") == 0)
         return NULL;
     const char *exponent = strpbrk(number.text, "eE");
-    if (!exponent) {
+    if (!exponent || exponent[1] == '-' || exponent[1] == '+') {
         builder_fault(b, where, "write `2 X`, or `0` alone for an empty side", "`%.60s` is a number without a species",
                       number.text);
         b->has_bad_side = true;
@@ -338,7 +339,12 @@ syntax_term *syntax_side_number(builder *b, syntax_number number, span where)
     snprintf(remedy, sizeof remedy, "for a species called `%.40s` write `%.*s %.40s`", exponent,
              (int)(exponent - number.text < 40 ? exponent - number.text : 40), number.text, exponent);
     builder_fault(b, where, remedy, "`%.60s` is a number without a species", number.text);
-    return syntax_term_new(b, syntax_name_new(b, exponent, false, where));
+    syntax_term *term = syntax_term_new(b, syntax_name_new(b, exponent, false, where));
+    if (term) {
+        term->coefficient = builder_text(b, number.text, (size_t)(exponent - number.text));
+        term->number = term->coefficient ? strtod(term->coefficient, NULL) : 1;
+    }
+    return term;
 }
 
 /* ---- Statements ------------------------------------------------------------ */
@@ -375,13 +381,14 @@ syntax_statement *syntax_units(builder *b, syntax_expression *units, span where)
 syntax_statement *syntax_define(builder *b, syntax_statement_kind kind, syntax_text name, span text_where,
                                 syntax_expression *value, syntax_range *range, span where)
 {
-    syntax_statement *s = value ? statement(b, kind, where) : NULL;
+    syntax_statement *s = value && name.text ? statement(b, kind, where) : NULL;
     if (s) {
         s->text = name.text;
         s->is_quoted = name.is_quoted;
         s->text_where = text_where;
         s->value = value;
         s->range = range;
+        s->is_broken = name.text[0] == '\0';  /* `[]`, reported by the lexer */
     }
     return s;
 }
