@@ -139,7 +139,7 @@ bool lb_network_range(const lb_network *network, int constant, double *low, doub
 lb_status lb_network_time(const lb_network *network, const char *text, double *time, lb_error *err);
 
 /* The candidate that is nearest to a wrong word, and another word (edit distance with
- * transpositions, half an edit for a wrong case), or NULL when none is near. */
+ * transpositions, an eighth of an edit for a wrong case), or NULL when none is near. */
 const char *lb_nearest(const char *word, const char *const *candidates, size_t count);
 
 /* ---- The system --------------------------------------------------------- */

@@ -3,8 +3,8 @@
  * The table is open addressing with linear probing over FNV-1a, at most half
  * full.  "Near" is the optimal string alignment distance (insertion, deletion,
  * substitution, transposition of neighbours; Damerau 1964, Comm. ACM 7, 171),
- * in half units so that a wrong case costs half an edit; how many edits are
- * allowed grows with the length of the word. */
+ * with a wrong case at an eighth of an edit; how many edits are allowed grows
+ * with the length of the word. */
 #include "model/names.h"
 
 #include <stdbool.h>
@@ -89,7 +89,7 @@ const char *names_nearest(const names *table, const char *word)
 
 /* ---- Nearness ------------------------------------------------------------- */
 
-enum { LONGEST = 48, EDIT = 2, WRONG_CASE = 1 };
+enum { LONGEST = 48, EDIT = 8, WRONG_CASE = 1 };
 
 /* Characters of UTF-8 text; -1 when there are more than LONGEST. */
 static int characters(const char *text, uint32_t *out)
