@@ -293,17 +293,144 @@ START_TEST(test_check_shows_roles_ranges_and_the_factor_of_a_rate)
 }
 END_TEST
 
-START_TEST(test_text_writers_report_exhausted_memory)
+/* Oscillation of the Brusselator, solved once per test: a real result for the writers. */
+typedef struct solved {
+    lb_network *net;
+    lb_system *system;
+    lb_oscillate *oscillate;
+} solved;
+
+static solved solve_brusselator(void)
 {
+    solved s = {.net = support_network(brusselator)};
+    lb_oscillate_options options = {.given = true};
+    ck_assert_int_eq(lb_system_new(s.net, &s.system, NULL), LB_OK);
+    ck_assert_int_eq(lb_oscillate_solve(s.system, &options, &s.oscillate, NULL), LB_OK);
+    return s;
+}
+
+static void solved_clear(solved *s)
+{
+    lb_oscillate_free(s->oscillate);
+    lb_system_free(s->system);
+    lb_network_free(s->net);
+}
+
+static void assert_keys(const json_t *object, const char *const *keys)
+{
+    for (; *keys; keys++)
+        ck_assert_msg(json_object_get(object, *keys) != NULL, "the key %s is missing", *keys);
+}
+
+static const char *const common_keys[] = {"limbeck", "command", "file", "warnings", NULL};
+
+START_TEST(test_json_of_steady_has_the_promised_keys)
+{
+    static const char *const keys[] = {"steady_states", "complete", "conservation_totals", "accumulating", NULL};
+    static const char *const state_keys[] = {"x", "eigenvalues", "stable", "kind", "certified", NULL};
+    solved s = solve_brusselator();
+    lb_text *out = lb_text_new();
+    ck_assert_int_eq(lb_json_steady(s.system, NULL, s.oscillate->steady, out), LB_OK);
+    json_t *root = parsed(out);
+    assert_keys(root, common_keys);
+    assert_keys(root, keys);
+    ck_assert_str_eq(json_string_value(json_object_get(root, "complete")), "searched");
+    json_t *state = json_array_get(json_object_get(root, "steady_states"), 0);
+    assert_keys(state, state_keys);
+    assert_close(json_real_value(json_object_get(json_object_get(state, "x"), "X")), 1, 1e-12, 0);
+    ck_assert(json_is_null(json_object_get(json_object_get(state, "x"), "D"))); /* accumulates */
+    ck_assert(json_is_false(json_object_get(state, "stable")));
+    ck_assert(json_is_false(json_object_get(state, "certified")));
+    json_t *first = json_array_get(json_object_get(state, "eigenvalues"), 0);
+    assert_close(json_real_value(json_array_get(first, 0)), 0.5, 1e-9, 0); /* trace B - 1 - A^2 = 1 */
+    assert_close(json_real_value(json_array_get(first, 1)), sqrt(0.75), 1e-9, 0);
+    json_decref(root);
+    lb_text_free(out);
+    solved_clear(&s);
+}
+END_TEST
+
+START_TEST(test_json_of_oscillate_has_a_witness_that_reads)
+{
+    static const char *const keys[] = {"scope", "verdict", "basis", "witness", "effort", NULL};
+    static const char *const witness_keys[] = {"constants", "x", "period", "amplitude", "multipliers", "stable", "file", NULL};
+    static const char *const effort_keys[] = {"samples", "seconds", "method", NULL};
+    solved s = solve_brusselator();
+    lb_text *out = lb_text_new();
+    ck_assert_int_eq(lb_json_oscillate(s.system, NULL, s.oscillate, out), LB_OK);
+    json_t *root = parsed(out);
+    assert_keys(root, common_keys);
+    json_t *answer = json_array_get(json_object_get(root, "answers"), 0);
+    assert_keys(answer, keys);
+    assert_keys(json_object_get(answer, "effort"), effort_keys);
+    ck_assert_str_eq(json_string_value(json_object_get(answer, "verdict")), "oscillates");
+    ck_assert_str_eq(json_string_value(json_object_get(answer, "basis")), "witness");
+    ck_assert_ptr_null(json_object_get(answer, "theorem"));
+    json_t *witness = json_object_get(answer, "witness");
+    assert_keys(witness, witness_keys);
+    assert_close(json_real_value(json_object_get(witness, "period")), 7.15691992, 1e-8, 0); /* 113-bit shooting */
+    ck_assert_uint_eq(json_object_size(json_object_get(witness, "constants")), 7);
+    lb_network_free(support_network(json_string_value(json_object_get(witness, "file"))));
+    json_decref(root);
+    lb_text_free(out);
+    solved_clear(&s);
+}
+END_TEST
+
+START_TEST(test_json_of_a_failed_run_keeps_the_rows)
+{
+    double t[2] = {0, 0.1}, reading[2] = {0.25, 0.5}, x[10] = {0};
     lb_network *net = support_network(brusselator);
+    lb_system *system;
+    ck_assert_int_eq(lb_system_new(net, &system, NULL), LB_OK);
+    lb_run run = made_up_run(t, x, reading);
+    lb_error err = {.code = LB_E_NEGATIVE, .message = "below zero"};
+    lb_text *out = lb_text_new();
+    ck_assert_int_eq(lb_json_run(system, NULL, &run, &err, out), LB_OK);
+    json_t *root = parsed(out);
+    ck_assert_uint_eq(json_array_size(json_object_get(root, "t")), 2);
+    ck_assert_str_eq(json_string_value(json_object_get(json_object_get(root, "error"), "code")), "negative");
+    json_decref(root);
+    lb_text_free(out);
+    lb_system_free(system);
+    lb_network_free(net);
+}
+END_TEST
+
+START_TEST(test_page_tells_the_witness_and_the_totals)
+{
+    solved s = solve_brusselator();
+    lb_text *out = lb_text_new();
+    ck_assert_int_eq(lb_text_page(s.system, s.oscillate, NULL, out), LB_OK);
+    const char *text = lb_text_get(out, NULL);
+    ck_assert_ptr_nonnull(strstr(text, "\nConserved\n  nothing\n"));
+    ck_assert_ptr_nonnull(strstr(text, "1: unstable focus"));
+    ck_assert_ptr_nonnull(strstr(text, "Oscillates (witnessed): attracting limit cycle, period 7.15692 s."));
+    ck_assert_int_le(widest(text), 80);
+    lb_text_free(out);
+    solved_clear(&s);
+}
+END_TEST
+
+typedef lb_status writer(const solved *s, lb_text *out);
+
+static lb_status write_check(const solved *s, lb_text *out) { return lb_text_check(s->net, NULL, out); }
+static lb_status write_steady(const solved *s, lb_text *out) { return lb_text_steady(s->system, s->oscillate->steady, NULL, out); }
+static lb_status write_oscillate(const solved *s, lb_text *out) { return lb_text_oscillate(s->system, s->oscillate, NULL, out); }
+static lb_status write_page(const solved *s, lb_text *out) { return lb_text_page(s->system, s->oscillate, NULL, out); }
+static lb_status write_json(const solved *s, lb_text *out) { return lb_json_page(s->system, NULL, s->oscillate, out); }
+
+/* Each allocation fails in turn: the writer says so, or its text is whole. */
+static void assert_reports_exhausted_memory(writer *write, const solved *s)
+{
     lb_text *whole = lb_text_new();
-    ck_assert_int_eq(lb_text_check(net, NULL, whole), LB_OK);
+    ck_assert_int_eq(write(s, whole), LB_OK);
     lb_status status = LB_E_NOMEM;
     long k = 0;
-    for (; k < 2000 && status != LB_OK; k++) {
+    for (; k < 5000 && status != LB_OK; k++) {
         lb_text *out = lb_text_new();
         memory_fail_after(k);
-        status = lb_text_check(net, NULL, out);
+        status = write(s, out);
         memory_fail_after(-1);
         ck_assert_msg(status == LB_OK || status == LB_E_NOMEM, "%s", lb_status_text(status));
         if (status == LB_OK)
@@ -313,7 +440,15 @@ START_TEST(test_text_writers_report_exhausted_memory)
     ck_assert_int_gt(k, 20);
     ck_assert_int_eq(status, LB_OK);
     lb_text_free(whole);
-    lb_network_free(net);
+}
+
+START_TEST(test_writers_report_exhausted_memory)
+{
+    static writer *const writers[] = {write_check, write_steady, write_oscillate, write_page, write_json};
+    solved s = solve_brusselator();
+    for (size_t i = 0; i < sizeof writers / sizeof *writers; i++)
+        assert_reports_exhausted_memory(writers[i], &s);
+    solved_clear(&s);
 }
 END_TEST
 
@@ -339,7 +474,11 @@ Suite *output_suite(void)
     tcase_add_test(answers, test_json_of_check_has_the_promised_keys);
     tcase_add_test(answers, test_json_error_survives_text_that_is_not_utf8);
     tcase_add_test(answers, test_check_shows_roles_ranges_and_the_factor_of_a_rate);
-    tcase_add_test(answers, test_text_writers_report_exhausted_memory);
+    tcase_add_test(answers, test_json_of_steady_has_the_promised_keys);
+    tcase_add_test(answers, test_json_of_oscillate_has_a_witness_that_reads);
+    tcase_add_test(answers, test_json_of_a_failed_run_keeps_the_rows);
+    tcase_add_test(answers, test_page_tells_the_witness_and_the_totals);
+    tcase_add_test(answers, test_writers_report_exhausted_memory);
     suite_add_tcase(suite, answers);
     return suite;
 }

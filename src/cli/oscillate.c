@@ -53,21 +53,11 @@ static int show(session *s, const lb_oscillate *oscillate)
     return result;
 }
 
-static bool has_range(const lb_network *network)
-{
-    double low, high;
-    bool is_logarithmic;
-    for (int i = 0; i < lb_network_constants(network); i++)
-        if (lb_network_range(network, i, &low, &high, &is_logarithmic))
-            return true;
-    return false;
-}
-
 static int solve(session *s)
 {
     const options *given = s->given;
     lb_error error = {.code = LB_OK};
-    if (!given->given && !has_range(s->network)) {
+    if (!given->given && !session_has_range(s)) {
         error = (lb_error){.code = LB_E_ARG,
                            .message = "no constant of this mechanism has a range to search",
                            .remedy = "give some one: k2 = 1 s^-1 in 0.1 .. 10"};

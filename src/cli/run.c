@@ -77,7 +77,7 @@ static int end_early(session *s, const lb_run *run, const lb_error *error)
         return EXIT_NOT_COMPLETED;
     session_fail(s, error);
     session_note(s, "the %zu rows until then are kept", run->rows);
-    if (error->code == LB_E_FINITE)
+    if (error->code == LB_E_FINITE || error->code == LB_E_STEP)
         session_note(s, "growth without bound in a model may be a runaway in the vessel; "
                         "scale-up is for those with the licence and the calorimetry for it");
     return EXIT_NOT_COMPLETED;

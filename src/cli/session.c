@@ -166,3 +166,13 @@ int session_print(session *s, lb_status status)
     fprintf(stderr, "limbeck: %s\n", error.message);
     return EXIT_NOT_COMPLETED;
 }
+
+bool session_has_range(const session *s)
+{
+    double low, high;
+    bool is_logarithmic;
+    for (int i = 0; i < lb_network_constants(s->network); i++)
+        if (lb_network_range(s->network, i, &low, &high, &is_logarithmic))
+            return true;
+    return false;
+}

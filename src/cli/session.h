@@ -37,6 +37,9 @@ int session_fail_status(const session *s, lb_status status);
 /* Print s->text when its writer returned LB_OK; gives the exit status. */
 int session_print(session *s, lb_status status);
 
+/* Does any constant have a range that a search may use? */
+bool session_has_range(const session *s);
+
 /* Report without a session, for main. */
 int session_report(const options *given, const lb_error *error, const lb_diagnostics *diagnostics, int exit_status);
 void session_note_interrupted(const session *s);

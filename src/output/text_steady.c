@@ -21,12 +21,9 @@ static void write_search(buffer *out, const lb_layout *layout, const lb_network 
 {
     buffer text;
     buffer_init(&text);
-    if (steady->count == 0)
-        buffer_append(&text, "None found ");
-    else
-        buffer_append(&text, "Found by a search ");
-    buffer_printf(&text, "from %zu starts, %zu of which converged; ", steady->starts, steady->converged);
-    buffer_append(&text, steady->count == 0 ? "a search cannot exclude one." : "a search can miss one.");
+    buffer_printf(&text, "%s by a search of the inside (%zu starts, %zu converged) and of the faces where species are absent; %s.",
+                  steady->count == 0 ? "None found" : "Found", steady->starts, steady->converged,
+                  steady->count == 0 ? "that does not exclude one" : "it can miss one");
     if (steady->interrupted)
         buffer_append(&text, " It was interrupted, and is not complete.");
     layout_printf(out, layout, 2, "%s", buffer_get(&text));
@@ -38,7 +35,7 @@ static void write_search(buffer *out, const lb_layout *layout, const lb_network 
     buffer_init(&text);
     describe_states(&text, net, steady->accumulating);
     if (*buffer_get(&text))
-        layout_printf(out, layout, 2, "Set aside, since no rate depends on it and no conserved total fixes it: %s.", buffer_get(&text));
+        layout_printf(out, layout, 2, "Set aside (no rate depends on it, no conserved total fixes it): %s.", buffer_get(&text));
     layout_end(&text, out);
 }
 
