@@ -335,7 +335,7 @@ END_TEST
 START_TEST(test_a_table_finds_what_was_entered)
 {
     enum { COUNT = 5000 };
-    static char name[COUNT][8];
+    static char name[COUNT][16];
     names table;
     names_init(&table);
     ck_assert_int_eq(names_find(&table, "x"), -1);
