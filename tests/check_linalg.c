@@ -73,6 +73,36 @@ START_TEST(test_small_pivots_are_avoided)
 }
 END_TEST
 
+/* The diagonal is kept down to a hundredth of the column's largest entry, and a
+ * smaller one is not. */
+START_TEST(test_the_diagonal_is_preferred_while_it_is_safe)
+{
+    double kept[4] = {1, 50, 1, 1}, changed[4] = {1, 1e4, 1, 1}, b[2] = {2, 51}, c[2] = {2, 10001};
+    int pivot[2];
+    ck_assert(linalg_factor_diagonal(2, kept, pivot));
+    ck_assert(kept[0] == 1 && kept[1] == 50);
+    linalg_solve(2, kept, pivot, 1, b);
+    assert_close(b[0], 1, 1e-14, 0);
+    assert_close(b[1], 1, 1e-14, 0);
+    ck_assert(linalg_factor_diagonal(2, changed, pivot));
+    ck_assert(changed[0] == 1e4);
+    linalg_solve(2, changed, pivot, 1, c);
+    assert_close(c[0], 1, 1e-14, 0);
+    assert_close(c[1], 1, 1e-14, 0);
+    double large[200 * 200] = {0}, x[200];
+    int order[200];
+    for (int i = 0; i < 200; i++) {
+        large[i + 200 * i] = 1e-6;
+        large[i + 200 * (199 - i)] += 1;
+        x[i] = 1 + 1e-6;
+    }
+    ck_assert(linalg_factor_diagonal(200, large, order));
+    linalg_solve(200, large, order, 1, x);      /* beyond the change to LAPACK's solve */
+    for (int i = 0; i < 200; i++)
+        assert_close(x[i], 1, 1e-13, 0);
+}
+END_TEST
+
 START_TEST(test_singular_and_not_finite_matrices_are_refused)
 {
     int pivot[3];
@@ -248,6 +278,7 @@ Suite *linalg_suite(void)
     TCase *solve = tcase_create("solve");
     tcase_add_test(solve, test_solution_satisfies_the_equations);
     tcase_add_test(solve, test_small_pivots_are_avoided);
+    tcase_add_test(solve, test_the_diagonal_is_preferred_while_it_is_safe);
     tcase_add_test(solve, test_singular_and_not_finite_matrices_are_refused);
     tcase_add_test(solve, test_condition_of_a_diagonal_matrix_is_the_ratio);
     tcase_add_test(solve, test_least_squares_gives_the_shortest_solution);
