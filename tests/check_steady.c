@@ -362,61 +362,116 @@ static void put(struct text *t, const char *format, ...)
     t->room -= (size_t)length;
 }
 
-/* Non-negative a, b, c, d with a - b x + c x^2 - d x^3 = -net at both states: the
- * four directions span the plane, so two neighbours of them hold any target. */
-static void plant(double x, double y, double net_x, double net_y, double out[4])
-{
-    const double p[4] = {1, -x, x * x, -x * x * x}, q[4] = {1, -y, y * y, -y * y * y};
-    for (int a = 0; a < 4; a++)
-        for (int b = a + 1; b < 4; b++) {
-            double det = p[a] * q[b] - p[b] * q[a];
-            double u = (-net_x * q[b] + net_y * p[b]) / det, v = (-net_y * p[a] + net_x * q[a]) / det;
-            if (u >= 0 && v >= 0) {
-                memset(out, 0, 4 * sizeof *out);
-                out[a] = u;
-                out[b] = v;
-                return;
-            }
-        }
-    ck_abort_msg("no constants plant %g and %g", x, y);
-}
-
 static double draw(uint64_t network, uint64_t *counter, double low, double high)
 {
     return low + (high - low) * sample_uniform(4711, network, (*counter)++);
 }
 
-/* n species, 2n random steps of at most two molecules a side; then a flow in and out and
- * two autocatalytic steps per species, whose constants make x and y steady states. */
+/* Two molecules in, two out. */
+struct random_step {
+    int from[2], to[2];
+    double k;
+};
+
+/* n species, 2n random steps, a flow in and out of each species. */
+struct random_network {
+    int n;
+    struct random_step step[24];
+    double in[12], out[12];
+};
+
+static void make_random(uint64_t network, uint64_t *counter, int n, struct random_network *r)
+{
+    r->n = n;
+    for (int s = 0; s < 2 * n; s++) {
+        for (int side = 0; side < 2; side++) {
+            r->step[s].from[side] = (int)draw(network, counter, 0, n);
+            r->step[s].to[side] = (int)draw(network, counter, 0, n);
+        }
+        r->step[s].k = pow(10, draw(network, counter, -2, 2));
+    }
+    for (int i = 0; i < n; i++) {
+        r->in[i] = pow(10, draw(network, counter, -2, 2));
+        r->out[i] = pow(10, draw(network, counter, -2, 2));
+    }
+}
+
+static void net_rates(const struct random_network *r, const double *x, double *net)
+{
+    for (int i = 0; i < r->n; i++)
+        net[i] = r->in[i] - r->out[i] * x[i];
+    for (int s = 0; s < 2 * r->n; s++) {
+        const struct random_step *step = &r->step[s];
+        double v = step->k * x[step->from[0]] * x[step->from[1]];
+        for (int side = 0; side < 2; side++) {
+            net[step->from[side]] -= v;
+            net[step->to[side]] += v;
+        }
+    }
+}
+
+/* Non-negative a, b, c, d with a - b x + c x^2 - d x^3 = -net at both states: the
+ * four directions span the plane, so two neighbours of them hold any target.
+ * True when the flows a and b are enough. */
+static bool plant(double x, double y, double net_x, double net_y, double out[4])
+{
+    const double p[4] = {1, -x, x * x, -x * x * x}, q[4] = {1, -y, y * y, -y * y * y};
+    memset(out, 0, 4 * sizeof *out);
+    for (int a = 0; a < 4; a++)
+        for (int b = a + 1; b < 4; b++) {
+            double det = p[a] * q[b] - p[b] * q[a];
+            double u = (-net_x * q[b] + net_y * p[b]) / det, v = (-net_y * p[a] + net_x * q[a]) / det;
+            if (u >= 0 && v >= 0) {
+                out[a] = u;
+                out[b] = v;
+                return b == 1;
+            }
+        }
+    ck_abort_msg("no constants plant %g and %g", x, y);
+}
+
+/* Of many candidates for the second state the one for which the fewest species
+ * need autocatalysis of their own: each such species is a switch, and switches
+ * multiply the states. */
+static void choose_states(uint64_t network, uint64_t *counter, const struct random_network *r, double *x, double *y)
+{
+    double candidate[12], net_x[12], net_y[12], k[4];
+    int fewest = r->n + 1;
+    for (int i = 0; i < r->n; i++)
+        x[i] = pow(10, draw(network, counter, -2, 2));
+    net_rates(r, x, net_x);
+    for (int try = 0; try < 200; try++) {
+        int switches = 0;
+        for (int i = 0; i < r->n; i++)
+            candidate[i] = pow(10, draw(network, counter, -2, 2));
+        net_rates(r, candidate, net_y);
+        for (int i = 0; i < r->n; i++)
+            switches += !plant(x[i], candidate[i], net_x[i], net_y[i], k);
+        if (switches < fewest) {
+            fewest = switches;
+            memcpy(y, candidate, sizeof candidate);
+        }
+    }
+}
+
 static void write_planted(uint64_t network, int n, double *x, double *y, struct text *t)
 {
     uint64_t counter = 0;
-    double net[2][12] = {{0}};
-    for (int i = 0; i < n; i++) {
-        x[i] = pow(10, draw(network, &counter, -2, 2));
-        y[i] = pow(10, draw(network, &counter, -2, 2));
-    }
+    struct random_network r;
+    double net_x[12], net_y[12], k[4];
+    make_random(network, &counter, n, &r);
+    choose_states(network, &counter, &r, x, y);
+    net_rates(&r, x, net_x);
+    net_rates(&r, y, net_y);
     put(t, "units none\n");
-    for (int s = 0; s < 2 * n; s++) {
-        int from[2], to[2];
-        for (int side = 0; side < 2; side++) {
-            from[side] = (int)draw(network, &counter, 0, n);
-            to[side] = (int)draw(network, &counter, 0, n);
-        }
-        double k = pow(10, draw(network, &counter, -2, 2));
-        put(t, "S%d + S%d -> S%d + S%d, k = %.17g\n", from[0], from[1], to[0], to[1], k);
-        for (int side = 0; side < 2; side++) {
-            net[0][from[side]] -= k * x[from[0]] * x[from[1]];
-            net[0][to[side]] += k * x[from[0]] * x[from[1]];
-            net[1][from[side]] -= k * y[from[0]] * y[from[1]];
-            net[1][to[side]] += k * y[from[0]] * y[from[1]];
-        }
-    }
+    for (int s = 0; s < 2 * n; s++)
+        put(t, "S%d + S%d -> S%d + S%d, k = %.17g\n", r.step[s].from[0], r.step[s].from[1], r.step[s].to[0],
+            r.step[s].to[1], r.step[s].k);
     for (int i = 0; i < n; i++) {
-        double k[4], in = pow(10, draw(network, &counter, -2, 2)), out = pow(10, draw(network, &counter, -2, 2));
-        plant(x[i], y[i], net[0][i] + in - out * x[i], net[1][i] + in - out * y[i], k);
-        put(t, "-> S%d, k = %.17g\nS%d ->, k = %.17g\n2 S%d -> 3 S%d, k = %.17g\n3 S%d -> 2 S%d, k = %.17g\n", i, in + k[0],
-            i, out + k[1], i, i, k[2], i, i, k[3]);
+        bool is_simple = plant(x[i], y[i], net_x[i], net_y[i], k);
+        put(t, "-> S%d, k = %.17g\nS%d ->, k = %.17g\n", i, r.in[i] + k[0], i, r.out[i] + k[1]);
+        if (!is_simple)
+            put(t, "2 S%d -> 3 S%d, k = %.17g\n3 S%d -> 2 S%d, k = %.17g\n", i, i, k[2], i, i, k[3]);
     }
 }
 

@@ -2,11 +2,10 @@
  *
  * The reduced Jacobian is balanced first (a diagonal scaling by powers of two,
  * which changes no eigenvalue): species that live at 1e-9 and at 1 would else
- * hide in each other's rounding.  The bound of an eigenvalue is its condition,
- * |y||z|/|y'z| with its left and right vectors y and z, times the uncertainty of
- * the matrix: rounding of the algorithm and of the entries, and the change that
- * the uncertainty of the state itself makes, found by evaluating the Jacobian at
- * a state moved by it.
+ * hide in each other's rounding.  With left and right vectors y and z, a value is
+ * off by y(Az - value z)/yz, and an uncertainty E of the entries moves it by
+ * |y|E|z|/|yz|, both to first order; E holds the rounding of each entry's terms,
+ * and the change of the entry when the state moves by its own uncertainty.
  *
  * Sources: G. H. Golub and C. F. Van Loan, Matrix Computations, 4th ed. (2013),
  * sections 7.2.2 and 7.5.7; E. E. Osborne, J. ACM 7 (1960) 338 (balancing).  What
@@ -29,6 +28,7 @@ struct workspace {
     double *J;              /* [n*n] */
     double *reduced;        /* [rank*rank] */
     double *moved;          /* [rank*rank] at the state moved by its uncertainty */
+    double *error;          /* [rank*rank] uncertainty of each entry of reduced */
     double *scale;          /* [rank] of the balancing */
     double *matrix;         /* [rank*rank] scratch */
     double *vectors;        /* [rank*rank] right vectors, packed */
@@ -44,6 +44,7 @@ static void workspace_clear(struct workspace *w)
     memory_free(w->J);
     memory_free(w->reduced);
     memory_free(w->moved);
+    memory_free(w->error);
     memory_free(w->scale);
     memory_free(w->matrix);
     memory_free(w->vectors);
@@ -64,6 +65,7 @@ static lb_status workspace_init(struct workspace *w, const lb_system *system, lb
     w->J = memory_array(n * n, sizeof *w->J);
     w->reduced = memory_array(rank * rank, sizeof *w->reduced);
     w->moved = memory_array(rank * rank, sizeof *w->moved);
+    w->error = memory_array(rank * rank, sizeof *w->error);
     w->scale = memory_array(rank, sizeof *w->scale);
     w->matrix = memory_array(rank * rank, sizeof *w->matrix);
     w->vectors = memory_array(rank * rank, sizeof *w->vectors);
@@ -72,7 +74,7 @@ static lb_status workspace_init(struct workspace *w, const lb_system *system, lb
     w->f = memory_array(n, sizeof *w->f);
     w->magnitude = memory_array(n, sizeof *w->magnitude);
     w->pivot = memory_array(rank, sizeof *w->pivot);
-    if (w->x && w->J && w->reduced && w->moved && w->scale && w->matrix && w->vectors && w->inverse && w->bound &&
+    if (w->x && w->J && w->reduced && w->moved && w->error && w->scale && w->matrix && w->vectors && w->inverse && w->bound &&
         w->f && w->magnitude && w->pivot)
         return LB_OK;
     workspace_clear(w);
@@ -163,9 +165,29 @@ static bool move_state(struct workspace *w, const lb_system *system)
     return true;
 }
 
-/* Fills reduced (balanced), scale and the uncertainty of the matrix in norm. */
+/* Magnitude of the terms that each entry of the reduced matrix is the sum of. */
+static double entry_size(const struct workspace *w, const lb_system *system, int i, int j)
+{
+    int dependent = system->core - w->rank;
+    const double *row = w->J + system->core_state[system->independent[i]];
+    double size = fabs(row[(size_t)system->core_state[system->independent[j]] * (size_t)w->n]);
+    for (int d = 0; d < dependent; d++)
+        size += fabs(system->elimination[d + (size_t)j * (size_t)dependent] *
+                     row[(size_t)system->core_state[system->dependent[d]] * (size_t)w->n]);
+    return size;
+}
+
+static void start_error(struct workspace *w, const lb_system *system)
+{
+    for (int j = 0; j < w->rank; j++)
+        for (int i = 0; i < w->rank; i++)
+            w->error[i + (size_t)j * (size_t)w->rank] =
+                2 * (w->rank + 3) * DBL_EPSILON * entry_size(w, system, i, j);
+}
+
+/* Fills reduced and error, both balanced. */
 static lb_status make_matrix(struct workspace *w, lb_evaluator *evaluator, const lb_steady_state *state,
-                             double *uncertainty, lb_error *err)
+                             lb_error *err)
 {
     const lb_system *system = evaluator_system(evaluator);
     size_t size = (size_t)w->rank * (size_t)w->rank;
@@ -176,48 +198,73 @@ static lb_status make_matrix(struct workspace *w, lb_evaluator *evaluator, const
     system_reduce(system, w->J, w->reduced);
     find_balance(w);
     apply_balance(w, w->reduced);
-    double norm = frobenius(size, w->reduced);
-    if (!isfinite(norm))
+    if (!isfinite(frobenius(size, w->reduced)))
         return status_raise(err, LB_E_FINITE, NULL, "the Jacobian at a steady state is not finite");
-    *uncertainty = 2 * (w->rank + 1) * DBL_EPSILON * norm;
+    start_error(w, system);
+    apply_balance(w, w->error);
     if (!move_state(w, system))
         return LB_OK;
     lb_jacobian(evaluator, w->x, w->J);
     system_reduce(system, w->J, w->moved);
     apply_balance(w, w->moved);
     for (size_t i = 0; i < size; i++)
-        w->moved[i] -= w->reduced[i];
-    double change = frobenius(size, w->moved);
-    if (isfinite(change))
-        *uncertainty += change;
+        if (isfinite(w->moved[i]))
+            w->error[i] += fabs(w->moved[i] - w->reduced[i]);
     return LB_OK;
 }
 
 /* ---- Eigenvalues and their bounds ---------------------------------------------------------- */
 
-/* |a|^2 + |b|^2 of packed columns; b is the next column when there is a pair. */
-static double column_square(const struct workspace *w, int column, int width)
+/* Left vector y and right vector z of one eigenvalue, the imaginary parts NULL
+ * when it is real; their product y z is 1, or 2 for a pair. */
+struct pair {
+    const double *z, *z_im;
+    const double *y, *y_im; /* with a stride of rank: rows of a column-major matrix */
+    double product;
+};
+
+/* With V = [re z, im z] packed, the rows a, b of inverse(V) give y = a - i b. */
+static struct pair pair_of(const struct workspace *w, int i, bool is_complex)
+{
+    const double *z = w->vectors + (size_t)i * (size_t)w->rank, *y = w->inverse + i;
+    return (struct pair){z, is_complex ? z + w->rank : NULL, y, is_complex ? y + 1 : NULL, is_complex ? 2 : 1};
+}
+
+/* |y (A z - value z)|: what the computed value is off by, to first order. */
+static double pair_residual(const struct workspace *w, const struct pair *p, lb_complex value)
+{
+    int rank = w->rank;
+    double re = 0, im = 0;
+    for (int i = 0; i < rank; i++) {
+        double z_im = p->z_im ? p->z_im[i] : 0, y = p->y[(size_t)i * (size_t)rank];
+        double y_im = p->y_im ? -p->y_im[(size_t)i * (size_t)rank] : 0;
+        double r = value.im * z_im - value.re * p->z[i], r_im = -value.re * z_im - value.im * p->z[i];
+        for (int j = 0; j < rank; j++) {
+            r += w->reduced[i + (size_t)j * (size_t)rank] * p->z[j];
+            r_im += p->z_im ? w->reduced[i + (size_t)j * (size_t)rank] * p->z_im[j] : 0;
+        }
+        re += y * r - y_im * r_im;
+        im += y * r_im + y_im * r;
+    }
+    return hypot(re, im);
+}
+
+/* |y| E |z| for a matrix E >= 0 of uncertainties. */
+static double pair_uncertainty(const struct workspace *w, const struct pair *p, const double *E)
 {
     double sum = 0;
-    for (int c = column; c < column + width; c++)
-        for (int i = 0; i < w->rank; i++)
-            sum += w->vectors[i + (size_t)c * (size_t)w->rank] * w->vectors[i + (size_t)c * (size_t)w->rank];
+    for (int j = 0; j < w->rank; j++) {
+        double z = hypot(p->z[j], p->z_im ? p->z_im[j] : 0);
+        for (int i = 0; i < w->rank; i++) {
+            size_t row = (size_t)i * (size_t)w->rank;
+            sum += hypot(p->y[row], p->y_im ? p->y_im[row] : 0) * E[i + (size_t)j * (size_t)w->rank] * z;
+        }
+    }
     return sum;
 }
 
-static double row_square(const struct workspace *w, int row, int width)
-{
-    double sum = 0;
-    for (int r = row; r < row + width; r++)
-        for (int j = 0; j < w->rank; j++)
-            sum += w->inverse[r + (size_t)j * (size_t)w->rank] * w->inverse[r + (size_t)j * (size_t)w->rank];
-    return sum;
-}
-
-/* With V = [re z, im z] packed, the rows a, b of inverse(V) give the left vector
- * y = a - i b, and y z = 2: the condition is |y||z|/2 for a pair, |y||z| for a
- * real eigenvalue. */
-static void find_bounds(struct workspace *w, const lb_complex *values, double uncertainty)
+/* False when the vectors are dependent to the last bit. */
+static bool invert_vectors(struct workspace *w)
 {
     int rank = w->rank;
     size_t size = (size_t)rank * (size_t)rank;
@@ -225,17 +272,25 @@ static void find_bounds(struct workspace *w, const lb_complex *values, double un
     memset(w->inverse, 0, size * sizeof *w->inverse);
     for (int i = 0; i < rank; i++)
         w->inverse[i + (size_t)i * (size_t)rank] = 1;
-    bool is_regular = linalg_factor(rank, w->matrix, w->pivot);
-    if (is_regular)
-        linalg_solve(rank, w->matrix, w->pivot, rank, w->inverse);
-    for (int i = 0; i < rank;) {
-        int width = values[i].im != 0 && i + 1 < rank ? 2 : 1;
-        double condition = sqrt(column_square(w, i, width) * row_square(w, i, width)) / width;
-        if (!is_regular || !isfinite(condition))
-            condition = 1 / sqrt(DBL_EPSILON);
-        for (int c = 0; c < width; c++)
-            w->bound[i + c] = condition * uncertainty;
-        i += width;
+    if (!linalg_factor(rank, w->matrix, w->pivot))
+        return false;
+    linalg_solve(rank, w->matrix, w->pivot, rank, w->inverse);
+    return isfinite(frobenius(size, w->inverse));
+}
+
+static void find_bounds(struct workspace *w, const lb_complex *values)
+{
+    size_t size = (size_t)w->rank * (size_t)w->rank;
+    bool is_regular = invert_vectors(w);
+    for (int i = 0; i < w->rank;) {
+        bool is_complex = values[i].im != 0 && i + 1 < w->rank;
+        struct pair p = pair_of(w, i, is_complex);
+        w->bound[i] = sqrt(DBL_EPSILON) * frobenius(size, w->reduced);
+        if (is_regular)
+            w->bound[i] = (2 * pair_residual(w, &p, values[i]) + pair_uncertainty(w, &p, w->error)) / p.product;
+        if (is_complex)
+            w->bound[i + 1] = w->bound[i];
+        i += is_complex ? 2 : 1;
     }
 }
 
@@ -353,7 +408,6 @@ lb_status stability_classify(lb_evaluator *evaluator, lb_steady_state *state, lb
 {
     const lb_system *system = evaluator_system(evaluator);
     struct workspace w;
-    double uncertainty = 0;
     lb_status status = workspace_init(&w, system, err);
     if (status != LB_OK)
         return status;
@@ -362,13 +416,13 @@ lb_status stability_classify(lb_evaluator *evaluator, lb_steady_state *state, lb
     if (!state->eigenvalues || !state->modes)
         status = status_no_memory(err);
     if (status == LB_OK)
-        status = make_matrix(&w, evaluator, state, &uncertainty, err);
+        status = make_matrix(&w, evaluator, state, err);
     if (status == LB_OK) {
         memcpy(w.matrix, w.reduced, (size_t)w.rank * (size_t)w.rank * sizeof *w.matrix);
         status = linalg_eigenvalues(w.rank, w.matrix, state->eigenvalues, w.vectors, err);
     }
     if (status == LB_OK) {
-        find_bounds(&w, state->eigenvalues, uncertainty);
+        find_bounds(&w, state->eigenvalues);
         struct signs signs = count_signs(&w, state->eigenvalues);
         state->real_part_error = signs.error;
         name_state(state, w.rank, &signs);
