@@ -169,6 +169,10 @@ START_TEST(test_slips_of_numbers_are_named)
          "1:9+3 `s-2` is a subtraction, not a power of a unit | write `s^-2`",
          "x = (((1_M)_(s^(-2)))/s)"},
         {TEXT("x = 5 %"), "1:7+1 unexpected character `%` (U+0025) | a comment starts with `#`", ""},
+        {TEXT("x = 2*R2.k"),
+         "1:9+1 unexpected character `.` (U+002E) | "
+         "a constant of a reaction cannot be used by its label here: define it, `k2 = ...`, and use `k2` in both places",
+         ""},
     };
     CHECK(rows);
 }

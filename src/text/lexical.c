@@ -416,7 +416,10 @@ int lexical_stranger(lexical *l, const char *text, size_t length, span where)
     uint32_t code;
     if (text[0] == LEXICAL_REPLACED || utf8_decode(text, length, &code) == 0)
         return BAD;   /* the byte was reported before scanning (parse.c) */
-    builder_fault(&l->build, where, stranger_remedy(code), "unexpected character `%.*s` (U+%04X)", (int)length, text,
+    const char *remedy = stranger_remedy(code);
+    if (code == '.' && l->current == NAME)
+        remedy = "a constant of a reaction cannot be used by its label here: define it, `k2 = ...`, and use `k2` in both places";
+    builder_fault(&l->build, where, remedy, "unexpected character `%.*s` (U+%04X)", (int)length, text,
                   (unsigned)code);
     return BAD;
 }
