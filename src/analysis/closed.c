@@ -77,7 +77,7 @@ static lb_status shoot(closed_orbit *c, const lb_monitor *monitor, lb_error *err
 {
     orbit_options options = with(c, c->tolerance, monitor);
     shooting_clear(&c->shot);
-    lb_status status = shooting_close(&c->s, c->x, &c->period, c->scale, GOAL, &options, &c->shot, err);
+    lb_status status = shooting_close(&c->s, c->x, &c->period, c->scale, NULL, GOAL, &options, &c->shot, err);
     c->converged = status == LB_OK && c->shot.converged;
     return status;
 }
@@ -205,7 +205,7 @@ static lb_status second_path(const closed_orbit *c, double *x, const orbit_optio
     }
     *period = c->period;
     if (status == LB_OK)
-        status = shooting_close(&c->s, x, period, c->scale, 100 * GOAL, options, &shot, err);
+        status = shooting_close(&c->s, x, period, c->scale, NULL, 100 * GOAL, options, &shot, err);
     if (status != LB_OK || !shot.converged)
         *period = NAN;
     shooting_clear(&shot);
@@ -231,17 +231,17 @@ lb_status closed_confirm(const closed_orbit *c, const lb_monitor *monitor, doubl
 
 /* ---- Families ---------------------------------------------------------------------- */
 
-#define FAMILY_STEP 0.02          /* in amplitudes: the orbit closed next to it drifts back by the square of it */
-#define FAMILY_KEPT 0.5           /* of the step must be left after closing */
+#define FAMILY_STEP 0.1           /* in amplitudes */
 
-/* Close from a place `step` amplitudes along the neutral direction; kept: how much
- * of the step is left, 0 when it does not close. */
-static lb_status neighbour(const closed_orbit *c, const double *direction, double step,
-                           const lb_monitor *monitor, double *kept, lb_error *err)
+/* Is there a closed orbit through the place `step` amplitudes along the neutral
+ * direction?  The point is held there while it is closed: an orbit that stands
+ * alone then leaves a residual. */
+static lb_status closes_beside(const closed_orbit *c, const double *direction, double step,
+                               const lb_monitor *monitor, bool *closes, lb_error *err)
 {
     double *y = memory_array((size_t)(c->s.rank + c->s.n), sizeof *y), period = c->period;
     shooting shot = {.converged = false};
-    *kept = 0;
+    *closes = false;
     if (!y)
         return status_no_memory(err);
     double *x = y + c->s.rank;
@@ -250,12 +250,8 @@ static lb_status neighbour(const closed_orbit *c, const double *direction, doubl
         y[i] += step * direction[i] * c->scale[space_state(&c->s, i)];
     space_place(&c->s, y, x);
     orbit_options options = with(c, c->tolerance, monitor);
-    lb_status status = shooting_close(&c->s, x, &period, c->scale, CLOSED, &options, &shot, err);
-    if (status == LB_OK && shot.converged)
-        for (int i = 0; i < c->s.rank; i++) {
-            int state = space_state(&c->s, i);
-            *kept += (x[state] - c->x[state]) / c->scale[state] * direction[i] / step;
-        }
+    lb_status status = shooting_close(&c->s, x, &period, c->scale, direction, CLOSED, &options, &shot, err);
+    *closes = status == LB_OK && shot.converged;
     shooting_clear(&shot);
     memory_free(y);
     return status;
@@ -263,7 +259,7 @@ static lb_status neighbour(const closed_orbit *c, const double *direction, doubl
 
 lb_status closed_is_family(const closed_orbit *c, const lb_monitor *monitor, bool *is_family, lb_error *err)
 {
-    double nearest = INFINITY, kept = 0;
+    double nearest = INFINITY;
     *is_family = false;
     for (int i = 0; i < c->s.rank - 1; i++)
         nearest = fmin(nearest, hypot(c->multipliers[i].re - 1, c->multipliers[i].im));
@@ -272,12 +268,13 @@ lb_status closed_is_family(const closed_orbit *c, const lb_monitor *monitor, boo
     double *direction = memory_array((size_t)c->s.rank, sizeof *direction);
     if (!direction)
         return status_no_memory(err);
+    bool closes = false;
     lb_status status = shooting_neutral(&c->shot, c->s.rank, direction, err);
     if (status == LB_OK)
-        status = neighbour(c, direction, FAMILY_STEP, monitor, &kept, err);
-    if (status == LB_OK && kept > FAMILY_KEPT)
-        status = neighbour(c, direction, -FAMILY_STEP, monitor, &kept, err);
-    *is_family = status == LB_OK && kept > FAMILY_KEPT;
+        status = closes_beside(c, direction, FAMILY_STEP, monitor, &closes, err);
+    if (status == LB_OK && closes)
+        status = closes_beside(c, direction, -FAMILY_STEP, monitor, &closes, err);
+    *is_family = status == LB_OK && closes;
     memory_free(direction);
     return status;
 }

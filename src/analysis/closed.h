@@ -35,8 +35,8 @@ void closed_clear(closed_orbit *c);
  * tolerance, closed again.  NAN when that fails. */
 lb_status closed_confirm(const closed_orbit *c, const lb_monitor *monitor, double *difference, lb_error *err);
 
-/* Closed orbits on both sides of this one, at distances of a fiftieth of its
- * amplitude, that stay where they are put: it belongs to a family (a centre). */
+/* Closed orbits on both sides of this one, held at a distance of a tenth of its
+ * amplitude: it belongs to a family (a centre). */
 lb_status closed_is_family(const closed_orbit *c, const lb_monitor *monitor, bool *is_family, lb_error *err);
 
 /* A public record of the orbit. */

@@ -41,6 +41,8 @@ enum {
 #define AT_REST 1e-5
 #define STARTS_AT_REST 1e-10
 #define STILL 1e-6
+#define STAYS 100.0               /* growth times that rounding would need to leave a saddle, and then some */
+#define FAR_FUTURE 1e100
 #define RUNAWAY 1e60
 #define RUNAWAY_GROWTH 1e6        /* before the integration fails */
 #define STILL_GROWS 1.5           /* factor while the number of steps doubles, without a return */
@@ -68,6 +70,7 @@ typedef struct explorer {
     double last_largest;          /* magnitude when the steps had last doubled */
     size_t last_returns;
     int doublings;                /* in a row through which it grew */
+    double still_since;           /* time since which it stands still; infinite when it moves */
     double elapsed;               /* before the integrator's last start */
     bool is_sharp, is_done;
 } explorer;
@@ -129,7 +132,7 @@ static lb_status explorer_init(explorer *e, lb_evaluator *evaluator, const doubl
     e->max_steps = options->max_steps ? options->max_steps : DEFAULT_STEPS;
     e->epoch_length = FIRST_EPOCH;
     e->repeat = FIRST_REPEAT;
-    e->first_distance = INFINITY;
+    e->first_distance = e->still_since = INFINITY;
     lb_status status = space_init(&e->s, evaluator, x0, err);
     if (status == LB_OK)
         status = take_memory(e, err);
@@ -206,6 +209,27 @@ static lb_status report_orbit(explorer *e, const closed_orbit *orbit, double con
 
 /* ---- Rest and runaway -------------------------------------------------------------------- */
 
+/* Rest that Newton does not find, or that is not stable: a trajectory may stand still
+ * next to a saddle, but not for long unless it lies on the saddle's stable set (an
+ * invariant face, say). */
+static lb_status look_for_stillness(explorer *e, lb_error *err)
+{
+    const double *x = integrator_state(e->it);
+    bool is_still;
+    double rate, now = e->elapsed + integrator_time(e->it);
+    lb_status status = rest_is_still(&e->rest, &e->s, x, e->reach, now, STILL, &is_still, &rate, err);
+    if (status != LB_OK || !is_still) {
+        e->still_since = INFINITY;
+        return status;
+    }
+    if (rate * now <= 1)
+        return settle(e, x, "it comes to rest: as much time again would not move it", err);
+    if (rate * (now - e->still_since) > STAYS)
+        return settle(e, x, "it comes to rest at a steady state that is not stable, on its stable set", err);
+    e->still_since = fmin(e->still_since, now);
+    return LB_OK;
+}
+
 static lb_status look_for_rest(explorer *e, lb_error *err)
 {
     const double *x = integrator_state(e->it);
@@ -220,11 +244,7 @@ static lb_status look_for_rest(explorer *e, lb_error *err)
     } else if (!isfinite(e->first_distance)) {
         e->first_distance = r->distance;
     }
-    bool is_still;
-    status = rest_is_still(r, &e->s, x, e->reach, e->elapsed + integrator_time(e->it), STILL, &is_still, err);
-    if (status == LB_OK && is_still)
-        return settle(e, x, "it comes to rest: as much time again would not move it", err);
-    return status;
+    return look_for_stillness(e, err);
 }
 
 static lb_status look_at_start(explorer *e, lb_error *err)
@@ -414,7 +434,7 @@ static void end_epoch(explorer *e)
 /* One step and what follows from it. */
 static lb_status advance(explorer *e, lb_error *err)
 {
-    lb_status status = integrator_step(e->it, INFINITY, err);
+    lb_status status = integrator_step(e->it, FAR_FUTURE, err);
     if (status != LB_OK)
         return stop_at_failure(e, status);
     const double *x = integrator_state(e->it);
@@ -446,7 +466,8 @@ static lb_status explore(explorer *e, lb_error *err)
         if (status == LB_OK && !e->is_done && e->report->steps >= e->epoch_end)
             end_epoch(e);
         if (status == LB_OK && !e->is_done &&
-            (e->report->steps >= e->max_steps || e->report->returns >= e->max_returns))
+            (e->report->steps >= e->max_steps || e->report->returns >= e->max_returns ||
+             integrator_time(e->it) >= FAR_FUTURE))
             status = give_up(e, err);
     }
     return status;

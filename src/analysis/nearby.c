@@ -50,9 +50,12 @@ static lb_status pusher_init(pusher *p, lb_evaluator *evaluator, const double *x
     if (!(largest > 0))
         largest = largest_start > 0 ? largest_start : 1;
     const lb_network *net = evaluator_system(evaluator)->network;
-    for (int i = 0; i < n; i++)
-        p->size[i] = fmax(fabs(whole[i]), largest * (net->species[net->state_species[i]].is_signed ? SIGNED_FRACTION
-                                                                                                  : SMALL_FRACTION));
+    for (int i = 0; i < n; i++) {
+        bool is_signed = net->species[net->state_species[i]].is_signed;
+        p->size[i] = fmax(fabs(whole[i]), (is_signed ? SIGNED_FRACTION : SMALL_FRACTION) * largest);
+        if (is_signed)
+            p->size[i] = fmax(p->size[i], fabs(x0[i]));
+    }
     p->x = whole;
     return space_init(&p->s, evaluator, whole, err);
 }

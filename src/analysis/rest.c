@@ -110,7 +110,7 @@ lb_status rest_near(rest *r, const space *s, const double *x, const double *reac
 }
 
 lb_status rest_is_still(rest *r, const space *s, const double *x, const double *reach, double elapsed,
-                        double fraction, bool *is_still, lb_error *err)
+                        double fraction, bool *is_still, double *rate, lb_error *err)
 {
     size_t n = (size_t)s->n, rank = (size_t)s->rank;
     double *f = r->work + n * n + rank * rank;
@@ -126,8 +126,8 @@ lb_status rest_is_still(rest *r, const space *s, const double *x, const double *
         return status_no_memory(err);
     double *reduced = reduced_jacobian(r, s, x);
     lb_status status = linalg_eigenvalues(s->rank, reduced, values, NULL, err);
-    if (status == LB_OK)
-        *is_still = s->rank == 0 || !(values[0].re * elapsed > 1);
+    *is_still = status == LB_OK;
+    *rate = status == LB_OK && s->rank > 0 ? values[0].re : 0;
     memory_free(values);
     return status;
 }

@@ -23,9 +23,10 @@ void rest_clear(rest *r);
  * below `close`; it is undecided otherwise. */
 lb_status rest_near(rest *r, const space *s, const double *x, const double *reach, double close, lb_error *err);
 
-/* As much time again as `elapsed` would move no core species by more than
- * `fraction` of its reach, and no eigenvalue at x says that it is leaving. */
+/* is_still: as much time again as `elapsed` would move no core species by more than
+ * `fraction` of its reach.  rate: the largest real part of the eigenvalues at x,
+ * filled where is_still. */
 lb_status rest_is_still(rest *r, const space *s, const double *x, const double *reach, double elapsed,
-                        double fraction, bool *is_still, lb_error *err);
+                        double fraction, bool *is_still, double *rate, lb_error *err);
 
 #endif

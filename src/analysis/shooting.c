@@ -38,12 +38,13 @@ typedef struct trial {
 typedef struct worker {
     const space *s;
     const double *scale;          /* [n] */
+    const double *hold;           /* [rank] direction that is barred, or NULL */
     integrator *it;
     double *block;                /* all arrays below */
     trial now, next;
     double *rate;                 /* [n] */
-    double *matrix;               /* [(rank+1)^2] */
-    double *step;                 /* [rank+1] */
+    double *matrix;               /* [(rank+2)*(rank+1)] */
+    double *step;                 /* [rank+2] */
     double *y;                    /* [rank] */
 } worker;
 
@@ -70,15 +71,15 @@ static lb_status worker_init(worker *w, const space *s, const double *scale, con
     w->s = s;
     w->scale = scale;
     size_t n = (size_t)s->n, rank = (size_t)s->rank, m = rank + 1;
-    w->block = memory_array(2 * (2 * n + rank * rank + 2 * rank) + n + m * m + m + rank, sizeof(double));
+    w->block = memory_array(2 * (2 * n + rank * rank + 2 * rank) + n + (m + 1) * m + m + 1 + rank, sizeof(double));
     if (!w->block)
         return status_no_memory(err);
     double *pool = w->block;
     trial_place(&w->now, &pool, n, rank);
     trial_place(&w->next, &pool, n, rank);
     w->rate = take(&pool, n);
-    w->matrix = take(&pool, m * m);
-    w->step = take(&pool, m);
+    w->matrix = take(&pool, (m + 1) * m);
+    w->step = take(&pool, m + 1);
     w->y = take(&pool, rank);
     integrator_options how = {.tolerance = options->tolerance, .method = options->method,
                               .max_steps = options->max_steps, .tangents = true, .allow_negative = true,
@@ -131,7 +132,7 @@ static lb_status newton_step(worker *w, lb_error *err)
 {
     const space *s = w->s;
     const trial *t = &w->now;
-    int rank = s->rank, m = rank + 1, found;
+    int rank = s->rank, rows = rank + (w->hold ? 2 : 1), found;
     double length = 0;
     for (int i = 0; i < rank; i++)
         length = hypot(length, t->flow[i]);
@@ -139,17 +140,19 @@ static lb_status newton_step(worker *w, lb_error *err)
         return LB_E_NUMERIC;
     for (int j = 0; j < rank; j++) {
         for (int i = 0; i < rank; i++)
-            w->matrix[i + j * m] = t->map[i + j * rank] - (i == j);
-        w->matrix[rank + j * m] = t->flow[j] / length;
+            w->matrix[i + j * rows] = t->map[i + j * rank] - (i == j);
+        w->matrix[rank + j * rows] = t->flow[j] / length;
+        if (w->hold)
+            w->matrix[rank + 1 + j * rows] = w->hold[j];
     }
     for (int i = 0; i < rank; i++) {
         int state = space_state(s, i);
-        w->matrix[i + rank * m] = t->end_flow[i] * t->period;
+        w->matrix[i + rank * rows] = t->end_flow[i] * t->period;
         w->step[i] = (t->x[state] - t->end[state]) / w->scale[state];
     }
-    w->matrix[rank + rank * m] = 0;
-    w->step[rank] = 0;
-    return linalg_least_squares(m, m, w->matrix, w->step, RANK_CONDITION, &found, err);
+    for (int i = rank; i < rows; i++)
+        w->matrix[i + rank * rows] = w->step[i] = 0;
+    return linalg_least_squares(rows, rank + 1, w->matrix, w->step, RANK_CONDITION, &found, err);
 }
 
 /* The trial `next` at a fraction of the step from `now`. */
@@ -215,12 +218,13 @@ static lb_status keep(const worker *w, shooting *out, lb_error *err)
     return LB_OK;
 }
 
-lb_status shooting_close(const space *s, double *x, double *period, const double *scale, double goal,
-                         const orbit_options *options, shooting *out, lb_error *err)
+lb_status shooting_close(const space *s, double *x, double *period, const double *scale, const double *hold,
+                         double goal, const orbit_options *options, shooting *out, lb_error *err)
 {
     worker w;
     memset(out, 0, sizeof *out);
     lb_status status = worker_init(&w, s, scale, options, err);
+    w.hold = hold;
     if (status == LB_OK) {
         memcpy(w.now.x, x, (size_t)s->n * sizeof *x);
         w.now.period = *period;

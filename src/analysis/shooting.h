@@ -18,12 +18,13 @@ typedef struct shooting {
 /* Close the orbit near x [n] with a period near *period; scale [n] from
  * orbit_scale.  On convergence x and *period are the orbit's, otherwise they are
  * unchanged.  The step is the least-norm one, so that in a family of closed orbits
- * the one nearest to x is found.  The residual is driven down as far as the
+ * the one nearest to x is found; with hold [rank, scaled coordinates; else NULL] the
+ * point does not move along that direction.  The residual is driven down as far as the
  * tolerance of the integration lets it go; `goal` is what counts as closed.
  * Not converged is a result; errors are LB_E_NOMEM and LB_E_STOPPED.  out is
  * cleared by the caller, also after an error. */
-lb_status shooting_close(const space *s, double *x, double *period, const double *scale, double goal,
-                         const orbit_options *options, shooting *out, lb_error *err);
+lb_status shooting_close(const space *s, double *x, double *period, const double *scale, const double *hold,
+                         double goal, const orbit_options *options, shooting *out, lb_error *err);
 void shooting_clear(shooting *out);
 
 /* Non-trivial multipliers [rank-1], largest first: eigenvalues of the map on the
