@@ -119,7 +119,6 @@ static char *rate_text(const lb_network *net, const network_reaction *reaction)
         network_write(net, step->rate, false, &text);
         buffer_append(&text, in_parentheses ? ")" : "");
     }
-    buffer_append(&text, "");
     return buffer_take(&text);
 }
 
