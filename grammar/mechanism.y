@@ -1,7 +1,7 @@
 /* Tokens to syntax tree.
  *
  * LALR(1) without a conflict.  The grammar looks nothing up and depends on no
- * state: an action is one call of a constructor (src/text/syntax.c).  Values
+ * state: an action is one call of a constructor (src/text/builder.h).  Values
  * live in an arena, so none needs a destructor.  A fault skips to the end of
  * its statement, and what was read of it is kept apart (syntax_broken); what counts as that end is the lexer's business
  * (src/text/lexical.c), as is the wording of the fault (src/text/complaint.c).

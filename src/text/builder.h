@@ -35,6 +35,9 @@ const char *builder_text(builder *b, const char *text, size_t length);
 
 /* From the start of a to the end of b, as far as b is on the same line. */
 span span_join(span a, span b);
+bool span_touches(span a, span b);   /* b follows a without a blank */
+
+/* ---- syntax_expression.c ---- */
 
 syntax_expression *syntax_number_node(builder *b, syntax_number number, span where);
 syntax_expression *syntax_leaf(builder *b, syntax_expression_kind kind, const char *text, span where);
@@ -51,6 +54,8 @@ syntax_range *syntax_range_factor(builder *b, syntax_expression *factor, span wh
 syntax_argument *syntax_argument_new(builder *b, const char *name, span name_where, syntax_expression *value,
                                      syntax_range *range);
 syntax_arguments syntax_arguments_add(syntax_arguments list, syntax_argument *argument);
+
+/* ---- syntax.c ---- */
 
 syntax_name *syntax_name_new(builder *b, const char *text, bool is_quoted, span where);
 syntax_names syntax_names_add(syntax_names list, syntax_name *name);

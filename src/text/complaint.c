@@ -10,6 +10,7 @@
 #include <string.h>
 
 #include "parser.h"
+#include "text/outlook.h"
 
 enum { MESSAGE = 400, EXCERPT = 40 };
 
@@ -198,7 +199,7 @@ static bool odd_bracket(complaint *c)
     if (c->l->first != HELD || c->l->previous != HELD || !expects(c, EQUALS))
         return false;
     say_expected(c);
-    if (lexical_is_reaction(c->l)) {
+    if (outlook_has_arrow(lexical_rest(c->l))) {
         ADVISE(c, "in a reaction write species without brackets, and a label in parentheses");
         return true;
     }
@@ -257,7 +258,8 @@ static bool quoted_definition(complaint *c)
 
 static bool definition_for_reaction(complaint *c)
 {
-    if (c->got != COMMA || c->l->first != NAME || c->l->arrows || c->l->level || !lexical_is_setting(lexical_rest(c->l) + strspn(lexical_rest(c->l), " \t")))
+    if (c->got != COMMA || c->l->first != NAME || c->l->arrows || c->l->level
+        || !outlook_is_setting(outlook_skip_blanks(lexical_rest(c->l))))
         return false;
     SAY(c, "a definition has no settings");
     ADVISE(c, "if this is a reaction, write `->` for `=`");

@@ -18,6 +18,7 @@
 #include <string.h>
 
 #include "parser.h"
+#include "text/outlook.h"
 #include "text/utf8.h"
 
 /* ---- Places ---------------------------------------------------------------- */
@@ -50,99 +51,12 @@ const char *lexical_rest(const lexical *l)
     return source_text(l->source) + (l->offset < length ? l->offset : length);
 }
 
-/* ---- What a line looks like ------------------------------------------------ */
-
-static bool is_word_byte(char c)
+/* Whether the line that starts at an offset reads like a statement of its own,
+ * given the last token of the line above. */
+static bool is_statement(const lexical *l, size_t offset, int above)
 {
-    return (c >= 'a' && c <= 'z') || (c >= 'A' && c <= 'Z') || (c >= '0' && c <= '9') || c == '_'
-        || (unsigned char)c >= 0x80;
-}
-
-/* The text is terminated and each of these stops at a line's end. */
-static size_t word_length(const char *text)
-{
-    const char *at = text;
-    while (is_word_byte(*at))
-        at++;
-    return (size_t)(at - text);
-}
-
-static const char *skip_blanks(const char *text)
-{
-    return text + strspn(text, " \t");
-}
-
-static bool is_equals(const char *at)
-{
-    at = skip_blanks(at);
-    return at[0] == '=' && at[1] != '>' && at[1] != '=';
-}
-
-static bool is_word(const char *word, size_t length, const char *of[], size_t count)
-{
-    for (size_t i = 0; i < count; i++)
-        if (strlen(of[i]) == length && memcmp(word, of[i], length) == 0)
-            return true;
-    return false;
-}
-
-bool lexical_is_setting(const char *text)
-{
-    static const char *settings[] = {"k", "kf", "kr", "K", "v"};
-    size_t length = word_length(text);
-    return is_word(text, length, settings, sizeof settings / sizeof settings[0]) && is_equals(text + length);
-}
-
-/* Before the line's end, a comment or a `;`. */
-static bool has_arrow(const char *at)
-{
-    for (bool is_quoted = false; *at && *at != '\n' && *at != '\r'; at++) {
-        if (*at == '"')
-            is_quoted = !is_quoted;
-        if (is_quoted)
-            continue;
-        if (*at == '#' || *at == ';')
-            return false;
-        if (at[1] == '>' && (*at == '-' || *at == '='))
-            return true;
-        if (strncmp(at, "\xE2\x86\x92", 3) == 0 || strncmp(at, "\xE2\x87\x8C", 3) == 0)
-            return true;
-    }
-    return false;
-}
-
-/* `[X] =`, `[X]0 =` or `[X]in =`. */
-static bool is_bracket_definition(const char *at)
-{
-    at += strcspn(at, "]\r\n");
-    return *at == ']' && is_equals(at + 1 + word_length(at + 1));
-}
-
-/* A word that opens a statement, with what it opens behind it. */
-static bool is_opening(const char *at, size_t length)
-{
-    static const char *openings[] = {"title", "units", "retained", "signed", "formula"};
-    const char *next = skip_blanks(at + length);
-    return is_word(at, length, openings, sizeof openings / sizeof openings[0]) && next > at + length
-        && (is_word_byte(*next) || *next == '"');
-}
-
-bool lexical_is_statement(const lexical *l, size_t offset, int above)
-{
-    if (offset >= source_length(l->source))
-        return false;
-    const char *at = skip_blanks(source_text(l->source) + offset);
-    size_t length = word_length(at);
-    if (*at == '[' && is_bracket_definition(at))
-        return true;
-    if (length > 0 && is_opening(at, length))
-        return true;
-    if (length > 0 && is_equals(at + length)) {
-        /* `A = ...` may be an argument, `k = ...` a setting. */
-        bool is_listed = above == COMMA || above == OPEN;
-        return !(is_listed && (l->level > 0 || lexical_is_setting(at)));
-    }
-    return has_arrow(at);
+    return offset < source_length(l->source)
+        && outlook_is_statement(source_text(l->source) + offset, above == COMMA || above == OPEN, l->level > 0);
 }
 
 /* An arrow that was read on the line as part of the statement shows that the
@@ -150,7 +64,7 @@ bool lexical_is_statement(const lexical *l, size_t offset, int above)
 bool lexical_is_swallowed(const lexical *l)
 {
     bool is_arrow = l->current == ARROW || l->current == REVERSIBLE;
-    return l->above && l->arrows - l->arrows_above - is_arrow == 0 && lexical_is_statement(l, l->where_offset, l->above);
+    return l->above && l->arrows - l->arrows_above - is_arrow == 0 && is_statement(l, l->where_offset, l->above);
 }
 
 /* ---- Tokens ---------------------------------------------------------------- */
@@ -258,7 +172,7 @@ bool lexical_newline(lexical *l, span *where)
         return false;
     if (goes_on(l->current)) {
         bool must_part = l->build.is_mute || l->formula == 3;
-        if (!must_part || !lexical_is_statement(l, l->offset, l->current))
+        if (!must_part || !is_statement(l, l->offset, l->current))
             return false;
     }
     end_statement(l, where);
@@ -270,7 +184,7 @@ bool lexical_newline(lexical *l, span *where)
 /* A keyword is a name after all when the line reads `title = 3` or `title + X ->`. */
 static bool is_used_as_name(const lexical *l)
 {
-    const char *rest = skip_blanks(lexical_rest(l));
+    const char *rest = outlook_skip_blanks(lexical_rest(l));
     return (*rest && strchr("=+-<", *rest)) || strncmp(rest, "\xE2\x86", 2) == 0 || strncmp(rest, "\xE2\x87", 2) == 0;
 }
 
@@ -294,7 +208,7 @@ bool lexical_misses_comma(const lexical *l)
 {
     bool is_behind_side = l->current == NAME || l->current == QUOTED || l->current == NUMBER || l->current == CLOSE;
     return l->arrows > 0 && l->level == 0 && is_behind_side && !l->build.is_mute
-        && lexical_is_setting(source_text(l->source) + l->token_offset);
+        && outlook_is_setting(source_text(l->source) + l->token_offset);
 }
 
 int lexical_number(lexical *l, const char *text, size_t length, span where, syntax_number *value)
@@ -350,7 +264,7 @@ int lexical_dash_number(lexical *l, const char *text, size_t length, span where,
 
 syntax_text lexical_bracket(lexical *l, const char *text, size_t length, span where)
 {
-    const char *end = memchr(text, ']', length), *start = skip_blanks(text + 1);
+    const char *end = memchr(text, ']', length), *start = outlook_skip_blanks(text + 1);
     syntax_text name = {NULL, *start == '"'};
     if (name.is_quoted) {
         /* a quoted name may hold a bracket */
@@ -372,9 +286,9 @@ int lexical_semicolon(lexical *l, span where)
 {
     if (l->build.is_mute)
         return 0;
-    const char *rest = skip_blanks(lexical_rest(l));
+    const char *rest = outlook_skip_blanks(lexical_rest(l));
     bool is_last = !*rest || strchr("\r\n#", *rest);
-    bool is_comma = lexical_is_setting(rest);
+    bool is_comma = outlook_is_setting(rest);
     builder_fault(&l->build, where, is_last ? "leave it out: the line's end ends a statement"
                   : is_comma ? "write `,`" : "write each statement on its own line",
                   "`;` does not separate anything");
@@ -422,11 +336,6 @@ int lexical_stranger(lexical *l, const char *text, size_t length, span where)
     builder_fault(&l->build, where, remedy, "unexpected character `%.*s` (U+%04X)", (int)length, text,
                   (unsigned)code);
     return BAD;
-}
-
-bool lexical_is_reaction(const lexical *l)
-{
-    return has_arrow(lexical_rest(l));
 }
 
 int lexical_colon(lexical *l, span where)

@@ -86,7 +86,6 @@ int  lexical_accept(lexical *l, int kind, span where);   /* note a token; return
 bool lexical_newline(lexical *l, span *where);           /* true: the statement ends here */
 int  lexical_word(lexical *l, const char *text, bool is_first);  /* NAME or a keyword */
 bool lexical_misses_comma(const lexical *l); /* `A -> B k = 1`: before k */
-bool lexical_is_reaction(const lexical *l);              /* an arrow follows on the line */
 int  lexical_number(lexical *l, const char *text, size_t length, span where, syntax_number *value);
 /* `1,5` and `1e` with a pasted minus: faults, read as what was meant. */
 int  lexical_comma_number(lexical *l, const char *text, size_t length, span where, syntax_number *value);
@@ -103,10 +102,5 @@ const char *lexical_rest(const lexical *l);
 /* Whether the last token stands on a line that the statement went on to only
  * because the line above ends in, say, a comma. */
 bool lexical_is_swallowed(const lexical *l);
-/* Whether the line that starts at an offset reads like a statement of its own,
- * given the last token of the line above. */
-bool lexical_is_statement(const lexical *l, size_t offset, int above);
-/* Whether a setting of a reaction starts the text: `k =`, `kf =`, `kr =`, `K =` or `v =`. */
-bool lexical_is_setting(const char *text);
 
 #endif
