@@ -153,11 +153,12 @@ const char *lower_near(lower *l, const names *table, const char *word, const cha
 /* ---- lower_units.c ----------------------------------------------------------- */
 
 void lower_units(lower *l);
-/* A unit as an expression: NAME, POWER of one, products and quotients of such, groups.
- * False when it is something else; reports nothing. */
 bool lower_is_unit_name(const lower *l, const char *name);
-bool lower_unit_factor(const lower *l, const syntax_expression *node, unit *out); /* NAME or NAME^number */
-const char *lower_dimension_text(lower *l, const dimension *d);  /* "M/s"; "no unit" for none */
+/* NAME or NAME^number with the name of a unit; false, silently, for anything else. */
+bool lower_unit_factor(const lower *l, const syntax_expression *node, unit *out);
+const char *lower_dimension_text(lower *l, const dimension *d);  /* "M/s"; "a pure number" for none */
+/* What to write for a name that is no unit: `cm^3` for `cm3`, `uM` for `µM`, `s` for `sec`, the nearest one. */
+const char *lower_unit_remedy(lower *l, const char *name);
 
 /* ---- lower_names.c ----------------------------------------------------------- */
 

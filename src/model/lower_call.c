@@ -94,7 +94,7 @@ static bool match(lower *l, const struct function *f, const syntax_expression *n
     bool is_good = true;
     int i = 0;
     const lower_value *found[MOST_ARGUMENTS] = {NULL};
-    for (const syntax_argument *a = node->first; a; a = a->next, i++) {
+    for (const syntax_argument *a = node->first; a && is_good; a = a->next, i++) {
         int place = match_argument(l, f, a, found);
         if (place >= 0)
             found[place] = argument[place] = &values[i];

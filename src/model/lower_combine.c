@@ -6,23 +6,6 @@
 
 /* ---- A unit behind a number ------------------------------------------------------------------ */
 
-/* What to write for a name that is no unit: `cm^3` for `cm3`, `uM` for `µM`, the nearest one. */
-static const char *unit_remedy(lower *l, const char *text)
-{
-    size_t count, letters = strlen(text);
-    const char *const *known = unit_names(&count);
-    unit u;
-    while (letters > 0 && text[letters - 1] >= '0' && text[letters - 1] <= '9')
-        letters--;
-    if (text[letters] && unit_find(lower_text(l, "%.*s", (int)letters, text), &u))
-        return lower_text(l, "write `%.*s^%s`", (int)letters, text, text + letters);
-    if (strncmp(text, "\xC2\xB5", 2) == 0 || strncmp(text, "\xCE\xBC", 2) == 0)  /* micro sign, Greek mu */
-        return lower_text(l, "write `u%s`", text + 2);
-    const char *near = lb_nearest(text, known, count);
-    return near ? lower_text(l, "did you mean `%s`?", near)
-                : "the units are M mM uM nM pM, mol molecule, L mL, m dm cm, s ms min h, K, J kJ cal kcal";
-}
-
 static void fault_product(lower *l, const syntax_expression *node, const char *right)
 {
     const syntax_expression *left = node->left;
@@ -45,7 +28,7 @@ static void fault_juxtaposed(lower *l, const syntax_expression *node, bool is_nu
     else if (l->net->units.none || is_known || (!is_number && !is_unit))
         fault_product(l, node, text);
     else if (!is_unit)
-        diagnostics_fault(l->list, name->where, unit_remedy(l, text), "there is no unit `%s`", text);
+        diagnostics_fault(l->list, name->where, lower_unit_remedy(l, text), "there is no unit `%s`", text);
     else if (!is_number)
         diagnostics_fault(l->list, node->where, lower_text(l, "multiply by the unit: write `*` before `%s`", text),
                           "a unit follows a plain number");

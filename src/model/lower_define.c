@@ -90,7 +90,7 @@ static void evaluate(lower *l, lower_definition *d)
     context.what = d->kind == DEFINE_CONSTANT ? d->name : demands[d->kind].what;
     if (d->plain >= 0)
         d->value = value_of_plain(l, d->plain, l->plains[d->plain].where);
-    else if (node && !d->is_rejected)
+    else if (node && !d->is_rejected && !d->statement->is_broken)
         d->value = lower_evaluate(l, node, &context);
     if (d->kind != DEFINE_CONSTANT)
         check_demand(l, d);

@@ -64,6 +64,33 @@ bool lower_unit_factor(const lower *l, const syntax_expression *node, unit *out)
     return unit_power(out, (int)power.num, (int)power.den, out);
 }
 
+/* What others call them. */
+static const char *const aliases[][2] = {
+    {"sec", "s"},      {"second", "s"}, {"seconds", "s"}, {"msec", "ms"},   {"minute", "min"}, {"minutes", "min"},
+    {"hr", "h"},       {"hour", "h"},   {"hours", "h"},   {"l", "L"},       {"ml", "mL"},      {"liter", "L"},
+    {"litre", "L"},    {"molar", "M"},  {"mole", "mol"},  {"moles", "mol"}, {"kelvin", "K"},   {"joule", "J"},
+    {"molecules", "molecule"}, {"molec", "molecule"},     {"kj", "kJ"},     {"Kcal", "kcal"},
+};
+
+const char *lower_unit_remedy(lower *l, const char *name)
+{
+    size_t count, letters = strlen(name);
+    const char *const *known = unit_names(&count);
+    unit u;
+    while (letters > 0 && name[letters - 1] >= '0' && name[letters - 1] <= '9')
+        letters--;
+    if (name[letters] && unit_find(lower_text(l, "%.*s", (int)letters, name), &u))
+        return lower_text(l, "write `%.*s^%s`", (int)letters, name, name + letters);
+    if (strncmp(name, "\xC2\xB5", 2) == 0 || strncmp(name, "\xCE\xBC", 2) == 0)  /* micro sign, Greek mu */
+        return lower_text(l, "write `u%s`", name + 2);
+    for (size_t i = 0; i < sizeof aliases / sizeof *aliases; i++)
+        if (strcmp(aliases[i][0], name) == 0)
+            return lower_text(l, "write `%s`", aliases[i][1]);
+    const char *near = lb_nearest(name, known, count);
+    return near ? lower_text(l, "did you mean `%s`?", near)
+                : "the units are M mM uM nM pM, mol molecule, L mL, m dm cm, s ms min h, K, J kJ cal kcal";
+}
+
 const char *lower_dimension_text(lower *l, const dimension *d)
 {
     if (dimension_is_none(d))
@@ -113,16 +140,11 @@ static const char remedy[] = "write for example `units M s`, `units mM min`, `un
 static void fault_wrong(lower *l, const syntax_expression *node)
 {
     const syntax_expression *name = node->kind == SYNTAX_POWER ? node->left : node;
-    size_t count;
-    const char *const *known = unit_names(&count);
     unit u;
-    if (name->kind == SYNTAX_NAME && !unit_find(name->text, &u)) {
-        const char *near = lb_nearest(name->text, known, count);
-        diagnostics_fault(l->list, name->where, near ? lower_text(l, "did you mean `%s`?", near) : remedy,
-                          "there is no unit `%s`", name->text);
-    } else {
+    if (name->kind == SYNTAX_NAME && !unit_find(name->text, &u))
+        diagnostics_fault(l->list, name->where, lower_unit_remedy(l, name->text), "there is no unit `%s`", name->text);
+    else
         diagnostics_fault(l->list, node->where, remedy, "`units` takes a unit of concentration and a unit of time");
-    }
 }
 
 /* The unit of concentration: all factors but the last. */
