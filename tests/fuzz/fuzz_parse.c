@@ -105,18 +105,10 @@ int LLVMFuzzerTestOneInput(const uint8_t *data, size_t size)
 int main(int count, char **arguments)
 {
     FILE *in = count > 1 ? fopen(arguments[1], "rb") : stdin;
+    static uint8_t data[1 << 24];
     if (!in)
         return 1;
-    uint8_t *data = NULL;
-    size_t size = 0, room = 0, got = 1;
-    while (got) {
-        if (size == room && !(data = realloc(data, room = 2 * room + 65536)))
-            return 1;
-        got = fread(data + size, 1, room - size, in);
-        size += got;
-    }
-    LLVMFuzzerTestOneInput(data, size);
-    free(data);
+    LLVMFuzzerTestOneInput(data, fread(data, 1, sizeof data, in));
     return 0;
 }
 #endif
