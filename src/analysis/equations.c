@@ -197,7 +197,7 @@ static bool is_positive_power_law(const equations *eq, int step)
 }
 
 /* A balance takes the ratio form when every step in it is a power law of
- * positive rate; then one that has only gains or only losses has no root. */
+ * positive rate, some of them gains and some losses. */
 static void choose_forms(equations *eq)
 {
     probe_point(eq->system, 0, eq->x);
@@ -212,8 +212,6 @@ static void choose_forms(equations *eq)
             has_loss = has_loss || eq->term[t].coefficient < 0;
         }
         eq->is_ratio[i] = is_power && has_gain && has_loss;
-        if (is_power && has_gain != has_loss)
-            eq->is_unbalanced = true;
         if (!eq->is_ratio[i] && eq->start[i] < eq->start[i + 1])
             eq->is_general = true;
     }

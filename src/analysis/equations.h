@@ -47,7 +47,6 @@ typedef struct equations {
     bool *is_ratio;                 /* [count] balance of power laws: ln(gain/loss), else (gain - loss)/size */
     bool is_general;                /* some balance is not of that form: the Jacobian is needed */
     bool is_inconsistent;           /* a total cannot be met on this face */
-    bool is_unbalanced;             /* a species is only made or only used at positive rates: no root */
     double *size;                   /* [count] scale of each plain balance, of the last equations_matrix */
     double *law_size;               /* [law_count] the same for laws with signs */
     double *x;                      /* [n] state in hand: zero on the face, x0 for species set aside */

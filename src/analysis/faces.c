@@ -4,7 +4,8 @@
  * one of them: then they stay zero once they all are.  From each species, a step
  * that violates this is repaired by adding one of the species that it needs, in
  * every way; a step that needs none closes the branch.  Sets that contain another
- * are thrown away.  What a step needs is found by evaluating its rate with each
+ * are thrown away.  Where some step is known to be dead in every steady state, only
+ * the siphons that kill it are wanted.  What a step needs is found by evaluating its rate with each
  * species zero in turn, so general rate laws count as well as mass action.
  *
  * Source: D. Angeli, P. De Leenheer and E. D. Sontag, Math. Biosci. 210 (2007)
@@ -13,7 +14,6 @@
 
 #include <string.h>
 
-#include "analysis/equations.h"
 #include "base/memory.h"
 #include "base/status.h"
 
@@ -22,7 +22,7 @@ enum { MOST_NODES = 20000, MOST_FACES = 400 };
 struct search {
     const lb_system *system;
     const bool *is_outside;     /* [n] zero already */
-    bool *is_alive;             /* [steps] */
+    const bool *is_alive;       /* [steps] */
     int *need_start, *need;     /* states that each step needs: [steps+1], [need_start[steps]] */
     bool *is_in;                /* [n] the set in hand */
     faces *found;               /* without the outside */
@@ -222,20 +222,15 @@ static lb_status branch(struct search *s)
     return status;
 }
 
-static lb_status search_all(struct search *s)
+static lb_status search_from(struct search *s, int state)
 {
-    lb_status status = LB_OK;
-    for (int i = 0; status == LB_OK && i < s->system->n; i++) {
-        if (!may_vanish(s, i))
-            continue;
-        s->is_in[i] = true;
-        status = branch(s);
-        s->is_in[i] = false;
-    }
+    s->is_in[state] = true;
+    lb_status status = branch(s);
+    s->is_in[state] = false;
     return status;
 }
 
-static lb_status add_joined(const struct search *s, faces *out)
+static lb_status add_joined(struct search *s, faces *out)
 {
     lb_status status = LB_OK;
     for (int i = 0; status == LB_OK && i < s->found->count; i++) {
@@ -243,34 +238,61 @@ static lb_status add_joined(const struct search *s, faces *out)
             s->is_in[j] = s->found->is_zero[i][j] || s->is_outside[j];
         status = faces_add(out, s->is_in, s->err);
     }
+    memset(s->is_in, 0, (size_t)s->system->n * sizeof *s->is_in);
     return status;
 }
 
-lb_status faces_find(lb_evaluator *evaluator, const bool *is_zero, faces *out, lb_error *err)
+/* All minimal siphons. */
+static lb_status search_all(struct search *s, faces *out)
 {
-    const lb_system *system = evaluator_system(evaluator);
+    lb_status status = LB_OK;
+    for (int i = 0; status == LB_OK && i < s->system->n; i++)
+        if (may_vanish(s, i))
+            status = search_from(s, i);
+    return status == LB_OK ? add_joined(s, out) : status;
+}
+
+/* Siphons that kill a step: for each species that it needs the minimal ones among
+ * those that have that species. */
+static lb_status search_killers(struct search *s, int step, faces *out)
+{
+    lb_status status = LB_OK;
+    for (int p = s->need_start[step]; status == LB_OK && p < s->need_start[step + 1]; p++) {
+        faces_clear(s->found);
+        status = search_from(s, s->need[p]);
+        if (status == LB_OK)
+            status = add_joined(s, out);
+    }
+    return status;
+}
+
+/* The step with the fewest ways to kill it. */
+static int easiest_step(const struct search *s, const bool *must_vanish)
+{
+    int best = -1;
+    for (int step = 0; step < s->system->steps; step++)
+        if (must_vanish[step] && (best < 0 || s->need_start[step + 1] - s->need_start[step] <
+                                                  s->need_start[best + 1] - s->need_start[best]))
+            best = step;
+    return best;
+}
+
+lb_status faces_find(equations *eq, const bool *is_zero, const bool *must_vanish, faces *out, lb_error *err)
+{
+    const lb_system *system = eq->system;
     faces found;
     faces_init(&found, system->n);
-    struct search s = {.system = system, .is_outside = is_zero, .found = &found, .err = err};
-    s.is_alive = memory_array((size_t)system->steps, sizeof *s.is_alive);
+    struct search s = {.system = system, .is_outside = is_zero, .is_alive = eq->is_alive, .found = &found, .err = err};
     s.need_start = memory_zeroed((size_t)system->steps + 1, sizeof *s.need_start);
     s.is_in = memory_zeroed((size_t)system->n, sizeof *s.is_in);
-    lb_status status = LB_OK;
-    if (!s.is_alive || !s.need_start || !s.is_in)
-        status = status_no_memory(err);
+    lb_status status = s.need_start && s.is_in ? find_needs(&s, eq->evaluator) : status_no_memory(err);
+    int step = status == LB_OK && must_vanish ? easiest_step(&s, must_vanish) : -1;
     if (status == LB_OK)
-        status = equations_find_alive(evaluator, is_zero, s.is_alive, err);
-    if (status == LB_OK)
-        status = find_needs(&s, evaluator);
-    if (status == LB_OK)
-        status = search_all(&s);
-    if (status == LB_OK)
-        status = add_joined(&s, out);
+        status = step >= 0 ? search_killers(&s, step, out) : search_all(&s, out);
     out->is_complete = out->is_complete && found.is_complete;
     faces_clear(&found);
     memory_free(s.need);
     memory_free(s.is_in);
     memory_free(s.need_start);
-    memory_free(s.is_alive);
     return status;
 }

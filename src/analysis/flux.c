@@ -3,7 +3,9 @@
  * v = 1 + w with w >= 0 must satisfy N v = 0; so the distance from -N 1 to the cone
  * of the columns of N is found, and is zero when there is such a v.  A rate of
  * unknown sign gives its column with both signs.  Rows are species, columns are
- * scaled to length one.
+ * scaled to length one.  When the distance is not zero, its direction d has
+ * d N <= 0 in every column, so d N v = 0 makes each v zero whose column has d N < 0
+ * (Farkas' lemma).
  *
  * Source: C. L. Lawson and R. J. Hanson, Solving Least Squares Problems (1974),
  * chapter 23. */
@@ -187,13 +189,45 @@ static lb_status solve_cone(struct cone *c, bool *is_possible, lb_error *err)
     return LB_OK;
 }
 
-lb_status flux_is_possible(const equations *eq, bool *is_possible, lb_error *err)
+/* Steps whose column points away from what is missing. */
+static void mark_steps(const struct cone *c, const equations *eq, const int *column, bool *must_vanish)
+{
+    double length = 0;
+    for (int i = 0; i < c->rows; i++)
+        length = hypot(length, c->rest[i]);
+    for (int s = 0; s < eq->system->steps; s++) {
+        double along = 0;
+        for (int i = 0; column[s] >= 0 && i < c->rows; i++)
+            along += c->rest[i] * c->A[i + (size_t)column[s] * (size_t)c->rows];
+        must_vanish[s] = along < -1e-6 * length;
+    }
+}
+
+/* A species that is only made, or only used, at positive rates needs no search. */
+static bool mark_unbalanced(const equations *eq, bool *must_vanish)
+{
+    bool is_found = false;
+    for (int i = 0; i < eq->count; i++) {
+        bool is_power = eq->start[i] < eq->start[i + 1], has_gain = false, has_loss = false;
+        for (int t = eq->start[i]; t < eq->start[i + 1]; t++) {
+            is_power = is_power && eq->is_positive[eq->term[t].step];
+            has_gain = has_gain || eq->term[t].coefficient > 0;
+            has_loss = has_loss || eq->term[t].coefficient < 0;
+        }
+        for (int t = eq->start[i]; t < eq->start[i + 1] && is_power && has_gain != has_loss; t++)
+            is_found = must_vanish[eq->term[t].step] = true;
+    }
+    return is_found;
+}
+
+lb_status flux_check(const equations *eq, bool *is_possible, bool *must_vanish, lb_error *err)
 {
     struct cone c = {0};
-    *is_possible = true;
-    int *column = memory_array(2 * (size_t)eq->system->steps, sizeof *column);
+    memset(must_vanish, 0, (size_t)eq->system->steps * sizeof *must_vanish);
+    *is_possible = !mark_unbalanced(eq, must_vanish);
+    int *column = *is_possible ? memory_array(2 * (size_t)eq->system->steps, sizeof *column) : NULL;
     if (!column)
-        return status_no_memory(err);
+        return *is_possible ? status_no_memory(err) : LB_OK;
     int columns = number_columns(eq, column);
     lb_status status = LB_OK;
     if (columns > 0 && (long)columns * eq->count <= MOST_ENTRIES) {
@@ -202,6 +236,8 @@ lb_status flux_is_possible(const equations *eq, bool *is_possible, lb_error *err
             fill_cone(&c, eq, column);
             status = solve_cone(&c, is_possible, err);
         }
+        if (status == LB_OK && !*is_possible)
+            mark_steps(&c, eq, column, must_vanish);
         cone_clear(&c);
     }
     memory_free(column);

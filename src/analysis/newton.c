@@ -22,7 +22,7 @@
 #include "base/memory.h"
 #include "base/status.h"
 
-enum { MOST_ITERATIONS = 40, MOST_HALVINGS = 6, MOST_POLISHING = 30, MOST_RELAXATIONS = 80, ALL_ROWS_LIMIT = 40 };
+enum { MOST_ITERATIONS = 40, MOST_HALVINGS = 6, MOST_POLISHING = 30, MOST_RELAXATIONS = 80, ALL_ROWS_LIMIT = 120 };
 
 static const double STEP_LIMIT = 5;             /* e^5: two decades */
 static const double RESIDUAL_TOLERANCE = 1e-11; /* a root, before polishing */
@@ -150,6 +150,17 @@ static lb_status solve(newton *w, lb_error *err)
     return solve_all(w, 1e-12, &rank, err);
 }
 
+/* Norm of the residuals that the step reduces. */
+static double residual_norm(const newton *w, const double *F)
+{
+    double sum = 0;
+    if (!w->is_square)
+        return norm2(w->eq->rows, F);
+    for (int i = 0; i < w->eq->count; i++)
+        sum += F[w->row[i]] * F[w->row[i]];
+    return sqrt(sum);
+}
+
 /* ---- Deflation ------------------------------------------------------------------------- */
 
 static double squared_distance(int count, const double *a, const double *b)
@@ -211,13 +222,13 @@ static void limit_step(newton *w, const double *u)
 static bool line_search(newton *w, double *u, double *const *known, int known_count)
 {
     const equations *eq = w->eq;
-    double before = deflation(w, u, known, known_count) * norm2(eq->rows, w->F);
+    double before = deflation(w, u, known, known_count) * residual_norm(w, w->F);
     for (double t = 1; t >= ldexp(1, -MOST_HALVINGS); t /= 2) {
         for (int i = 0; i < eq->count; i++)
             w->trial[i] = u[i] + t * w->step[i];
         if (!equations_values(w->eq, w->trial, w->trial_F))
             continue;
-        double after = deflation(w, w->trial, known, known_count) * norm2(eq->rows, w->trial_F);
+        double after = deflation(w, w->trial, known, known_count) * residual_norm(w, w->trial_F);
         if (after < (1 - 1e-4 * t) * before) {
             memcpy(u, w->trial, (size_t)eq->count * sizeof *u);
             return true;

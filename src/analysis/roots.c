@@ -13,7 +13,6 @@
 #include <math.h>
 #include <string.h>
 
-#include "analysis/flux.h"
 #include "analysis/newton.h"
 #include "analysis/starts.h"
 #include "base/memory.h"
@@ -182,15 +181,11 @@ static lb_status run_starts(struct search *s)
 
 lb_status roots_find(equations *eq, const roots_options *options, roots *out, lb_error *err)
 {
-    bool is_possible = !eq->is_inconsistent && !eq->is_unbalanced;
     *out = (roots){0};
-    lb_status status = is_possible ? flux_is_possible(eq, &is_possible, err) : LB_OK;
-    if (status != LB_OK || !is_possible)
-        return status;
     struct search s = {.eq = eq, .options = options, .out = out, .err = err};
     s.u = memory_array((size_t)eq->count, sizeof *s.u);
     s.walked = memory_array((size_t)eq->count, sizeof *s.walked);
-    status = s.u && s.walked ? LB_OK : status_no_memory(err);
+    lb_status status = s.u && s.walked ? LB_OK : status_no_memory(err);
     if (status == LB_OK && eq->count == 0) {
         status = keep(&s, s.u);
         goto done;

@@ -13,6 +13,7 @@
 
 #include "analysis/equations.h"
 #include "analysis/faces.h"
+#include "analysis/flux.h"
 #include "analysis/roots.h"
 #include "analysis/stability.h"
 #include "analysis/starts.h"
@@ -158,26 +159,42 @@ static lb_status add_states(struct search *s, const bool *is_zero, equations *eq
     return status;
 }
 
-static lb_status search_face(struct search *s, const bool *is_zero, bool is_first, bool *is_possible)
+static lb_status search_roots(struct search *s, const bool *is_zero, bool is_first, equations *eq)
 {
-    equations *eq = NULL;
     roots found = {0};
-    lb_status status = equations_new(s->evaluator, &s->laws, s->x0, is_zero, &eq, s->err);
-    if (status != LB_OK)
-        return status;
     roots_options options = {.starts = starts_for(s, eq->count, is_first),
-                             .is_fixed = s->options->starts > 0, .seed = s->options->seed, .x0 = s->x0,
-                             .bound = s->bound, .monitor = s->options->monitor};
-    status = roots_find(eq, &options, &found, s->err);
+                             .is_fixed = s->options->starts > 0,
+                             .seed = s->options->seed,
+                             .x0 = s->x0,
+                             .bound = s->bound,
+                             .monitor = s->options->monitor};
+    lb_status status = roots_find(eq, &options, &found, s->err);
     if (status == LB_OK)
         status = add_states(s, is_zero, eq, &found);
-    *is_possible = !eq->is_inconsistent;
     s->out->starts += found.starts;
     s->out->converged += found.converged;
     s->out->interrupted = s->out->interrupted || found.interrupted;
     if (found.continuum > s->out->continuum)
         s->out->continuum = found.continuum;
     roots_clear(&found);
+    return status;
+}
+
+/* The roots of a face, then the faces within it.  Nothing lies within a face that
+ * the totals forbid. */
+static lb_status search_face(struct search *s, const bool *is_zero, bool is_first, bool *must_vanish)
+{
+    equations *eq = NULL;
+    bool is_possible = false;
+    lb_status status = equations_new(s->evaluator, &s->laws, s->x0, is_zero, &eq, s->err);
+    if (status != LB_OK || eq->is_inconsistent)
+        goto done;
+    status = flux_check(eq, &is_possible, must_vanish, s->err);
+    if (status == LB_OK && is_possible)
+        status = search_roots(s, is_zero, is_first, eq);
+    if (status == LB_OK && !s->options->skip_boundary && !s->out->interrupted)
+        status = faces_find(eq, is_zero, is_possible ? NULL : must_vanish, &s->faces, s->err);
+done:
     equations_free(eq);
     return status;
 }
@@ -185,15 +202,11 @@ static lb_status search_face(struct search *s, const bool *is_zero, bool is_firs
 /* The list grows while it is walked: the faces of a face come behind it. */
 static lb_status search_faces(struct search *s)
 {
-    lb_status status = add_first_face(s);
-    for (int i = 0; status == LB_OK && i < s->faces.count && !s->out->interrupted; i++) {
-        bool is_possible = true;
-        status = search_face(s, s->faces.is_zero[i], i == 0, &is_possible);
-        if (s->options->skip_boundary)
-            break;
-        if (status == LB_OK && is_possible)
-            status = faces_find(s->evaluator, s->faces.is_zero[i], &s->faces, s->err);
-    }
+    bool *must_vanish = memory_array((size_t)s->system->steps, sizeof *must_vanish);
+    lb_status status = must_vanish ? add_first_face(s) : status_no_memory(s->err);
+    for (int i = 0; status == LB_OK && i < s->faces.count && !s->out->interrupted; i++)
+        status = search_face(s, s->faces.is_zero[i], i == 0, must_vanish);
+    memory_free(must_vanish);
     return status;
 }
 
