@@ -281,7 +281,7 @@ END_TEST
 
 /* ---- Depth ------------------------------------------------------------------------- */
 
-enum { DEEP = 200000 };
+enum { DEEP = 100000 };
 
 static expression deep_chain(bool to_the_right)
 {
@@ -435,6 +435,7 @@ Suite *expression_suite(void)
 {
     Suite *suite = suite_create("expression");
     TCase *all = tcase_create("expression");
+    tcase_set_timeout(all, 60);
     tcase_add_checked_fixture(all, setup, teardown);
     tcase_add_test(all, test_equal_expressions_are_one_node);
     tcase_add_test(all, test_operands_come_before_their_users);

@@ -99,6 +99,14 @@ lb_status lb_system_new(const lb_network *network, lb_system **out, lb_error *er
     return LB_OK;
 }
 
+lb_status system_require_laws(const lb_system *system, lb_error *err)
+{
+    if (system->laws_known)
+        return LB_OK;
+    return status_raise(err, LB_E_LIMIT, "a time course can still be run",
+                        "the conservation laws of this network are beyond what is supported");
+}
+
 int lb_system_nonzeros(const lb_system *system)
 {
     return system->nonzeros;

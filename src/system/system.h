@@ -45,6 +45,10 @@ struct lb_system {
     struct table *table;            /* system/table.h */
 };
 
+/* LB_OK, or LB_E_LIMIT with a message when the laws are not known: the first question of
+ * every analysis that needs them. */
+lb_status system_require_laws(const lb_system *system, lb_error *err);
+
 /* Reduced Jacobian of the core on its reaction space, [rank*rank]:
  * d f_independent / d x_independent with the dependent species eliminated; its
  * eigenvalues are those of J on the image of N.  J is the full [n*n] Jacobian. */
