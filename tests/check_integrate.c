@@ -696,6 +696,15 @@ START_TEST(test_a_negative_concentration_is_an_error_with_its_cause)
 }
 END_TEST
 
+START_TEST(test_times_in_messages_have_their_unit)
+{
+    rig r = rig_new("units mM min\n[X]0 = 1 mM\nX -> P, v = 2 mM/min\n", NULL);
+    ck_assert_int_eq(integrator_to(r.it, 1, &r.err), LB_E_NEGATIVE);
+    ck_assert_ptr_nonnull(strstr(r.err.message, "t = 0.5 min"));
+    rig_free(&r);
+}
+END_TEST
+
 START_TEST(test_signed_species_pass_zero)
 {
     rig r = rig_new("units none\nsigned X\n[X]0 = 1\nX -> P, v = 2\n", NULL);
@@ -917,6 +926,7 @@ static void add_failures(Suite *suite)
 {
     TCase *wrong = tcase_create("wrong");
     tcase_add_loop_test(wrong, test_a_negative_concentration_is_an_error_with_its_cause, 0, 3);
+    tcase_add_test(wrong, test_times_in_messages_have_their_unit);
     tcase_add_test(wrong, test_signed_species_pass_zero);
     tcase_add_loop_test(wrong, test_a_species_that_runs_out_in_finite_time_stays_out, 0, 2);
     tcase_add_test(wrong, test_a_start_below_zero_is_refused);

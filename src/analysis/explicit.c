@@ -118,7 +118,8 @@ stepper_outcome explicit_attempt(explicit_method *method, stepper_attempt *attem
         gsl_odeiv2_system system = {augmented_function, NULL, n + n * n, method};
         memcpy(method->y, attempt->x, n * sizeof *method->y);
         memcpy(method->y + n, attempt->tangents, n * n * sizeof *method->y);
-        int code = gsl_odeiv2_step_apply(method->augmented, 0, attempt->h, method->y, method->error, NULL, NULL, &system);
+        int code = gsl_odeiv2_step_apply(method->augmented, 0, attempt->h, method->y, method->error, NULL, NULL,
+                                         &system);
         bool is_finite = all_finite(n + n * n, method->y) && all_finite(n + n * n, method->error);
         outcome = code == GSL_SUCCESS && is_finite ? STEPPER_DONE : STEPPER_NOT_FINITE;
         memcpy(attempt->x_new, method->y, n * sizeof *method->y);

@@ -17,16 +17,11 @@
  * Equations I, 2nd ed. (1993), section II.4 (steps); K. Gustafsson, ACM Trans.
  * Math. Softw. 17 (1991) 533 (proportional-integral control); E. Hairer and
  * G. Wanner, volume II (1996), section IV.2 (detection of stiffness). */
-#include "analysis/integrate.h"
-
 #include <float.h>
 #include <math.h>
 #include <string.h>
 
-#include "analysis/explicit.h"
-#include "analysis/rosenbrock.h"
-#include "analysis/stiffness.h"
-#include "analysis/tolerance.h"
+#include "analysis/integrate_state.h"
 #include "base/memory.h"
 #include "base/status.h"
 
@@ -40,47 +35,6 @@ enum {
     LEAST_PATIENCE = 6,         /* stiff steps inside the bound before it is taken up again */
     MOST_PATIENCE = 1024,
     MOST_STALLED = 1000         /* accepted steps in a row that do not change t */
-};
-
-/* Why the last attempt was refused. */
-typedef enum refusal { REFUSED_ERROR, REFUSED_NEGATIVE, REFUSED_NOT_FINITE, REFUSED_SINGULAR } refusal;
-
-struct integrator {
-    lb_evaluator *evaluator;
-    const lb_system *system;
-    int n;
-    lb_method method;
-    bool allow_negative;
-    size_t max_steps;
-    const lb_monitor *monitor;
-
-    tolerance control;
-    stiffness estimate;
-    explicit_method *explicit_steps;    /* NULL until first used, as the two below */
-    rosenbrock *stiff_steps;
-    rosenbrock *extra_steps;            /* for a step of its own inside the last one */
-
-    double t, t_last;
-    double h, h_last;           /* next step to try; size of the last accepted one */
-    double error_last;          /* its error, for the proportional-integral rule */
-    bool is_begun;              /* f, h and the method are those of the start */
-    double *x, *x_last, *x_new; /* [n] */
-    double *f, *f_last, *f_new; /* [n] right-hand sides there */
-    double *error, *scale;      /* [n] */
-    double *tangents, *tangents_new, *tangents_error;   /* [n*n] or NULL */
-
-    bool is_stiff;              /* method in use */
-    bool last_was_stiff;
-    bool has_stages;            /* the stiff method still holds the stages of the last step */
-    int evidence;               /* checks in a row that speak for a change */
-    int patience;
-    size_t since_change;        /* accepted steps with the method in use */
-    size_t steps, rejected, stiff_count, changes;
-    int stalled;                /* accepted steps since t last changed */
-
-    refusal refused;
-    int culprit;                /* the state it was refused for; -1: none known */
-    int worst;                  /* the state with the largest error in the last step */
 };
 
 /* ---- Life ---------------------------------------------------------------------- */
@@ -185,81 +139,9 @@ void integrator_start(integrator *it, double t, const double *x)
     stiffness_reset(&it->estimate);
 }
 
-/* ---- Errors ------------------------------------------------------------------- */
-
-static const char *species_name(const integrator *it, int state)
-{
-    const lb_network *network = it->system->network;
-    return network->species[network->state_species[state]].name;
-}
-
-/* The step that takes most of a species away while there is none of it, at the
- * last accepted state; -1 when the species does not fall there. */
-static int find_remover(integrator *it, int state)
-{
-    const lb_network *network = it->system->network;
-    double *rates = memory_array((size_t)it->system->steps, sizeof *rates);
-    int remover = -1;
-    if (!rates)
-        return -1;
-    memcpy(it->x_new, it->x, (size_t)it->n * sizeof *it->x);
-    it->x_new[state] = 0;
-    evaluator_step_rates(it->evaluator, it->x_new, rates);
-    double most = 0, total = 0;
-    for (int s = 0; s < it->system->steps; s++) {
-        const double *coefficients = evaluator_coefficients(it->evaluator, s);
-        for (int e = 0; e < network->steps[s].entry_count; e++) {
-            if (network->steps[s].entries[e].state != state)
-                continue;
-            double change = coefficients[e] * rates[s];
-            total += change;
-            if (change < most) {
-                most = change;
-                remover = s;
-            }
-        }
-    }
-    memory_free(rates);
-    return total < 0 ? remover : -1;
-}
-
-static lb_status fail_negative(integrator *it, lb_error *err)
-{
-    const char *name = species_name(it, it->culprit);
-    int remover = find_remover(it, it->culprit);
-    if (remover < 0)
-        return status_raise(err, LB_E_STEP, "try a tighter tolerance",
-                            "at t = %.6g no step keeps [%s] above minus its tolerance", it->t, name);
-    const char *step = it->system->network->steps[remover].name;
-    return status_raise(err, LB_E_NEGATIVE, "give that reaction a rate that vanishes with the species, or declare the species signed",
-                        "[%s] falls below zero at t = %.6g: %s takes it away though there is none left", name, it->t, step);
-}
-
-/* The smallest step was refused, or steps too small for t go on and on. */
-static lb_status fail(integrator *it, lb_error *err)
-{
-    const char *name = it->culprit >= 0 ? species_name(it, it->culprit) : NULL;
-    switch (it->refused) {
-    case REFUSED_NEGATIVE:
-        return fail_negative(it, err);
-    case REFUSED_NOT_FINITE:
-        if (name)
-            return status_raise(err, LB_E_FINITE, "look at the rate laws of that species",
-                                "the rate of change of [%s] is not finite just after t = %.6g", name, it->t);
-        return status_raise(err, LB_E_FINITE, NULL, "a rate or its derivative is not finite just after t = %.6g", it->t);
-    case REFUSED_SINGULAR:
-        return status_raise(err, LB_E_STEP, NULL, "the stiff method's matrix stays singular at t = %.6g", it->t);
-    case REFUSED_ERROR:
-        break;
-    }
-    return status_raise(err, LB_E_STEP, "the solution may grow without bound or a rate law may jump there",
-                        "at t = %.6g no step is short enough for [%s], which is %.6g", it->t,
-                        species_name(it, it->worst), it->x[it->worst]);
-}
-
 /* ---- Start ---------------------------------------------------------------------- */
 
-static void set_scale(integrator *it, const double *x)
+void integrate_set_scale(integrator *it, const double *x)
 {
     for (int i = 0; i < it->n; i++)
         it->scale[i] = fabs(x[i]) + it->control.absolute[i] / it->control.relative + DBL_MIN;
@@ -329,13 +211,15 @@ static lb_status begin(integrator *it, double t_limit, lb_error *err)
 {
     for (int i = 0; i < it->n; i++)
         if (!isfinite(it->x[i]))
-            return status_raise(err, LB_E_FINITE, NULL, "the start of [%s] is not finite", species_name(it, i));
+            return status_raise(err, LB_E_FINITE, NULL, "the start of [%s] is not finite", integrate_species(it, i));
     int bad = stepper_rhs(it->evaluator, it->x, it->f);
     if (bad >= 0)
         return status_raise(err, LB_E_FINITE, "look at the rate laws of that species",
-                            "the rate of change of [%s] is not finite at t = %.6g", species_name(it, bad), it->t);
+                            "the rate of change of [%s] is not finite at t = %s", integrate_species(it, bad),
+                            integrate_moment(it, it->t).text);
     if (!stepper_jacobian(it->evaluator, it->x, it->estimate.values))
-        return status_raise(err, LB_E_FINITE, NULL, "the derivative of a rate is not finite at t = %.6g", it->t);
+        return status_raise(err, LB_E_FINITE, NULL, "the derivative of a rate is not finite at t = %s",
+                            integrate_moment(it, it->t).text);
     memset(it->x_new, 0, (size_t)it->n * sizeof *it->x_new);
     stepper_multiply_add(it->system, it->estimate.values, 1, 1, it->f, it->x_new);
     double fastest = largest(it->n, it->f), change = largest(it->n, it->x_new);
@@ -343,9 +227,9 @@ static lb_status begin(integrator *it, double t_limit, lb_error *err)
     tolerance_start(&it->control, it->x, change > 0 ? fastest * (fastest / change) : fastest * span);
     it->culprit = it->allow_negative ? -1 : tolerance_negative(&it->control, it->x, it->x);
     if (it->culprit >= 0)
-        return status_raise(err, LB_E_NEGATIVE, NULL, "[%s] starts below zero, at %.6g", species_name(it, it->culprit),
-                            it->x[it->culprit]);
-    set_scale(it, it->x);
+        return status_raise(err, LB_E_NEGATIVE, NULL, "[%s] starts below zero, at %.6g",
+                            integrate_species(it, it->culprit), it->x[it->culprit]);
+    integrate_set_scale(it, it->x);
     it->patience = LEAST_PATIENCE;
     bool stiff = it->method == LB_METHOD_STIFF ||
                  (it->method == LB_METHOD_AUTO && it->n <= ROSENBROCK_LIMIT && looks_stiff(it));
@@ -366,8 +250,9 @@ static lb_status review_method(integrator *it, lb_error *err)
     bool is_damped;
     if (it->is_stiff) {
         /* The Jacobian of the step's start is there for nothing. */
-        set_scale(it, it->x);
-        double radius = stiffness_radius(&it->estimate, it->system, rosenbrock_jacobian(it->stiff_steps), it->scale, &is_damped);
+        integrate_set_scale(it, it->x);
+        const double *J = rosenbrock_jacobian(it->stiff_steps);
+        double radius = stiffness_radius(&it->estimate, it->system, J, it->scale, &is_damped);
         it->evidence = it->h * radius < 0.4 * EXPLICIT_STABILITY ? it->evidence + 1 : 0;
         if (it->evidence < it->patience)
             return LB_OK;
@@ -377,7 +262,7 @@ static lb_status review_method(integrator *it, lb_error *err)
     if ((it->since_change > 16 && it->since_change % CHECK_INTERVAL != 0) ||
         !stepper_jacobian(it->evaluator, it->x, it->estimate.values))
         return LB_OK;
-    set_scale(it, it->x);
+    integrate_set_scale(it, it->x);
     double radius = stiffness_radius(&it->estimate, it->system, it->estimate.values, it->scale, &is_damped);
     it->evidence = is_damped && it->h * radius > 0.6 * EXPLICIT_STABILITY ? it->evidence + 1 : 0;
     if (it->evidence < STIFF_EVIDENCE)
@@ -393,7 +278,8 @@ static lb_status review_method(integrator *it, lb_error *err)
  * culprit, and *shrink is the factor for the next try. */
 static bool attempt_step(integrator *it, double h, double *norm, double *shrink)
 {
-    stepper_attempt attempt = {h, it->x, it->f, it->tangents, it->x_new, it->error, it->tangents_new, it->tangents_error, -1};
+    stepper_attempt attempt = {h, it->x, it->f, it->tangents, it->x_new, it->error, it->tangents_new,
+                               it->tangents_error, -1};
     if (it->is_stiff)
         it->has_stages = false;
     stepper_outcome outcome = it->is_stiff ? rosenbrock_attempt(it->stiff_steps, &attempt)
@@ -469,22 +355,24 @@ lb_status integrator_step(integrator *it, double t_limit, lb_error *err)
     if (!(t_limit > it->t))
         return status_raise(err, LB_E_ARG, NULL, "a step from t = %.6g cannot end at %.6g", it->t, t_limit);
     if (it->monitor && it->monitor->stop && it->monitor->stop(it->monitor->context))
-        return status_raise(err, LB_E_STOPPED, NULL, "interrupted at t = %.6g", it->t);
+        return status_raise(err, LB_E_STOPPED, NULL, "interrupted at t = %s", integrate_moment(it, it->t).text);
     if (it->max_steps > 0 && it->steps >= it->max_steps)
-        return status_raise(err, LB_E_STEP, NULL, "%zu steps were not enough: t = %.6g was reached", it->max_steps, it->t);
+        return status_raise(err, LB_E_STEP, NULL, "%zu steps were not enough: t = %s was reached", it->max_steps,
+                            integrate_moment(it, it->t).text);
     if (!it->is_begun) {
         lb_status status = begin(it, t_limit, err);
         if (status != LB_OK)
             return status;
     }
     if (it->is_stiff)
-        set_scale(it, it->x);
+        integrate_set_scale(it, it->x);
     if (it->is_stiff && !rosenbrock_prepare(it->stiff_steps, it->x, it->scale))
-        return status_raise(err, LB_E_FINITE, NULL, "the derivative of a rate is not finite at t = %.6g", it->t);
+        return status_raise(err, LB_E_FINITE, NULL, "the derivative of a rate is not finite at t = %s",
+                            integrate_moment(it, it->t).text);
 
     it->refused = REFUSED_ERROR;
     if (it->stalled > MOST_STALLED)
-        return fail(it, err);
+        return integrate_fail(it, err);
     for (bool was_refused = false; ; was_refused = true) {
         /* Land on the limit, and do not leave a sliver before it. */
         double rest = t_limit - it->t, h = it->h, norm = 0, shrink;
@@ -503,7 +391,7 @@ lb_status integrator_step(integrator *it, double t_limit, lb_error *err)
         it->rejected++;
         it->h = h * shrink;
         if (it->h < smallest_step(it))
-            return fail(it, err);
+            return integrate_fail(it, err);
     }
 }
 
@@ -515,123 +403,4 @@ lb_status integrator_to(integrator *it, double t, lb_error *err)
     while (status == LB_OK && it->t < t)
         status = integrator_step(it, t, err);
     return status;
-}
-
-/* ---- Within the last step ---------------------------------------------------------- */
-
-static lb_status fail_inside(double t, lb_error *err)
-{
-    return status_raise(err, LB_E_STEP, NULL, "a step inside an accepted one failed at t = %.6g", t);
-}
-
-/* One step from the start of the last one with stages left behind in method. */
-static bool stiff_substep(integrator *it, rosenbrock *method, double h, double *x_new)
-{
-    stepper_attempt attempt = {.h = h, .x = it->x_last, .f = it->f_last, .x_new = x_new, .error = it->error};
-    set_scale(it, it->x_last);
-    return rosenbrock_prepare(method, it->x_last, it->scale) && rosenbrock_attempt(method, &attempt) == STEPPER_DONE;
-}
-
-/* The ends of the step are what they are; true when t is one. */
-static bool take_end(const integrator *it, double t, double *x)
-{
-    const double *end = t <= it->t_last ? it->x_last : t >= it->t ? it->x : NULL;
-    if (end)
-        memcpy(x, end, (size_t)it->n * sizeof *x);
-    return end != NULL;
-}
-
-lb_status integrator_dense(integrator *it, double t, double *x, lb_error *err)
-{
-    if (take_end(it, t, x))
-        return LB_OK;
-    if (!it->last_was_stiff) {
-        stepper_outcome outcome = explicit_advance(it->explicit_steps, t - it->t_last, it->x_last, it->f_last, x);
-        return outcome == STEPPER_DONE ? LB_OK : fail_inside(t, err);
-    }
-    /* A refused attempt has overwritten the stages: make them again. */
-    if (!it->has_stages && !stiff_substep(it, it->stiff_steps, it->h_last, x))
-        return fail_inside(t, err);
-    it->has_stages = true;
-    rosenbrock_dense(it->stiff_steps, (t - it->t_last) / it->h_last, it->x_last, it->x, x);
-    return LB_OK;
-}
-
-lb_status integrator_restep(integrator *it, double t, double *x, lb_error *err)
-{
-    if (!it->last_was_stiff || t <= it->t_last || t >= it->t)
-        return integrator_dense(it, t, x, err);
-    if (!it->extra_steps) {
-        lb_status status = rosenbrock_new(it->evaluator, false, &it->extra_steps, err);
-        if (status != LB_OK)
-            return status;
-    }
-    return stiff_substep(it, it->extra_steps, t - it->t_last, x) ? LB_OK : fail_inside(t, err);
-}
-
-/* ---- Questions ----------------------------------------------------------------------- */
-
-double integrator_time(const integrator *it)
-{
-    return it->t;
-}
-
-const double *integrator_state(const integrator *it)
-{
-    return it->x;
-}
-
-const double *integrator_tangents(const integrator *it)
-{
-    return it->tangents;
-}
-
-double integrator_last_time(const integrator *it)
-{
-    return it->t_last;
-}
-
-const double *integrator_last_state(const integrator *it)
-{
-    return it->x_last;
-}
-
-lb_evaluator *integrator_evaluator(const integrator *it)
-{
-    return it->evaluator;
-}
-
-double integrator_tolerance(const integrator *it)
-{
-    return it->control.relative;
-}
-
-size_t integrator_steps(const integrator *it)
-{
-    return it->steps;
-}
-
-size_t integrator_rejected(const integrator *it)
-{
-    return it->rejected;
-}
-
-const char *integrator_method(const integrator *it)
-{
-    if (it->stiff_count == 0 && !it->is_stiff)
-        return "explicit Runge-Kutta 8(7), Prince and Dormand";
-    if (it->stiff_count == it->steps)
-        return "Rosenbrock 5(4), Rodas5P";
-    return "Rosenbrock 5(4), Rodas5P, and explicit Runge-Kutta 8(7) where nothing was stiff";
-}
-
-const char *integrator_reason(const integrator *it)
-{
-    if (it->method != LB_METHOD_AUTO)
-        return "asked for";
-    if (it->stiff_count == 0 && !it->is_stiff)
-        return "accuracy, not stability, limited the steps";
-    if (it->stiff_count == it->steps)
-        return "from the start the fastest motion was damped much faster than the state moved";
-    return "stability held the explicit steps back: the fastest motion was damped much faster than the state moved";
 }
