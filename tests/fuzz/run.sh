@@ -17,7 +17,7 @@ if ! echo 'int LLVMFuzzerTestOneInput(void) { return 0; }' |
     echo "fuzzing needs clang with libFuzzer: apt-get install clang" >&2
     exit 1
 fi
-make --no-print-directory BUILD=$work CC=clang \
+make --no-print-directory BUILD=$work CC=clang WARN= \
     CFLAGS="-O1 -g -fno-omit-frame-pointer -fsanitize=fuzzer-no-link,address,undefined -fno-sanitize-recover=undefined" \
     $work/liblimbeck.a
 
