@@ -271,8 +271,35 @@ static void assert_all_minimal_laws(const lb_network *net)
     conservation_clear(&laws);
 }
 
+/* Two or three reactions that each have most of seven species: cones with many rays, not all of
+ * them adjacent. */
+static lb_network *crowded_network(unsigned seed)
+{
+    lb_network *net = network_new();
+    expression k = expression_constant(&net->graph, network_add_constant(net, "k", CONSTANT_NAMED, 1));
+    for (int i = 0; i < FEW; i++)
+        network_add_species(net, (const char[]){(char)('A' + i), '\0'}, ROLE_DYNAMIC);
+    for (unsigned r = 0; r < 2 + seed % 2; r++) {
+        int reaction = network_add_reaction(net, "R", false);
+        for (int i = 0; i < FEW; i++) {
+            seed = seed * 1664525u + 1013904223u;
+            int coefficient = (int)(seed >> 20) % 5 - 2;
+            if (coefficient != 0)
+                network_add_term(net, reaction, coefficient > 0, i, abs(coefficient), 1, EXPRESSION_NONE);
+        }
+        network_add_mass_action(net, reaction, STEP_FORWARD, k);
+    }
+    ck_assert_int_eq(network_finish(net), LB_OK);
+    return net;
+}
+
 START_TEST(test_minimal_laws_are_those_of_brute_force)
 {
+    for (unsigned seed = 1; seed <= 100; seed++) {
+        lb_network *net = crowded_network(seed);
+        assert_all_minimal_laws(net);
+        lb_network_free(net);
+    }
     for (uint64_t seed = 1; seed <= 200; seed++) {
         lb_network *net = random_mass_action(seed, 2 + (int)(seed % (FEW - 1)), 1 + (int)(seed / 7 % 5));
         assert_all_minimal_laws(net);

@@ -91,6 +91,8 @@ START_TEST(test_products_of_powers_are_recognised)
     assert_power_law(expression_unary(g, EXPRESSION_SQRT, x), 0.5, 0, 1);
     assert_power_law(pwr(mul(k, mul(x, y)), 3), 3, 3, 8);
     assert_power_law(pwr(two(EXPRESSION_DIVIDE, x, k), -2), -2, 0, 4);
+    assert_power_law(pwr(expression_unary(g, EXPRESSION_NEGATE, x), 2), 2, 0, 1);
+    assert_power_law(pwr(expression_unary(g, EXPRESSION_NEGATE, x), 3), 3, 0, -1);
     assert_power_law(two(EXPRESSION_DIVIDE, mul(k, x), x), 0, 0, 2);
     assert_power_law(mul(two(EXPRESSION_ADD, k, f), x), 1, 0, 2.25);
     assert_power_law(two(EXPRESSION_POWER, two(EXPRESSION_ADD, k, f), num(2)), 0, 0, 2.25 * 2.25);
@@ -106,6 +108,7 @@ START_TEST(test_other_laws_stay_general)
         expression_unary(g, EXPRESSION_EXP, x),
         pwr(mul(x, y), 0.5),                /* (-1 * -1)^0.5 is not (-1)^0.5 twice */
         pwr(pwr(x, 2), 0.5),                /* |x|, not x */
+        pwr(pwr(x, 0.5), 2),                /* 0 below zero, not x */
     };
     for (size_t i = 0; i < sizeof laws / sizeof *laws; i++) {
         const network_step *step = step_of(laws[i]);
@@ -203,14 +206,14 @@ START_TEST(test_coefficients_are_exact_or_expressions)
     term(reaction, false, X, 1);
     network_add_term(net, reaction, true, X, 0, 1, f);
     network_add_term(net, reaction, true, Y, 0, 1, two(EXPRESSION_DIVIDE, num(1), num(3)));
-    network_add_term(net, reaction, true, Z, 1, 2, EXPRESSION_NONE);
-    network_add_term(net, reaction, true, Z, 1, 3, EXPRESSION_NONE);
+    network_add_term(net, reaction, true, Z, 1, 4, EXPRESSION_NONE);
+    network_add_term(net, reaction, true, Z, 1, 6, EXPRESSION_NONE);
     const network_step *step = mass_action(reaction, k);
     ck_assert_int_eq(network_finish(net), LB_OK);
-    ck_assert_str_eq(net->reactions[reaction].equation, "X -> (f) X + (1/3) Y + (5/6) \"Z-\"");
+    ck_assert_str_eq(net->reactions[reaction].equation, "X -> (f) X + (1/3) Y + (5/12) \"Z-\"");
     ck_assert_int_eq(step->entries[0].expression, two(EXPRESSION_SUBTRACT, f, num(1)));
     assert_entry(step, 1, 1, 1, 3);
-    assert_entry(step, 2, 2, 5, 6);
+    assert_entry(step, 2, 2, 5, 12);
 }
 END_TEST
 

@@ -79,14 +79,16 @@ static void push_text(writer *w, const char *text)
     w->stack[w->depth++] = (item){.text = text, .node = EXPRESSION_NONE};
 }
 
-/* A name for the whole operand needs no parentheses. */
-static void push_node(writer *w, expression e, bool parentheses)
+/* The operand in parentheses when it binds less tightly than `rank`; a name for the whole of
+ * it needs none. */
+static void push_operand(writer *w, expression e, int rank)
 {
     const char *alias = w->alias ? w->alias(w->context, e) : NULL;
     if (alias) {
         push_text(w, alias);
         return;
     }
+    bool parentheses = rank_of(&w->g->nodes[e]) < rank;
     if (parentheses)
         push_text(w, ")");
     push_text(w, NULL);
@@ -96,18 +98,11 @@ static void push_node(writer *w, expression e, bool parentheses)
         push_text(w, "(");
 }
 
-/* The operand in parentheses when it binds less tightly than `rank`. */
-static void push_operand(writer *w, expression e, int rank)
-{
-    push_node(w, e, rank_of(&w->g->nodes[e]) < rank);
-}
-
-/* Pushed in reverse, since the top of the stack is written first.  A sign never
- * follows an operator. */
+/* Pushed in reverse, since the top of the stack is written first.  A sign never follows + or
+ * -, since the builder takes it into them. */
 static void push_binary(writer *w, const expression_node *node, int left, const char *sign, int right)
 {
-    int rank = rank_of(&w->g->nodes[node->right]);
-    push_node(w, node->right, rank < right || rank == RANK_SIGN);
+    push_operand(w, node->right, right);
     push_text(w, sign);
     push_operand(w, node->left, left);
 }
