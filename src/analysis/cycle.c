@@ -21,11 +21,12 @@
 #include "base/status.h"
 
 enum {
-    DEFAULT_RETURNS = 2000,
+    DEFAULT_RETURNS = 1000,
     DEFAULT_STEPS = 200000,
     FIRST_EPOCH = 128,            /* steps */
     EPOCH_RETURNS = 6,            /* an epoch with fewer was too short */
     REST_EVERY = 32,              /* steps between questions about rest */
+    MOST_ATTEMPTS = 8,            /* at closing */
     SHARPEN_AFTER = 300,          /* returns without success: integrate more closely */
     GROWTH_STEPS = 1024,          /* first look at growth; then whenever the steps have doubled */
     GROWTH_DOUBLINGS = 3
@@ -72,6 +73,7 @@ typedef struct explorer {
     int doublings;                /* in a row through which it grew */
     double still_since;           /* time since which it stands still; infinite when it moves */
     double elapsed;               /* before the integrator's last start */
+    int attempts;                 /* at closing, that failed */
     bool is_sharp, is_done;
 } explorer;
 
@@ -249,9 +251,12 @@ static lb_status look_for_rest(explorer *e, lb_error *err)
 
 static lb_status look_at_start(explorer *e, lb_error *err)
 {
+    const char *why = "it starts at a steady state";
+    if (rest_is_balanced(&e->rest, &e->s, e->x0))
+        return settle(e, e->x0, why, err);
     lb_status status = rest_near(&e->rest, &e->s, e->x0, e->reach, NEAR_REST, err);
     if (status == LB_OK && e->rest.found && e->rest.distance < STARTS_AT_REST)
-        return settle(e, e->rest.x, "it starts at a steady state", err);
+        return settle(e, e->rest.x, why, err);
     return status;
 }
 
@@ -358,6 +363,7 @@ static lb_status try_to_close(explorer *e, int loops, lb_error *err)
         status = judge_orbit(e, &orbit, err);
     closed_clear(&orbit);
     e->repeat = fmax(0.1 * e->repeat, LEAST_REPEAT);
+    e->attempts++;
     return status;
 }
 
@@ -383,7 +389,7 @@ static lb_status watch_section(explorer *e, lb_error *err)
     e->epoch_returns++;
     e->report->returns++;
     double distance;
-    int loops = section_repeats(&e->section, &e->s, e->repeat, e->scale, &distance);
+    int loops = e->attempts < MOST_ATTEMPTS ? section_repeats(&e->section, &e->s, e->repeat, e->scale, &distance) : 0;
     if (loops > 0)
         return try_to_close(e, loops, err);
     if (!e->is_sharp && e->report->returns >= SHARPEN_AFTER)

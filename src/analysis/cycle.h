@@ -29,7 +29,7 @@ typedef struct cycle_report {
 
 typedef struct cycle_options {
     double tolerance;       /* of the closing integration; 0: 1e-11 */
-    size_t max_returns;     /* 0: 2000 section returns */
+    size_t max_returns;     /* 0: 1000 section returns */
     size_t max_steps;       /* 0: 200000 steps of the exploring integration */
     const lb_monitor *monitor;
 } cycle_options;

@@ -11,7 +11,7 @@
 #include "base/status.h"
 
 /* Returns for further starts once a trajectory has kept moving without closing. */
-enum { RETURNS_WHEN_MOVING = 300 };
+enum { RETURNS_WHEN_MOVING = 150 };
 
 /* Hand the report's orbit to the answer. */
 static lb_status take_witness(hunt *h, const double *x, cycle_report *report, lb_verdict verdict, lb_error *err)

@@ -22,7 +22,7 @@
 
 enum {
     SPREAD = 6,                   /* starts around the steady states */
-    SPREAD_LARGE = 2,             /* the same from LARGE states up */
+    SPREAD_FEW = 2,               /* the same from LARGE states up, and where some trajectory never rests */
     LARGE = 40,
     SPREAD_RETURNS = 500,
     SPREAD_STEPS = 40000
@@ -85,8 +85,9 @@ static void write_coverage(const hunt *h, buffer *text)
         buffer_printf(text, "%zu start%s followed: a cycle that attracts none of them is missed",
                       answer->integrations, answer->integrations == 1 ? " was" : "s were");
     else
-        buffer_printf(text, "%zu set%s of constants tried: a cycle between the samples, or beside a steady state "
-                      "that is stable, is missed", answer->samples, answer->samples == 1 ? " was" : "s were");
+        buffer_printf(text, "%zu set%s of constants %s tried: a cycle between the samples, or beside a steady state "
+                      "that is stable, is missed", answer->samples, answer->samples == 1 ? "" : "s",
+                      answer->samples == 1 ? "was" : "were");
     if (h->keeps_moving)
         buffer_append(text, "; some trajectory keeps moving within bounds without closing (chaos, a torus or a "
                             "very slow approach: this search does not tell)");
@@ -131,7 +132,7 @@ static lb_status finish(const hunt *h, lb_error *err)
 /* Around the steady states in turn, or around x0 where there is none. */
 static lb_status hunt_spread(hunt *h, const lb_steady *steady, const double *x0, uint64_t seed, lb_error *err)
 {
-    size_t starts = steady->states < LARGE ? SPREAD : SPREAD_LARGE;
+    size_t starts = steady->states < LARGE && !h->keeps_moving ? SPREAD : SPREAD_FEW;
     double *x = memory_array((size_t)steady->states, sizeof *x);
     if (!x)
         return status_no_memory(err);

@@ -20,6 +20,7 @@ enum { NEWTON_ITERATIONS = 25 };
 
 #define NEWTON_CONVERGED 1e-11
 #define REACH_FRACTION 1e-3
+#define BALANCED 1e-14             /* of the sum of the terms' magnitudes: rounding */
 
 lb_status rest_init(rest *r, const space *s, lb_error *err)
 {
@@ -107,6 +108,19 @@ lb_status rest_near(rest *r, const space *s, const double *x, const double *reac
         r->distance = fmax(r->distance, fabs(x[i] - r->x[i]) / rest_length(r->x, reach, i));
     }
     return r->distance < close ? classify(r, s, err) : LB_OK;
+}
+
+bool rest_is_balanced(rest *r, const space *s, const double *x)
+{
+    size_t n = (size_t)s->n, rank = (size_t)s->rank;
+    double *f = r->work + n * n + rank * rank, *magnitude = r->work;
+    evaluator_rhs_scaled(s->evaluator, x, f, magnitude);
+    for (int k = 0; k < s->core; k++) {
+        int i = s->system->core_state[k];
+        if (!(fabs(f[i]) <= BALANCED * magnitude[i]))
+            return false;
+    }
+    return true;
 }
 
 lb_status rest_is_still(rest *r, const space *s, const double *x, const double *reach, double elapsed,

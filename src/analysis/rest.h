@@ -23,6 +23,9 @@ void rest_clear(rest *r);
  * below `close`; it is undecided otherwise. */
 lb_status rest_near(rest *r, const space *s, const double *x, const double *reach, double close, lb_error *err);
 
+/* The terms of each core species' rate cancel to rounding at x. */
+bool rest_is_balanced(rest *r, const space *s, const double *x);
+
 /* is_still: as much time again as `elapsed` would move no core species by more than
  * `fraction` of its reach.  rate: the largest real part of the eigenvalues at x,
  * filled where is_still. */

@@ -7,7 +7,7 @@
 #include "limbeck.h"
 
 /* Most loops that a closed orbit may take before it closes. */
-#define SECTION_LOOPS 32
+#define SECTION_LOOPS 16
 
 typedef struct section_return {
     double t;

@@ -21,7 +21,7 @@
 #include "base/memory.h"
 #include "base/status.h"
 
-enum { MAX_ITERATIONS = 15 };
+enum { MAX_ITERATIONS = 12, PATIENCE = 4, HALVINGS = 3 };
 
 #define RANK_CONDITION 1e-8       /* relative; below it a direction belongs to a family of orbits */
 #define LARGEST_STEP 0.5          /* in amplitudes, and of the logarithm of the period */
@@ -187,7 +187,7 @@ static lb_status iterate(worker *w, double goal, int *iterations, lb_error *err)
         if (solved != LB_OK)
             return solved == LB_E_NOMEM ? solved : LB_OK;
         double fraction = limited_fraction(w);
-        for (int half = 0; half < 4; half++, fraction *= 0.25) {
+        for (int half = 0; half < HALVINGS; half++, fraction *= 0.25) {
             take_step(w, fraction);
             status = trial_run(w, &w->next, err);
             if (status != LB_OK || w->next.residual < w->now.residual || w->now.residual < goal)
@@ -195,7 +195,8 @@ static lb_status iterate(worker *w, double goal, int *iterations, lb_error *err)
         }
         if (status != LB_OK || !(w->next.residual < w->now.residual))
             break;
-        bool slow = w->next.residual > 0.3 * w->now.residual && w->now.residual < goal;
+        bool slow = w->next.residual > 0.3 * w->now.residual &&
+                    (w->now.residual < goal || *iterations >= PATIENCE);
         trial swap = w->now;
         w->now = w->next;
         w->next = swap;

@@ -1,7 +1,7 @@
 /* The swings of a trajectory on its way to rest.
  *
  * Each core species keeps the values at its turning points.  A swing is a maximum
- * together with the fall to the next minimum; falls do not depend on where the
+ * with the fall and the rise that follow it; these do not depend on where the
  * trajectory will rest, so a drifting mean does not hide or feign swings. */
 #include "analysis/swings.h"
 
@@ -12,9 +12,9 @@
 #include "base/memory.h"
 #include "base/status.h"
 
-enum { TRACK_LIMIT = 4000, FEWEST = 3 };
+enum { TRACK_LIMIT = 1000, FEWEST = 3 };
 
-#define SWING_NOISE 1e-3          /* of the largest fall */
+#define SWING_NOISE 1e-3          /* of the largest swing */
 #define SMALLEST_SWING 1e-4       /* of the species' magnitude: well above the tolerance of the run */
 
 lb_status swings_init(swings *w, const space *s, lb_error *err)
@@ -59,15 +59,28 @@ size_t swings_turns(const swings *w, int state)
     return w->track[state].turns;
 }
 
-/* Falls of one track that stand above noise: their number and the largest. */
+/* Swing j of a track: the fall after maximum j or the rise after that, whichever is
+ * less.  A change of sign that is only noise on a slope has next to none. */
+static double swing_size(const swings_track *track, size_t j)
+{
+    const double *v = track->value + 2 * j;
+    return fmin(v[0] - v[1], v[2] - v[1]);
+}
+
+static size_t swing_count(const swings_track *track)
+{
+    return track->count > 2 ? (track->count - 1) / 2 : 0;
+}
+
+/* Swings of one track that stand above noise: their number and the largest. */
 static int prominent(const swings_track *track, double *largest)
 {
     int count = 0;
     *largest = 0;
-    for (size_t j = 0; j + 1 < track->count; j += 2)
-        *largest = fmax(*largest, track->value[j] - track->value[j + 1]);
-    for (size_t j = 0; j + 1 < track->count; j += 2)
-        count += track->value[j] - track->value[j + 1] > SWING_NOISE * *largest;
+    for (size_t j = 0; j < swing_count(track); j++)
+        *largest = fmax(*largest, swing_size(track, j));
+    for (size_t j = 0; j < swing_count(track); j++)
+        count += swing_size(track, j) > SWING_NOISE * *largest;
     return count;
 }
 
@@ -77,19 +90,19 @@ static int ascending(const void *a, const void *b)
     return (x > y) - (x < y);
 }
 
-/* Median ratio of successive prominent falls: the first swings of a wide start and
+/* Median ratio of successive prominent swings: the first swings of a wide start and
  * the last of a fine end do not sway it.  scratch has room for the track. */
 static double median_ratio(const swings_track *track, double largest, double *scratch)
 {
     double last = 0;
     size_t count = 0;
-    for (size_t j = 0; j + 1 < track->count; j += 2) {
-        double fall = track->value[j] - track->value[j + 1];
-        if (fall <= SWING_NOISE * largest)
+    for (size_t j = 0; j < swing_count(track); j++) {
+        double size = swing_size(track, j);
+        if (size <= SWING_NOISE * largest)
             continue;
         if (last > 0)
-            scratch[count++] = fall / last;
-        last = fall;
+            scratch[count++] = size / last;
+        last = size;
     }
     qsort(scratch, count, sizeof *scratch, ascending);
     return count % 2 ? scratch[count / 2] : 0.5 * (scratch[count / 2 - 1] + scratch[count / 2]);

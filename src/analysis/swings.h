@@ -30,8 +30,8 @@ lb_status swings_watch(swings *w, const orbit_turning *turning, const double *be
 size_t swings_turns(const swings *w, int state);
 
 /* Of the species whose swings are largest relative to reach [n], its largest
- * magnitude: how many maxima stand above noise (a fall of more than a thousandth of
- * the largest fall after a maximum), and the median ratio of successive falls.  No
+ * magnitude: how many stand above noise (more than a thousandth of the largest), and
+ * the median ratio of successive ones.  At most the first 500 are looked at.  No
  * species with at least three: 0, 0, -1.  LB_OK or LB_E_NOMEM. */
 lb_status swings_summary(const swings *w, const double *reach, int *count, double *decay, int *state, lb_error *err);
 
