@@ -26,7 +26,7 @@ static bool is_signed_state(const lb_system *system, int state)
 
 /* ---- Which steps are alive -------------------------------------------------- */
 
-enum { PROBES = 3 };
+enum { PROBES = 3, MOST_POOLS = 32 };
 
 /* A point in general position: powers of different species do not cancel there. */
 static void probe_point(const lb_system *system, int probe, double *x)
@@ -91,6 +91,54 @@ static lb_status laws_at_constants(lb_evaluator *evaluator, bool *is_alive, cons
     return conservation_find(system->network, system->core_state, system->core, is_alive, found, err);
 }
 
+/* Does the step bring in or take out one species, independently of all others? */
+static bool is_flow(const network_step *step)
+{
+    if (!step->is_power_law || step->entry_count != 1 || step->order_count > 1)
+        return false;
+    return step->order_count == 0 || step->orders[0].state == step->entries[0].state;
+}
+
+static void keep_pool(equations_laws *laws, const int64_t *weight)
+{
+    int support = 0;
+    for (int i = 0; i < laws->width; i++) {
+        if (weight[i] < 0)
+            return;
+        support += weight[i] > 0;
+    }
+    if (support < 2)
+        return;
+    for (int i = 0; i < laws->width; i++)
+        laws->pool[(size_t)laws->pool_count * (size_t)laws->width + (size_t)i] = (double)weight[i];
+    laws->pool_count++;
+}
+
+/* What the steps conserve that are no flows.  A network too large for that has no
+ * pools. */
+static lb_status find_pools(equations_laws *laws, const lb_system *system, bool *use, lb_error *err)
+{
+    conservation found = {0};
+    bool has_flow = false;
+    for (int s = 0; s < system->steps; s++) {
+        has_flow = has_flow || (use[s] && is_flow(&system->network->steps[s]));
+        use[s] = use[s] && !is_flow(&system->network->steps[s]);
+    }
+    if (!has_flow)
+        return LB_OK;
+    lb_status status = conservation_find(system->network, system->core_state, system->core, use, &found, NULL);
+    if (status == LB_E_LIMIT)
+        return LB_OK;
+    if (status == LB_OK) {
+        int most = found.count < MOST_POOLS ? found.count : MOST_POOLS;
+        laws->pool = memory_array((size_t)most * (size_t)laws->width, sizeof *laws->pool);
+        for (int row = 0; laws->pool && row < most; row++)
+            keep_pool(laws, found.law + (size_t)row * (size_t)found.width);
+    }
+    conservation_clear(&found);
+    return status == LB_OK && laws->pool ? LB_OK : status_no_memory(err);
+}
+
 lb_status equations_laws_init(equations_laws *laws, lb_evaluator *evaluator, const double *x0, lb_error *err)
 {
     const lb_system *system = evaluator_system(evaluator);
@@ -115,6 +163,7 @@ lb_status equations_laws_init(equations_laws *laws, lb_evaluator *evaluator, con
     }
     for (int row = 0; row < laws->count; row++)
         fill_law(laws, row, source->law + (size_t)row * (size_t)source->width, system, x0);
+    status = find_pools(laws, system, is_alive, err);
 done:
     if (is_own)
         conservation_clear(&own);
@@ -128,6 +177,7 @@ void equations_laws_clear(equations_laws *laws)
     memory_free(laws->total);
     memory_free(laws->size);
     memory_free(laws->is_positive);
+    memory_free(laws->pool);
     memset(laws, 0, sizeof *laws);
 }
 
@@ -166,7 +216,8 @@ static bool make_terms(equations *eq)
                 eq->start[eq->unknown[net->steps[s].entries[e].state] + 1]++;
     for (int i = 0; i < eq->count; i++)
         eq->start[i + 1] += eq->start[i];
-    eq->term = memory_array((size_t)eq->start[eq->count], sizeof *eq->term);
+    eq->term_capacity = (size_t)eq->start[eq->count];
+    eq->term = memory_array(eq->term_capacity, sizeof *eq->term);
     int *next = memory_array((size_t)eq->count, sizeof *next);
     if (!eq->term || !next) {
         memory_free(next);
@@ -183,6 +234,50 @@ static bool make_terms(equations *eq)
     }
     memory_free(next);
     return true;
+}
+
+/* The sum of the balances of a pool's species, step by step: what the pool's own
+ * steps change cancels, being exact in small integers.  Kept when what is left has
+ * gains and losses at positive rates.  sum [steps] is zero before and after. */
+static lb_status add_pool(equations *eq, int pool, double *sum, lb_error *err)
+{
+    const double *weight = eq->laws->pool + (size_t)pool * (size_t)eq->laws->width;
+    bool is_positive = true, has_gain = false, has_loss = false;
+    size_t end = (size_t)eq->start[eq->balances];
+    lb_status status = LB_OK;
+    for (int i = 0; i < eq->count; i++)
+        for (int t = eq->start[i]; t < eq->start[i + 1]; t++)
+            sum[eq->term[t].step] += weight[eq->system->core_index[eq->state[i]]] * eq->term[t].coefficient;
+    for (int s = 0; s < eq->system->steps; s++) {
+        if (fabs(sum[s]) > 1e-9 && status == LB_OK) {
+            is_positive = is_positive && eq->is_positive[s];
+            has_gain = has_gain || sum[s] > 0;
+            has_loss = has_loss || sum[s] < 0;
+            if (memory_grow(&eq->term, &eq->term_capacity, end, sizeof *eq->term) != 0)
+                status = status_no_memory(err);
+            else
+                eq->term[end++] = (equations_term){s, sum[s]};
+        }
+        sum[s] = 0;
+    }
+    if (status == LB_OK && is_positive && has_gain && has_loss) {
+        eq->is_ratio[eq->balances] = true;
+        eq->start[++eq->balances] = (int)end;
+        eq->pool[eq->pool_count++] = pool;
+    }
+    return status;
+}
+
+static lb_status add_pools(equations *eq, lb_error *err)
+{
+    double *sum = memory_zeroed((size_t)eq->system->steps, sizeof *sum);
+    lb_status status = sum ? LB_OK : status_no_memory(err);
+    eq->balances = eq->count;
+    for (int pool = 0; status == LB_OK && pool < eq->laws->pool_count; pool++)
+        status = add_pool(eq, pool, sum, err);
+    eq->rows = eq->balances + eq->law_count;
+    memory_free(sum);
+    return status;
 }
 
 static bool is_positive_power_law(const equations *eq, int step)
@@ -219,7 +314,7 @@ static void choose_forms(equations *eq)
 
 static bool allocate(equations *eq)
 {
-    size_t n = (size_t)eq->system->n, core = (size_t)eq->system->core;
+    size_t n = (size_t)eq->system->n, core = (size_t)eq->system->core, pools = (size_t)eq->laws->pool_count;
     eq->state = memory_array(core, sizeof *eq->state);
     eq->unknown = memory_array(n, sizeof *eq->unknown);
     eq->is_signed = memory_array(core, sizeof *eq->is_signed);
@@ -227,14 +322,15 @@ static bool allocate(equations *eq)
     eq->law = memory_array((size_t)eq->laws->count, sizeof *eq->law);
     eq->is_alive = memory_array((size_t)eq->system->steps, sizeof *eq->is_alive);
     eq->is_positive = memory_array((size_t)eq->system->steps, sizeof *eq->is_positive);
-    eq->start = memory_zeroed(core + 1, sizeof *eq->start);
-    eq->is_ratio = memory_array(core, sizeof *eq->is_ratio);
+    eq->pool = memory_array(pools, sizeof *eq->pool);
+    eq->start = memory_zeroed(core + pools + 1, sizeof *eq->start);
+    eq->is_ratio = memory_array(core + pools, sizeof *eq->is_ratio);
     eq->size = memory_array(core, sizeof *eq->size);
     eq->law_size = memory_array((size_t)eq->laws->count, sizeof *eq->law_size);
     eq->x = memory_array(n, sizeof *eq->x);
     eq->rate = memory_array((size_t)eq->system->steps, sizeof *eq->rate);
     eq->jacobian = memory_array((size_t)eq->system->nonzeros, sizeof *eq->jacobian);
-    return eq->state && eq->unknown && eq->is_signed && eq->unit && eq->law && eq->is_alive && eq->is_positive && eq->start &&
+    return eq->state && eq->unknown && eq->is_signed && eq->unit && eq->law && eq->is_alive && eq->is_positive && eq->pool && eq->start &&
            eq->is_ratio && eq->size && eq->law_size && eq->x && eq->rate && eq->jacobian;
 }
 
@@ -269,15 +365,16 @@ lb_status equations_new(lb_evaluator *evaluator, const equations_laws *laws, con
     if (status == LB_OK) {
         choose_unknowns(eq, x0, is_zero);
         choose_laws(eq);
-        eq->rows = eq->count + eq->law_count;
-        if (!make_terms(eq))
-            status = status_no_memory(err);
+        status = make_terms(eq) ? LB_OK : status_no_memory(err);
+    }
+    if (status == LB_OK) {
+        choose_forms(eq);
+        status = add_pools(eq, err);
     }
     if (status != LB_OK) {
         equations_free(eq);
         return status;
     }
-    choose_forms(eq);
     for (int i = 0; i < eq->system->n; i++)
         eq->x[i] = eq->system->core_index[i] < 0 ? x0[i] : 0;
     *out = eq;
@@ -295,6 +392,7 @@ void equations_free(equations *eq)
     memory_free(eq->law);
     memory_free(eq->is_alive);
     memory_free(eq->is_positive);
+    memory_free(eq->pool);
     memory_free(eq->start);
     memory_free(eq->term);
     memory_free(eq->is_ratio);
@@ -361,19 +459,19 @@ static double law_value(const equations *eq, int l)
 static double balance_value(const equations *eq, int i, bool is_plain)
 {
     double gain, loss;
-    gain_and_loss(eq, i, &gain, &loss);
-    if (eq->start[i] == eq->start[i + 1])
+    if (eq->start[i] == eq->start[i + 1] || (is_plain && i >= eq->count))
         return 0;
+    gain_and_loss(eq, i, &gain, &loss);
     return eq->is_ratio[i] && !is_plain ? log(gain / loss) : (gain - loss) / eq->size[i];
 }
 
 static bool fill_values(equations *eq, bool is_plain, double *F)
 {
     double sum = 0;
-    for (int i = 0; i < eq->count; i++)
+    for (int i = 0; i < eq->balances; i++)
         F[i] = balance_value(eq, i, is_plain);
     for (int l = 0; l < eq->law_count; l++)
-        F[eq->count + l] = law_value(eq, l);
+        F[eq->balances + l] = law_value(eq, l);
     for (int row = 0; row < eq->rows; row++)
         sum += F[row] * F[row];
     return isfinite(sum);
@@ -465,7 +563,7 @@ static void law_row(equations *eq, int l, double *A)
     eq->law_size[l] = size > 0 ? size : 1;
     double scale = eq->laws->is_positive[law] ? sum : eq->law_size[l];
     for (int j = 0; j < eq->count; j++)
-        A[eq->count + l + (size_t)j * (size_t)eq->rows] = law_entry(eq, law, j) * slope_of(eq, j) / scale;
+        A[eq->balances + l + (size_t)j * (size_t)eq->rows] = law_entry(eq, law, j) * slope_of(eq, j) / scale;
 }
 
 bool equations_matrix(equations *eq, const double *u, double inertia, double *F, double *A)
@@ -480,7 +578,7 @@ bool equations_matrix(equations *eq, const double *u, double inertia, double *F,
         add_reaches(eq);
         plain_rows(eq, is_plain, A);
     }
-    for (int i = 0; i < eq->count && !is_plain; i++)
+    for (int i = 0; i < eq->balances && !is_plain; i++)
         if (eq->is_ratio[i])
             ratio_row(eq, i, A);
     scale_plain_rows(eq, inertia, A);

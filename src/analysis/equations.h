@@ -2,8 +2,13 @@
  * where some species are zero, in one compatibility class.
  *
  * Unknowns u [count]: ln x of an unsigned species, x/unit of a signed one.
- * Rows: one balance per unknown, then one per conservation law; there are more
- * rows than unknowns when there are laws, and they are consistent at a root. */
+ * Rows: one balance per unknown, then the balances of pools, then one per
+ * conservation law.  There are more rows than unknowns when there are pools or
+ * laws, and they are consistent at a root.
+ *
+ * A pool is a weighted sum of species that only flows change: what the other
+ * steps would conserve.  Its balance follows from those of its species, but there
+ * it is a small difference of large terms, so it is better had directly. */
 #ifndef LIMBECK_ANALYSIS_EQUATIONS_H
 #define LIMBECK_ANALYSIS_EQUATIONS_H
 
@@ -20,6 +25,8 @@ typedef struct equations_laws {
     double *total;          /* [count] */
     double *size;           /* [count] sum of |coefficient * x0|: what rounding of the total is measured by */
     bool *is_positive;      /* [count] no negative coefficient, and no signed species in it */
+    int pool_count;
+    double *pool;           /* [pool_count*width] non-negative weights */
 } equations_laws;
 
 /* One step's part in one balance. */
@@ -39,12 +46,16 @@ typedef struct equations {
     double *unit;                   /* [count] of a signed unknown; 1 for the others */
     int *law;                       /* [law_count] rows of laws with an unknown in them */
     int law_count;
-    int rows;                       /* count + law_count */
+    int *pool;                      /* [pool_count] pools of laws that have a balance here */
+    int pool_count;
+    int balances;                   /* count + pool_count */
+    int rows;                       /* balances + law_count */
     bool *is_alive;                 /* [steps] takes part, and its rate does not vanish on the face */
     bool *is_positive;              /* [steps] power law of positive rate, unsigned species alone in it */
-    int *start;                     /* [count+1] terms of each balance */
+    int *start;                     /* [balances+1] terms of each balance */
     equations_term *term;
-    bool *is_ratio;                 /* [count] balance of power laws: ln(gain/loss), else (gain - loss)/size */
+    size_t term_capacity;
+    bool *is_ratio;                 /* [balances] balance of power laws: ln(gain/loss), else (gain - loss)/size */
     bool is_general;                /* some balance is not of that form: the Jacobian is needed */
     bool is_inconsistent;           /* a total cannot be met on this face */
     double *size;                   /* [count] scale of each plain balance, of the last equations_matrix */
@@ -79,8 +90,8 @@ void equations_take(const equations *eq, const double *x, double *u);
 bool equations_values(equations *eq, const double *u, double *F);
 
 /* Residuals and their derivatives A [rows*count], column-major, with fresh
- * sizes.  inertia > 0: one implicit Euler step of 1/inertia instead, all
- * balances plain. */
+ * sizes.  inertia > 0: one implicit Euler step of 1/inertia instead, the balances
+ * of species plain and those of pools left out (zero). */
 bool equations_matrix(equations *eq, const double *u, double inertia, double *F, double *A);
 
 /* The largest of |F| [rows]. */

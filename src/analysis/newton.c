@@ -10,9 +10,9 @@
  * Known roots are deflated with m(u) = prod (1/|u - r|^2 + 1); the step of the
  * deflated system is a multiple of Newton's own (P. E. Farrell, A. Birkisson and
  * S. W. Funke, SIAM J. Sci. Comput. 37 (2015) A2026; the scalar form follows
- * from Sherman and Morrison's formula).  Pseudo-transient continuation with
- * switched evolution relaxation: C. T. Kelley and D. E. Keyes, SIAM J. Numer.
- * Anal. 35 (1998) 508. */
+ * from Sherman and Morrison's formula).  Pseudo-transient continuation, its time step
+ * grown as long as the unknowns move little: C. T. Kelley and D. E. Keyes, SIAM J.
+ * Numer. Anal. 35 (1998) 508. */
 #include "analysis/newton.h"
 
 #include <math.h>
@@ -22,7 +22,7 @@
 #include "base/memory.h"
 #include "base/status.h"
 
-enum { MOST_ITERATIONS = 40, MOST_HALVINGS = 6, MOST_POLISHING = 30, MOST_RELAXATIONS = 80, ALL_ROWS_LIMIT = 120 };
+enum { MOST_ITERATIONS = 40, MOST_HALVINGS = 6, MOST_POLISHING = 30, MOST_RELAXATIONS = 250, ALL_ROWS_LIMIT = 120 };
 
 static const double STEP_LIMIT = 5;             /* e^5: two decades */
 static const double RESIDUAL_TOLERANCE = 1e-11; /* a root, before polishing */
@@ -32,23 +32,40 @@ static const double FAR = 100;                  /* e^-100 = 4e-44: on the way to
 
 /* ---- Workspace -------------------------------------------------------------------- */
 
-/* Which rows make the square form: the independent balances and the laws, when
- * the equations are those of the whole core. */
+/* The balance of a pool takes the place of that of one of its species. */
+static void place_pools(newton *w)
+{
+    const equations *eq = w->eq;
+    for (int p = 0; p < eq->pool_count; p++) {
+        const double *weight = eq->laws->pool + (size_t)eq->pool[p] * (size_t)eq->laws->width;
+        int i = 0;
+        while (i < eq->count && (w->row[i] != i || weight[eq->system->core_index[eq->state[i]]] == 0))
+            i++;
+        if (i < eq->count)
+            w->row[i] = eq->count + p;
+    }
+}
+
+/* Which rows make the square form: the balances, or the independent ones and the
+ * laws when the equations are those of the whole core. */
 static bool choose_rows(newton *w)
 {
     const equations *eq = w->eq;
     const lb_system *system = eq->system;
+    if (eq->rows > eq->count && eq->count <= ALL_ROWS_LIMIT)
+        return false;
     if (eq->law_count == 0) {
         for (int i = 0; i < eq->count; i++)
             w->row[i] = i;
+        place_pools(w);
         return true;
     }
-    if (eq->count <= ALL_ROWS_LIMIT || eq->count != system->core || system->rank + eq->law_count != system->core)
+    if (eq->count != system->core || system->rank + eq->law_count != system->core)
         return false;
     for (int i = 0; i < system->rank; i++)
         w->row[i] = eq->unknown[system->core_state[system->independent[i]]];
     for (int l = 0; l < eq->law_count; l++)
-        w->row[system->rank + l] = eq->count + l;
+        w->row[system->rank + l] = eq->balances + l;
     return true;
 }
 
@@ -307,31 +324,39 @@ static double first_inertia(newton *w)
     return isfinite(fastest) ? fastest : 0;
 }
 
+static double farthest_move(const newton *w, const double *u)
+{
+    double moved = 0;
+    for (int i = 0; i < w->eq->count; i++)
+        moved = fmax(moved, fabs(w->step[i]) / (w->eq->is_signed[i] ? 1 + fabs(u[i]) : 1));
+    return moved;
+}
+
+/* A step that moves an unknown too far is taken again with a shorter time. */
 lb_status newton_relax(newton *w, double *u, bool *is_near, lb_error *err)
 {
-    int rank, count = w->eq->count;
-    double inertia = 1, before = 0;
+    int count = w->eq->count;
+    double inertia = 0;
     *is_near = false;
     for (int i = 0; i < MOST_RELAXATIONS; i++) {
-        if (!equations_matrix(w->eq, u, inertia, w->F, w->A))
+        if (!equations_matrix(w->eq, u, i == 0 ? 1 : inertia, w->F, w->A))
             return LB_OK;
-        double now = norm2(w->eq->rows, w->F);
-        if (now < 1e-6) {
-            *is_near = true;
-            return LB_OK;
+        if (i == 0) {
+            inertia = first_inertia(w);
+            if (!(inertia > 0) || !equations_matrix(w->eq, u, inertia, w->F, w->A))
+                return LB_OK;
         }
-        inertia = i == 0 ? first_inertia(w) : inertia * fmin(fmax(now / before, 0.2), 2);
-        before = now;
-        if (!(inertia > 0) || !equations_matrix(w->eq, u, inertia, w->F, w->A))
+        *is_near = equations_residual(w->eq, w->F) < 1e-6;
+        if (*is_near)
             return LB_OK;
-        lb_status status = solve_all(w, 1e-14, &rank, err);
+        lb_status status = solve(w, err);
         if (status != LB_OK)
             return status == LB_E_NUMERIC ? LB_OK : status;
-        limit_step(w, u);
-        for (int j = 0; j < count; j++)
+        double moved = farthest_move(w, u);
+        inertia *= moved > 1 ? 4 : moved < 0.3 ? 0.25 : 0.6;
+        for (int j = 0; j < count && moved <= 1; j++)
             u[j] += w->step[j];
     }
-    *is_near = true;
     return LB_OK;
 }
 

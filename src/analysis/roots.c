@@ -18,7 +18,7 @@
 #include "base/memory.h"
 #include "base/status.h"
 
-enum { MOST_RELAXED = 6, MOST_ROUNDS = 60 };
+enum { MOST_ROUNDS = 60 };
 
 static const double CONTINUUM_STEP = 0.2;
 static const double VANISHING = 10;         /* decades below the natural range */
@@ -137,13 +137,19 @@ static void set_start(struct search *s, uint64_t i)
         starts_point(&s->starts, i, s->u);
 }
 
+/* Starts that may be relaxed: fewer where a step costs more. */
+static int most_relaxed(const equations *eq)
+{
+    return eq->count <= 60 ? 8 : 1 + 28800 / (eq->count * eq->count);
+}
+
 static lb_status try_start(struct search *s, uint64_t i, bool is_deflated)
 {
     newton_report report;
     set_start(s, i);
     s->out->starts++;
     lb_status status = newton_solve(&s->newton, s->u, s->out->u, is_deflated ? s->out->count : 0, &report, s->err);
-    if (status == LB_OK && !report.converged && !is_deflated && s->relaxed < MOST_RELAXED) {
+    if (status == LB_OK && !report.converged && !is_deflated && s->relaxed < most_relaxed(s->eq)) {
         bool is_near = false;
         s->relaxed++;
         set_start(s, i);

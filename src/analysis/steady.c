@@ -111,12 +111,10 @@ static lb_status add_first_face(struct search *s)
 
 static size_t starts_for(const struct search *s, int unknowns, bool is_first)
 {
-    size_t count = s->options->starts;
-    if (count == 0 && unknowns <= 15)
-        count = 40 + 16 * (size_t)unknowns;
-    else if (count == 0)
-        count = unknowns < 200 ? 2400 / (size_t)unknowns : 12;
-    return is_first ? count : count / 4 > 6 ? count / 4 : 6;
+    size_t count = s->options->starts, n = (size_t)unknowns;
+    if (count == 0)
+        count = n <= 15 ? 40 + 16 * n : n <= 100 ? 2400 / n : n <= 240 ? 240000 / (n * n) : 4;
+    return is_first || count <= 6 ? count : count / 4 > 6 ? count / 4 : 6;
 }
 
 static bool is_within(int n, const bool *is_zero, const bool *outer)
