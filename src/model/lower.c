@@ -33,16 +33,16 @@ char *lower_text(lower *l, const char *format, ...)
 }
 
 /* The list keeps no more than this, and a search over 10^5 names is not free. */
-enum { FAULTS_WORTH_A_SEARCH = 100 };
+enum { MOST_KEPT = 100 };
 
 bool lower_has_room(const lower *l)
 {
-    return lb_diagnostics_faults(l->list) < FAULTS_WORTH_A_SEARCH;
+    return lb_diagnostics_faults(l->list) < MOST_KEPT;
 }
 
 const char *lower_near(lower *l, const names *table, const char *word, const char *otherwise)
 {
-    const char *near = lower_has_room(l) ? names_nearest(table, word) : NULL;
+    const char *near = l->searches++ < MOST_KEPT ? names_nearest(table, word) : NULL;
     return near ? lower_text(l, "did you mean `%s`?", near) : otherwise;
 }
 

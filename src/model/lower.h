@@ -120,6 +120,7 @@ typedef struct lower {
     inference inf;
     lb_status status;               /* LB_OK, LB_E_NOMEM */
     bool dimensions_given_up;
+    size_t searches;                /* for near names so far */
 
     names species_names, definition_names, label_names, plain_names;
     lower_species *species;         size_t species_count, species_capacity;
@@ -146,7 +147,7 @@ lb_status lower_tree(const syntax_tree *tree, lb_diagnostics *list, const lb_set
 bool  lower_no_memory(lower *l);                     /* remembers it; returns false */
 char *lower_text(lower *l, const char *format, ...)  /* in the arena; "" without memory */
     __attribute__((format(printf, 2, 3)));
-bool  lower_has_room(const lower *l);                /* may another fault still be kept (and is worth a search)? */
+bool  lower_has_room(const lower *l);                /* will another fault still be kept? */
 /* The nearest name as a remedy "did you mean `k2`?", or otherwise. */
 const char *lower_near(lower *l, const names *table, const char *word, const char *otherwise);
 

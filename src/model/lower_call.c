@@ -232,14 +232,22 @@ static bool need_energy(lower *l, lower_value *v, const char *name, int temperat
     return lower_need(l, v, &d, lower_text(l, "`%s`", name), NULL);
 }
 
+/* Both arguments are looked at, so that each reports its own fault. */
 static bool need_all(lower *l, const struct function *f, lower_value **a)
 {
     dimension none = dimension_none(), kelvin = lower_dimension(0, 1, 0, 0, 0, 1);
-    if (strcmp(f->name, "arrhenius") == 0)
-        return need_energy(l, a[1], "Ea", 0) & (!a[2] || lower_need(l, a[2], &none, "`n`", NULL));
-    if (strcmp(f->name, "arrhenius_ref") == 0)
-        return need_energy(l, a[2], "Ea", 0) & lower_need(l, a[1], &kelvin, "`Tref`", NULL);
-    return need_energy(l, a[0], "dH", 0) & need_energy(l, a[1], "dS", -1);
+    bool first, second;
+    if (strcmp(f->name, "arrhenius") == 0) {
+        first = need_energy(l, a[1], "Ea", 0);
+        second = !a[2] || lower_need(l, a[2], &none, "`n`", NULL);
+    } else if (strcmp(f->name, "arrhenius_ref") == 0) {
+        first = need_energy(l, a[2], "Ea", 0);
+        second = lower_need(l, a[1], &kelvin, "`Tref`", NULL);
+    } else {
+        first = need_energy(l, a[0], "dH", 0);
+        second = need_energy(l, a[1], "dS", -1);
+    }
+    return first && second;
 }
 
 static lower_value temperature_law(lower *l, const struct function *f, const syntax_expression *node,

@@ -209,8 +209,13 @@ static void add_reverse(lower *l, const lower_reaction *r, const struct settings
     lower_value K = lower_evaluate(l, g->K->value, &context);
     need_order(l, &K, left, right, 0, what, "K is kf/kr; the reverse rate constant is called kr");
     lower_require_sign(l, &K, SIGN_POSITIVE, "equilibrium constant", what);
-    if (K.kind != VALUE_BAD && kf.kind != VALUE_BAD)
-        add_mass_action(l, r, STEP_REVERSE, expression_binary(&l->net->graph, EXPRESSION_DIVIDE, kf.e, K.e));
+    if (K.kind == VALUE_BAD || kf.kind == VALUE_BAD)
+        return;
+    if (K.number > 0 && !isfinite(kf.number / K.number)) {
+        diagnostics_fault(l->list, K.where, NULL, "the reverse rate constant kf/K comes out without a finite value");
+        return;
+    }
+    add_mass_action(l, r, STEP_REVERSE, expression_binary(&l->net->graph, EXPRESSION_DIVIDE, kf.e, K.e));
 }
 
 static void add_law(lower *l, lower_reaction *r, const syntax_argument *a)
