@@ -269,6 +269,12 @@ static form rate_form(int concentration, int time)
     return form_known(&d);
 }
 
+static unsigned sample_bits(unsigned *state)
+{
+    *state = *state * 1664525u + 1013904223u;
+    return *state >> 16;
+}
+
 static void assert_known(inference *inf, int unknown, int concentration, int time)
 {
     dimension d, want;
@@ -306,6 +312,47 @@ START_TEST(test_a_contradiction_is_found)
     ck_assert_int_eq(infer_equal(&inf, &fb, &first, 2), INFER_FITS);
     ck_assert_int_eq(infer_equal(&inf, &fa, &second, 3), INFER_CONFLICT);
     assert_known(&inf, a, 0, -1);
+    infer_clear(&inf);
+}
+END_TEST
+
+/* Equations that hold for dimensions chosen beforehand: none may conflict, and
+ * what comes out determined must be what was chosen. */
+START_TEST(test_consistent_equations_never_conflict)
+{
+    enum { UNKNOWNS = 12, EQUATIONS = 30 };
+    inference inf;
+    unsigned state = (unsigned)_i + 1;
+    int concentration[UNKNOWNS], time[UNKNOWNS], known = 0;
+    ck_assert_int_eq(infer_init(&inf), 0);
+    for (int i = 0; i < UNKNOWNS; i++) {
+        concentration[i] = (int)(sample_bits(&state) % 5) - 2;
+        time[i] = (int)(sample_bits(&state) % 3) - 1;
+        ck_assert_int_eq(infer_new(&inf), i);
+    }
+    for (int e = 0; e < EQUATIONS; e++) {
+        form left = form_none();
+        int c = 0, t = 0;
+        for (int j = 0; j < 4; j++) {
+            int i = (int)(sample_bits(&state) % UNKNOWNS), power = (int)(sample_bits(&state) % 5) - 2;
+            form factor = unknown_form(&inf, i);
+            ck_assert(form_power(&factor, (rational){power, 1}) && form_multiply(&left, &factor, 1));
+            c += power * concentration[i];
+            t += power * time[i];
+        }
+        form right = rate_form(c, t), wrong = rate_form(c + 1, t);
+        ck_assert_int_eq(infer_equal(&inf, &left, &right, e + 1), INFER_FITS);
+        ck_assert_int_eq(infer_equal(&inf, &left, &wrong, e + 1), INFER_CONFLICT);
+    }
+    for (int i = 0; i < UNKNOWNS; i++) {
+        dimension d;
+        form f = unknown_form(&inf, i);
+        if (!infer_resolve(&inf, &f, &d))
+            continue;
+        known++;
+        assert_known(&inf, i, concentration[i], time[i]);
+    }
+    ck_assert_int_gt(known, UNKNOWNS / 2);
     infer_clear(&inf);
 }
 END_TEST
@@ -403,6 +450,7 @@ Suite *units_suite(void)
     tcase_add_test(t, test_doubles_are_taken_for_the_rationals_they_stand_for);
     tcase_add_test(t, test_two_equations_settle_two_unknowns);
     tcase_add_test(t, test_a_contradiction_is_found);
+    tcase_add_loop_test(t, test_consistent_equations_never_conflict, 0, 50);
     tcase_add_test(t, test_a_long_chain_of_equalities_is_settled);
     suite_add_tcase(s, t);
     t = tcase_create("names");

@@ -118,7 +118,7 @@ static double compute(expression_kind kind, double x)
     case EXPRESSION_EXP:   return exp(x);
     case EXPRESSION_LN:    return log(x);
     case EXPRESSION_LOG10: return log10(x);
-    default:               return sqrt(x);
+    default:               return expression_power(x, 0.5);
     }
 }
 

@@ -131,24 +131,10 @@ static double compute(syntax_expression_kind kind, double a, double b)
     }
 }
 
-/* The unit name that an expression ends in: of `3 s` it is `s`; NULL when there is none. */
-static const char *last_unit(const lower *l, const syntax_expression *node)
-{
-    while (node->kind == SYNTAX_JUXTAPOSED || node->kind == SYNTAX_DIVIDE || node->kind == SYNTAX_SUBTRACT)
-        node = node->right;
-    return node->kind == SYNTAX_NAME && lower_is_unit_name(l, node->text) ? node->text : NULL;
-}
-
-/* `s-1` for `s^-1`, `0.05 + [S]` for `0.05 M + [S]`. */
+/* `0.05 M + [S]` for `0.05 + [S]`. */
 static const char *sum_remedy(lower *l, const syntax_expression *node, const char *left, const char *right,
                               bool left_is_bare, bool right_is_bare)
 {
-    const syntax_expression *first = node->right;
-    while (first->kind == SYNTAX_JUXTAPOSED || first->kind == SYNTAX_DIVIDE)
-        first = first->left;
-    const char *ending = node->kind == SYNTAX_SUBTRACT ? last_unit(l, node->left) : NULL;
-    if (ending && first->kind == SYNTAX_NUMBER && first->text)
-        return lower_text(l, "for an exponent write `%s^-%s`", ending, first->text);
     const syntax_expression *bare = left_is_bare ? node->left : right_is_bare ? node->right : NULL;
     const char *wanted = left_is_bare ? right : left;
     if (bare && bare->kind == SYNTAX_NUMBER && bare->text && strcmp(wanted, "another unit") != 0)
