@@ -325,8 +325,8 @@ static void push_operand(lower *l, struct machine *m, const syntax_expression *n
 static void finish_frame(lower *l, struct machine *m, const lower_context *context)
 {
     struct frame f = m->frames[--m->frame_count];
-    lower_value *top = m->values + m->value_count - f.stage;
     m->value_count -= (size_t)f.stage;
+    lower_value *top = f.stage > 0 ? &m->values[m->value_count] : NULL;
     lower_value v;
     if (f.node->kind == SYNTAX_CALL)
         v = value_call(l, f.node, top, f.stage, context);
