@@ -260,7 +260,7 @@ typedef struct lb_steady_state {
     lb_answer stable;
     lb_kind kind;
     bool is_boundary;        /* some core species is zero */
-    double residual;         /* max_i |f_i| / sum of |terms of f_i| */
+    double residual;         /* max_i |f_i| / (sum of |terms of f_i| + sum_j |df_i/dx_j| |x_j|) */
     bool routh_hurwitz_agrees; /* the count of unstable eigenvalues by the Routh array is the same (or not asked: rank above 8) */
 } lb_steady_state;
 
@@ -282,7 +282,7 @@ typedef struct lb_steady {
     int law_count;
     double *total;           /* [law_count] value of each conservation law of the system in the class */
     bool *accumulating;      /* [n] set aside, grows or is not fixed by a law */
-    int continuum;           /* dimension of a continuum of steady states that was met; 0: none */
+    int continuum;           /* dimension of a continuum of steady states that was met, of which one is listed; 0: none */
     size_t starts, converged; /* effort of the search */
     bool interrupted;
 } lb_steady;

@@ -161,6 +161,29 @@ START_TEST(test_product_that_accumulates_is_reported)
 }
 END_TEST
 
+/* ---- Writing networks ----------------------------------------------------------------- */
+
+struct text {
+    char *at;
+    size_t room;
+};
+
+static void put(struct text *t, const char *format, ...)
+{
+    va_list list;
+    va_start(list, format);
+    int length = vsnprintf(t->at, t->room, format, list);
+    va_end(list);
+    ck_assert(length >= 0 && (size_t)length < t->room);
+    t->at += length;
+    t->room -= (size_t)length;
+}
+
+static double draw(uint64_t network, uint64_t *counter, double low, double high)
+{
+    return low + (high - low) * sample_uniform(4711, network, (*counter)++);
+}
+
 /* ---- Classes and faces ------------------------------------------------------------------- */
 
 /* Substrate is used up; product has the total by the law S + C + P, although it
@@ -259,6 +282,50 @@ START_TEST(test_decay_leaves_only_the_empty_state)
 }
 END_TEST
 
+/* In a tank that is fed with A alone, B can only persist if it is there, C and its
+ * descendant D not at all once A does not make them. */
+START_TEST(test_tank_loses_what_nothing_feeds)
+{
+    struct answer a = ask("units none\nresidence = 10\n[A]in = 1\n[B]0 = 1\n[C]0 = 1\nA + 2 B -> 3 B, k = 1\n"
+                          "C -> D, k = 2\nD + A -> A + F, k = 1\n");
+    /* by hand: A (1 - A) = 1/10 or A = 1, B = 1 - A */
+    const double want[3] = {(1 - sqrt(0.6)) / 2, (1 + sqrt(0.6)) / 2, 1};
+    ck_assert_uint_eq(a.steady->count, 3);
+    for (int w = 0; w < 3; w++) {
+        int found = 0;
+        for (int i = 0; i < 3; i++) {
+            const lb_steady_state *state = &a.steady->state[i];
+            found += fabs(value_of(&a, state, "A") - want[w]) < 1e-12 && fabs(value_of(&a, state, "B") - 1 + want[w]) < 1e-12;
+            ck_assert(value_of(&a, state, "C") == 0 && value_of(&a, state, "D") == 0);
+        }
+        ck_assert_int_eq(found, 1);
+    }
+    answer_clear(&a);
+}
+END_TEST
+
+/* Forty species that exchange by twos in a tank: their sum is that of the feed,
+ * which each balance holds only as a small difference of fast steps. */
+START_TEST(test_large_tank_is_solved)
+{
+    static char buffer[20000];
+    struct text t = {buffer, sizeof buffer};
+    uint64_t counter = 0;
+    put(&t, "units none\nresidence = 100\n[S0]in = 1\n");
+    for (int s = 0; s < 40; s++)
+        put(&t, "2 S%d <-> S%d + S%d, kf = %.17g, kr = %.17g\n", s, (s * 7 + 1) % 40, (s + 1) % 40,
+            pow(10, draw(1, &counter, 0, 4)), pow(10, draw(1, &counter, 0, 4)));
+    struct answer a = ask(buffer);
+    double sum = 0;
+    ck_assert_uint_ge(a.steady->count, 1);
+    for (int i = 0; i < a.steady->states; i++)
+        sum += a.steady->state[0].x[i];
+    assert_close(sum, 1.0, 1e-11, 0);
+    ck_assert(a.steady->state[0].residual < 1e-13);
+    answer_clear(&a);
+}
+END_TEST
+
 /* ---- Continua and degenerate states ----------------------------------------------------------- */
 
 /* Kermack and McKendrick's epidemic: without infected, any number of susceptible
@@ -345,27 +412,6 @@ START_TEST(test_signed_roots_far_from_the_start_are_found)
 END_TEST
 
 /* ---- Random networks with planted states ------------------------------------------------------------ */
-
-struct text {
-    char *at;
-    size_t room;
-};
-
-static void put(struct text *t, const char *format, ...)
-{
-    va_list list;
-    va_start(list, format);
-    int length = vsnprintf(t->at, t->room, format, list);
-    va_end(list);
-    ck_assert(length >= 0 && (size_t)length < t->room);
-    t->at += length;
-    t->room -= (size_t)length;
-}
-
-static double draw(uint64_t network, uint64_t *counter, double low, double high)
-{
-    return low + (high - low) * sample_uniform(4711, network, (*counter)++);
-}
 
 /* Two molecules in, two out. */
 struct random_step {
@@ -564,15 +610,23 @@ START_TEST(test_negative_start_is_refused)
 }
 END_TEST
 
+/* A face, a continuum, a tank with a pool. */
+static const char *const small[] = {
+    "units none\n[E]0 = 1\n[S]0 = 10\nE + S <-> C, kf = 1, kr = 0.5\nC -> E, k = 2\n",
+    "units none\n[S]0 = 10\n[I]0 = 1\nS + I -> 2 I, k = 1\nI -> R, k = 1\n",
+    "units none\nresidence = 10\n[A]in = 1\nA + B -> 2 B, k = 1\n[B]0 = 1\n",
+};
+enum { SMALL = sizeof small / sizeof *small };
+
 START_TEST(test_each_failing_allocation_is_survived)
 {
-    lb_network *network = support_network("units none\n[E]0 = 1\n[S]0 = 10\nE + S <-> C, kf = 1, kr = 0.5\nC -> E, k = 2\n");
+    lb_network *network = support_network(small[_i]);
     lb_system *system = NULL;
     lb_error err;
     ck_assert_int_eq(lb_system_new(network, &system, &err), LB_OK);
-    lb_steady_options options = {.starts = 3};
+    lb_steady_options options = {.starts = 2};
     lb_status status = LB_E_NOMEM;
-    for (long k = 0; status != LB_OK; k += k < 400 ? 1 : 97) {
+    for (long k = 0; status != LB_OK; k += k < 600 ? 1 : 97) {
         lb_steady *steady = NULL;
         memory_fail_after(k);
         status = lb_steady_solve(system, &options, &steady, &err);
@@ -602,6 +656,8 @@ Suite *steady_suite(void)
     tcase_add_test(faces, test_faces_of_faces_are_searched);
     tcase_add_test(faces, test_rate_law_that_vanishes_makes_a_face);
     tcase_add_test(faces, test_decay_leaves_only_the_empty_state);
+    tcase_add_test(faces, test_tank_loses_what_nothing_feeds);
+    tcase_add_test(faces, test_large_tank_is_solved);
     suite_add_tcase(suite, faces);
     TCase *degenerate = tcase_create("degenerate");
     tcase_add_test(degenerate, test_continuum_on_a_face_is_one_state);
@@ -620,7 +676,7 @@ Suite *steady_suite(void)
     tcase_add_test(contract, test_same_seed_gives_the_same_bits);
     tcase_add_test(contract, test_monitor_stops_the_search);
     tcase_add_test(contract, test_negative_start_is_refused);
-    tcase_add_test(contract, test_each_failing_allocation_is_survived);
+    tcase_add_loop_test(contract, test_each_failing_allocation_is_survived, 0, SMALL);
     suite_add_tcase(suite, contract);
     return suite;
 }

@@ -66,9 +66,15 @@ typedef struct equations {
 } equations;
 
 /* Laws of the core (of the steps that are alive at the bound constants) with
- * the totals of x0 [n]. */
+ * the totals of x0 [n], and pools.  Clear laws after a failure too. */
 lb_status equations_laws_init(equations_laws *laws, lb_evaluator *evaluator, const double *x0, lb_error *err);
 void equations_laws_clear(equations_laws *laws);
+
+bool equations_is_signed(const lb_system *system, int state);
+
+/* A point x [n] in general position, close to one: powers of different species do
+ * not cancel there. */
+void equations_probe(const lb_system *system, int probe, double *x);
 
 /* Which steps of the core have a rate that does not vanish identically when the
  * states with is_zero [n] are zero: by evaluation at several points. */
@@ -82,8 +88,6 @@ void equations_free(equations *eq);
 
 /* Sets eq->x from u. */
 void equations_place(equations *eq, const double *u);
-/* u of a state x [n] with positive unsigned entries. */
-void equations_take(const equations *eq, const double *x, double *u);
 
 /* Residuals F [rows] at u, plain rows scaled by the sizes of the last
  * equations_matrix.  False when something is not finite. */

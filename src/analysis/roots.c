@@ -121,8 +121,10 @@ static lb_status take_root(struct search *s, const double *u, const newton_repor
     lb_status status = is_singular ? test_continuum(s, u, &is_continuum) : LB_OK;
     if (status != LB_OK)
         return status;
-    if (is_continuum)
+    if (is_continuum) {
         s->out->continuum = s->eq->count - report->rank;
+        s->out->continuum_root = s->out->count;
+    }
     return keep(s, u);
 }
 
@@ -160,9 +162,11 @@ static lb_status try_start(struct search *s, uint64_t i, bool is_deflated)
     return status == LB_OK && report.converged ? take_root(s, s->u, &report) : status;
 }
 
-static bool must_stop(struct search *s)
+static bool must_stop(struct search *s, size_t done, size_t all)
 {
     const lb_monitor *monitor = s->options->monitor;
+    if (monitor && monitor->progress)
+        monitor->progress(monitor->context, "steady states", (double)done / (double)all);
     if (monitor && monitor->stop && monitor->stop(monitor->context))
         s->out->interrupted = true;
     return s->out->interrupted;
@@ -172,15 +176,16 @@ static bool must_stop(struct search *s)
  * then deflated ones. */
 static lb_status run_starts(struct search *s)
 {
-    size_t wanted = s->options->starts, deflated = wanted / 2, i = 0;
+    size_t wanted = s->options->starts, deflated = wanted / 2, i = 0, end = wanted;
     lb_status status = LB_OK;
-    for (size_t end = wanted; status == LB_OK && i < end && !must_stop(s); i++) {
+    for (; status == LB_OK && i < end && !must_stop(s, i, end + deflated); i++) {
         int before = s->out->count;
         status = try_start(s, i, false);
         if (s->out->count > before && !s->options->is_fixed)
             end = i + 1 + wanted < MOST_ROUNDS * wanted ? i + 1 + wanted : MOST_ROUNDS * wanted;
     }
-    for (size_t end = i + deflated; status == LB_OK && i < end && s->out->count > 0 && !must_stop(s); i++)
+    end = s->out->count > 0 ? i + deflated : i;
+    for (; status == LB_OK && i < end && !must_stop(s, i, end); i++)
         status = try_start(s, i, true);
     return status;
 }

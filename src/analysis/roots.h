@@ -9,7 +9,8 @@ typedef struct roots {
     int count;
     size_t capacity;
     double **u;             /* [count] each [equations count]; owned */
-    int continuum;          /* dimension of a continuum that was met, with one of its points among u; 0: none */
+    int continuum;          /* dimension of a continuum that was met; 0: none */
+    int continuum_root;     /* its one point among u */
     size_t starts, converged;
     bool interrupted;
 } roots;

@@ -32,6 +32,7 @@ struct search {
     equations_laws laws;
     faces faces;
     faces continua;         /* those that have a continuum of steady states */
+    size_t continuum_state; /* the one state of out that stands for it, when out->continuum > 0 */
     lb_steady *out;
     size_t capacity;        /* of out->state */
     lb_error *err;
@@ -143,17 +144,41 @@ static lb_status ends_continuum(struct search *s, const bool *is_zero, equations
     return status;
 }
 
+/* One state stands for all continua: a point of the first one of the highest
+ * dimension. */
+static lb_status add_continuum(struct search *s, const bool *is_zero, equations *eq, const double *u, int extent)
+{
+    lb_steady *out = s->out;
+    lb_status status = faces_add(&s->continua, is_zero, s->err);
+    if (status != LB_OK || extent <= out->continuum)
+        return status;
+    size_t before = out->count;
+    status = add_state(s, eq, u);
+    if (status != LB_OK || out->count == before)
+        return status;
+    if (out->continuum > 0) {
+        state_clear(&out->state[s->continuum_state]);
+        out->state[s->continuum_state] = out->state[--out->count];
+    } else {
+        s->continuum_state = before;
+    }
+    out->continuum = extent;
+    return LB_OK;
+}
+
 static lb_status add_states(struct search *s, const bool *is_zero, equations *eq, const roots *found)
 {
     lb_status status = LB_OK;
     for (int i = 0; status == LB_OK && i < found->count; i++) {
         bool is_end = false;
         status = ends_continuum(s, is_zero, eq, found->u[i], &is_end);
-        if (status == LB_OK && !is_end)
+        if (status != LB_OK || is_end)
+            continue;
+        if (found->continuum > 0 && i == found->continuum_root)
+            status = add_continuum(s, is_zero, eq, found->u[i], found->continuum);
+        else
             status = add_state(s, eq, found->u[i]);
     }
-    if (status == LB_OK && found->continuum > 0)
-        status = faces_add(&s->continua, is_zero, s->err);
     return status;
 }
 
@@ -172,8 +197,6 @@ static lb_status search_roots(struct search *s, const bool *is_zero, bool is_fir
     s->out->starts += found.starts;
     s->out->converged += found.converged;
     s->out->interrupted = s->out->interrupted || found.interrupted;
-    if (found.continuum > s->out->continuum)
-        s->out->continuum = found.continuum;
     roots_clear(&found);
     return status;
 }
@@ -305,7 +328,9 @@ lb_status lb_steady_solve(const lb_system *system, const lb_steady_options *opti
     faces_init(&s.faces, system->n);
     faces_init(&s.continua, system->n);
     s.out = memory_zeroed(1, sizeof *s.out);
-    lb_status status = s.out ? prepare(&s) : status_no_memory(err);
+    lb_status status = s.out ? system_require_laws(system, err) : status_no_memory(err);
+    if (status == LB_OK)
+        status = prepare(&s);
     if (status == LB_OK)
         status = describe_class(&s);
     if (status == LB_OK)
