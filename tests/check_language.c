@@ -205,7 +205,7 @@ static int check_document(FILE *in)
         line[strcspn(line, "\n")] = '\0';
         if (!is_inside && strncmp(line, "```", 3) == 0 && is_kind(line + 3)) {
             clear(&e);
-            snprintf(e.kind, sizeof e.kind, "%s", line + 3);
+            snprintf(e.kind, sizeof e.kind, "%.15s", line + 3);
             e.line = number + 1;
             is_inside = true;
         } else if (is_inside && strcmp(line, "```") == 0) {
