@@ -240,7 +240,8 @@ static lb_status add_equation(balance *b, const shares *s, size_t first, size_t 
     return status;
 }
 
-static lb_status add_step(balance *b, const lb_network *net, const network_step *step, const int *column_of, shares *s)
+static lb_status add_step(balance *b, const lb_network *net, const network_step *step, const int *column_of,
+                          shares *s)
 {
     lb_status status = LB_OK;
     for (int i = 0; i < step->entry_count && status == LB_OK; i++) {

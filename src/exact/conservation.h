@@ -37,6 +37,9 @@ lb_status conservation_find(const lb_network *net, const int *state, int width, 
 void conservation_clear(conservation *laws);
 lb_status conservation_copy(const conservation *laws, conservation *out); /* LB_OK or LB_E_NOMEM */
 
+/* Fill err for a status that came out of exact arithmetic. */
+lb_status conservation_report(lb_error *err, lb_status status);
+
 /* Choose dependent species by exact elimination of the first `basis` rows, and
  * give L: x_dep = const - L x_ind.  dependent [basis], independent [width-basis],
  * elimination [basis*(width-basis)] column-major; caller's arrays. */

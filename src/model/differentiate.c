@@ -6,7 +6,6 @@
  * section 3.1, applied to symbols).  A quotient is differentiated as
  * (u' - (u/v) v')/v, which shares the quotient itself. */
 #include <math.h>
-#include <stdlib.h>
 
 #include "base/memory.h"
 #include "model/expression.h"
@@ -95,22 +94,10 @@ static expression chain_rule(expression_graph *g, expression e, expression da, e
     }
 }
 
-static expression derivative_of_leaf(expression_graph *g, const expression_node *node, expression_kind leaf, int index)
+static expression derivative_of_leaf(expression_graph *g, const expression_node *node, expression_kind leaf,
+                                     int index)
 {
     return expression_number(g, node->kind == leaf && node->left == index ? 1 : 0);
-}
-
-static int by_number(const void *a, const void *b)
-{
-    int left = *(const int *)a, right = *(const int *)b;
-    return (left > right) - (left < right);
-}
-
-/* Derivative of an operand: looked up by its place in the list of nodes below. */
-static expression known(const int *list, size_t length, const int *derivative, int e)
-{
-    const int *place = bsearch(&e, list, length, sizeof *list, by_number);
-    return derivative[place - list];
 }
 
 expression expression_derivative(expression_graph *g, expression e, expression_kind leaf, int index)
@@ -128,8 +115,9 @@ expression expression_derivative(expression_graph *g, expression e, expression_k
         if (node.kind <= EXPRESSION_STATE) {
             derivative[i] = derivative_of_leaf(g, &node, leaf, index);
         } else {
-            expression da = known(list, i, derivative, node.left);
-            expression db = node.right >= 0 ? known(list, i, derivative, node.right) : expression_number(g, 0);
+            expression da = derivative[expression_place(list, i, node.left)];
+            expression db = node.right < 0 ? expression_number(g, 0)
+                                           : derivative[expression_place(list, i, node.right)];
             derivative[i] = is_zero(g, da) && is_zero(g, db) ? da : chain_rule(g, list[i], da, db);
         }
         if (derivative[i] == EXPRESSION_NONE)

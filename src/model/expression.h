@@ -28,6 +28,7 @@
 typedef int expression;                 /* number of a node; EXPRESSION_NONE: none, or no memory */
 #define EXPRESSION_NONE (-1)
 
+/* Leaves first: an operation is what comes after EXPRESSION_STATE. */
 typedef enum expression_kind {
     EXPRESSION_NUMBER,      /* value */
     EXPRESSION_CONSTANT,    /* index: constant 0..m-1 */
@@ -82,6 +83,8 @@ expression expression_derivative(expression_graph *g, expression e, expression_k
 /* The nodes below e, itself included, in ascending order: *list (the caller's, to
  * memory_free), *length.  O(length log length).  LB_OK or LB_E_NOMEM. */
 lb_status expression_below(const expression_graph *g, expression e, int **list, size_t *length);
+/* Where e, which must be in it, stands in such a list. */
+size_t expression_place(const int *list, size_t length, expression e);
 
 /* Marks the nodes that a root needs: `needed` [count] zeroed before the first root. */
 void expression_mark(const expression_graph *g, expression root, unsigned char *needed);
@@ -92,6 +95,9 @@ void expression_evaluate(const expression_graph *g, int first, int last, const u
                          const double *k, const double *x, double *values);
 /* Value of one expression; allocates; NAN without memory. */
 double expression_value(const expression_graph *g, expression e, const double *k, const double *x);
+
+/* One operation; b counts for binary ones only. */
+double expression_apply(expression_kind kind, double a, double b);
 
 /* The partial operations, shared with the tables. */
 double expression_power(double x, double n);
@@ -108,11 +114,12 @@ void expression_write_number(double value, buffer *out);
  * name(context, leaf kind, index) gives the text of a leaf. */
 #define EXPRESSION_TEXT_NODES 100000
 typedef const char *expression_namer(const void *context, expression_kind leaf, int index);
-void expression_write(const expression_graph *g, expression e, expression_namer *name, const void *context, buffer *out);
+void expression_write(const expression_graph *g, expression e, expression_namer *name, const void *context,
+                      buffer *out);
 /* The same with names for whole subexpressions: alias(context, e) gives the name of a
  * node or NULL; it is asked for the root too unless `expand`. */
 typedef const char *expression_aliaser(const void *context, expression e);
-void expression_write_aliased(const expression_graph *g, expression e, expression_namer *name, expression_aliaser *alias,
-                              bool expand, const void *context, buffer *out);
+void expression_write_aliased(const expression_graph *g, expression e, expression_namer *name,
+                              expression_aliaser *alias, bool expand, const void *context, buffer *out);
 
 #endif

@@ -153,8 +153,8 @@ static void write_node(writer *w, const expression_node *node)
     }
 }
 
-void expression_write_aliased(const expression_graph *g, expression e, expression_namer *name, expression_aliaser *alias,
-                              bool expand, const void *context, buffer *out)
+void expression_write_aliased(const expression_graph *g, expression e, expression_namer *name,
+                              expression_aliaser *alias, bool expand, const void *context, buffer *out)
 {
     writer w = {.g = g, .name = name, .alias = expand ? NULL : alias, .context = context, .out = out};
     size_t written = 0;
@@ -174,7 +174,8 @@ void expression_write_aliased(const expression_graph *g, expression e, expressio
     memory_free(w.stack);
 }
 
-void expression_write(const expression_graph *g, expression e, expression_namer *name, const void *context, buffer *out)
+void expression_write(const expression_graph *g, expression e, expression_namer *name, const void *context,
+                      buffer *out)
 {
     expression_write_aliased(g, e, name, NULL, true, context, out);
 }

@@ -280,7 +280,8 @@ int network_add_term(lb_network *net, int reaction, bool is_product, int species
     int *place = &net->species[species].place[is_product];
     if (*place < *count && (*side)[*place].species == species) {
         network_term *old = &(*side)[*place];
-        return coefficient_add(&net->graph, &old->num, &old->den, &old->expression, num, den, coefficient) ? *place : -1;
+        bool added = coefficient_add(&net->graph, &old->num, &old->den, &old->expression, num, den, coefficient);
+        return added ? *place : -1;
     }
     network_term *grown = network_grow(*side, *count, sizeof *grown);
     if (!grown)

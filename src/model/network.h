@@ -129,8 +129,8 @@ struct lb_network {
     expression residence;           /* EXPRESSION_NONE without a tank */
     bool is_open;                   /* tank, held species, sources or sinks */
     char *source;                   /* text of the file, for witnesses; may be NULL */
-    int *definition_of;             /* [graph.count] of a node: its derived constant, or derived_count + its reading,
-                                     * or -1; NULL when there are no definitions */
+    int *definition_of;             /* [graph.count] of a node: its derived constant, or derived_count + its
+                                     * reading, or -1; NULL when there are no definitions */
 };
 
 /* Name of a leaf as the file writes it, for expression_write (context: the network). */

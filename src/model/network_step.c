@@ -116,10 +116,10 @@ static void push(product *p, expression e, double power)
 /* factor *= e^power for what has constants alone. */
 static void take_constant(product *p, expression e, double power)
 {
-    expression inverse_or_self = e;
+    expression_kind kind = power < 0 ? EXPRESSION_DIVIDE : EXPRESSION_MULTIPLY;
     if (fabs(power) != 1)
-        inverse_or_self = expression_binary(p->g, EXPRESSION_POWER, e, expression_number(p->g, fabs(power)));
-    p->factor = expression_binary(p->g, power < 0 ? EXPRESSION_DIVIDE : EXPRESSION_MULTIPLY, p->factor, inverse_or_self);
+        e = expression_binary(p->g, EXPRESSION_POWER, e, expression_number(p->g, fabs(power)));
+    p->factor = expression_binary(p->g, kind, p->factor, e);
 }
 
 static void take_state(product *p, int state, double power)
@@ -397,8 +397,16 @@ static bool add_flow(lb_network *net, int state, network_direction direction, ex
     if (!step->orders)
         return false;
     step->orders[step->order_count++] = (network_order){.state = state, .order = 1};
-    step->rate = expression_binary(&net->graph, EXPRESSION_DIVIDE, expression_state(&net->graph, state), net->residence);
+    expression concentration = expression_state(&net->graph, state);
+    step->rate = expression_binary(&net->graph, EXPRESSION_DIVIDE, concentration, net->residence);
     return step->rate != EXPRESSION_NONE;
+}
+
+static bool is_fed(const lb_network *net, const network_species *species)
+{
+    double feed;
+    bool is_zero = expression_is_number(&net->graph, species->feed, &feed) && feed == 0;
+    return species->feed != EXPRESSION_NONE && !is_zero;
 }
 
 int network_set_tank(lb_network *net, expression residence)
@@ -411,11 +419,10 @@ int network_set_tank(lb_network *net, expression residence)
     expression outflow = expression_binary(g, EXPRESSION_DIVIDE, expression_number(g, 1), residence);
     for (int state = 0; state < net->states; state++) {
         const network_species *species = &net->species[net->state_species[state]];
-        double feed;
         if (species->is_retained)
             continue;
-        bool is_fed = species->feed != EXPRESSION_NONE && !(expression_is_number(g, species->feed, &feed) && feed == 0);
-        if (is_fed && !add_flow(net, state, STEP_INFLOW, expression_binary(g, EXPRESSION_DIVIDE, species->feed, residence)))
+        expression inflow = expression_binary(g, EXPRESSION_DIVIDE, species->feed, residence);
+        if (is_fed(net, species) && !add_flow(net, state, STEP_INFLOW, inflow))
             return -1;
         if (!add_flow(net, state, STEP_OUTFLOW, outflow))
             return -1;

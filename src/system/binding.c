@@ -4,7 +4,6 @@
  * power laws, coefficients, parts of general laws) in a second array of node
  * values, checks it, and only then takes the place of the old one. */
 #include <math.h>
-#include <string.h>
 
 #include "base/memory.h"
 #include "base/status.h"

@@ -87,7 +87,8 @@ lb_status core_select(lb_system *system)
     sel.counts = system->core_step = memory_zeroed(steps, sizeof *system->core_step);
     system->core_state = memory_array(n, sizeof *system->core_state);
     system->core_index = memory_array(n, sizeof *system->core_index);
-    if (sel.uses && sel.changes && sel.is_aside && sel.queue && sel.counts && system->core_state && system->core_index) {
+    if (sel.uses && sel.changes && sel.is_aside && sel.queue && sel.counts && system->core_state &&
+        system->core_index) {
         select_all(&sel);
         number_core(system, sel.is_aside);
         status = LB_OK;

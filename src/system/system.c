@@ -1,8 +1,6 @@
 /* The system: pattern, tables, core and laws of one network, put together. */
 #include "system/system.h"
 
-#include <string.h>
-
 #include "base/memory.h"
 #include "base/status.h"
 #include "system/core.h"
@@ -46,7 +44,8 @@ static lb_status find_laws(lb_system *system, lb_error *err)
     if (status == LB_OK && system->core == system->n)
         status = conservation_copy(&system->laws, &system->core_laws);
     else if (status == LB_OK)
-        status = conservation_find(net, system->core_state, system->core, system->core_step, &system->core_laws, err);
+        status = conservation_find(net, system->core_state, system->core, system->core_step,
+                                   &system->core_laws, err);
     if (status == LB_OK)
         status = core_reduce(system, err);
     if (status == LB_OK)

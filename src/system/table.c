@@ -51,7 +51,9 @@ static lb_status fill_entries(table *t, const lb_network *net)
             const network_entry *entry = &step->entries[i];
             t->entry_state[at] = entry->state;
             t->entry_value[at] = entry->expression == EXPRESSION_NONE ? (double)entry->num / (double)entry->den : 0;
-            t->entry_node[at] = entry->expression == EXPRESSION_NONE ? EXPRESSION_NONE : t->node_of[entry->expression];
+            t->entry_node[at] = EXPRESSION_NONE;
+            if (entry->expression != EXPRESSION_NONE)
+                t->entry_node[at] = t->node_of[entry->expression];
         }
         t->entry_start[s + 1] = at;
     }
@@ -125,12 +127,13 @@ static int ascending(const void *a, const void *b)
 static int place_in_pattern(const int *column_start, const int *row, int i, int j)
 {
     const int *column = row + column_start[j];
-    const int *found = bsearch(&i, column, (size_t)(column_start[j + 1] - column_start[j]), sizeof *column, ascending);
+    size_t length = (size_t)(column_start[j + 1] - column_start[j]);
+    const int *found = bsearch(&i, column, length, sizeof *column, ascending);
     return (int)(found - row);
 }
 
-/* Calls for every (entry, slot) of every step, in network order: counts the terms of each
- * nonzero when `next` is NULL, else puts them in place. */
+/* Every pair (slot, entry) of every step is a term, in network order: counted for each nonzero
+ * when `next` is NULL, else put in place. */
 static void walk_terms(table *t, const int *column_start, const int *row, size_t *next)
 {
     for (int s = 0; s < t->steps; s++) {
