@@ -258,6 +258,33 @@ START_TEST(test_slow_attraction_is_no_centre)
 }
 END_TEST
 
+START_TEST(test_slower_attraction_is_no_centre)
+{
+    bench b;
+    find_in(&b, BRUSSELATOR("2.0002"), CYCLE_CLOSED);
+    /* The multiplier is exp(-2 (B - 2) pi) to first order. */
+    assert_close(1 - b.report.cycle->multipliers[0].re, 4e-4 * 3.14159265358979, 0.02, 0);
+    bench_close(&b);
+}
+END_TEST
+
+/* Asymptotic period for large mu: A. A. Dorodnitsyn, Prikl. Mat. Mekh. 11 (1947) 313,
+ * with the constants as corrected since (from memory); the next term is of the order
+ * mu^(-4/3). */
+START_TEST(test_relaxation_oscillations_of_large_ratios)
+{
+    static const double ratio[] = {30, 100, 1000};
+    static const char *const text[] = {VAN_DER_POL("30"), VAN_DER_POL("100"), VAN_DER_POL("1000")};
+    double mu = ratio[_i];
+    double series = (3 - 2 * log(2)) * mu + 7.014322 / cbrt(mu) - 2 * log(mu) / (3 * mu) - 1.3246 / mu;
+    bench b;
+    find_in(&b, text[_i], CYCLE_CLOSED);
+    assert_close(b.report.cycle->period, series, 0, 0.5 * pow(mu, -4.0 / 3));
+    ck_assert(fabs(b.report.cycle->multipliers[0].re) < 1e-8);
+    bench_close(&b);
+}
+END_TEST
+
 /* ---- Rest --------------------------------------------------------------------------------- */
 
 START_TEST(test_stable_focus_is_rest_with_swings)
@@ -396,6 +423,28 @@ START_TEST(test_torus_is_undecided)
 }
 END_TEST
 
+/* May and Leonard's three competitors approach a cycle of saddles: every turn takes
+ * longer than the last, and nothing closes. */
+START_TEST(test_heteroclinic_cycle_is_undecided)
+{
+    bench b;
+    find_in(&b, "units none\n[X]0 = 0.5\n[Y]0 = 0.3\n[Z]0 = 0.2\n"
+            "-> X, v = [X]*(1 - [X] - 0.8*[Y] - 1.5*[Z])\n-> Y, v = [Y]*(1 - [Y] - 0.8*[Z] - 1.5*[X])\n"
+            "-> Z, v = [Z]*(1 - [Z] - 0.8*[X] - 1.5*[Y])\n", CYCLE_UNDECIDED);
+    bench_close(&b);
+}
+END_TEST
+
+/* A start without prey stays on its face and rests at a saddle. */
+START_TEST(test_rest_on_an_invariant_face)
+{
+    bench b;
+    find_in(&b, "units none\n[Y]0 = 1\nX -> 2 X, k = 1\nX + Y -> 2 Y, k = 1\nY -> P, k = 1\n", CYCLE_SETTLED);
+    ck_assert(fabs(b.report.rest[lb_network_find_state(b.net, "Y")]) < 1e-6);
+    bench_close(&b);
+}
+END_TEST
+
 /* ---- Closing on demand ----------------------------------------------------------------------- */
 
 START_TEST(test_close_finds_the_least_period)
@@ -488,6 +537,8 @@ Suite *cycle_suite(void)
     tcase_add_loop_test(close, test_brusselator_cycle_is_the_same_from_three_starts, 0, 3);
     tcase_add_test(close, test_products_have_no_extrema);
     tcase_add_test(close, test_slow_attraction_is_no_centre);
+    tcase_add_test(close, test_slower_attraction_is_no_centre);
+    tcase_add_loop_test(close, test_relaxation_oscillations_of_large_ratios, 0, 3);
     suite_add_tcase(suite, close);
     TCase *rest = tcase_create("rest");
     tcase_set_timeout(rest, 60);
@@ -505,6 +556,8 @@ Suite *cycle_suite(void)
     tcase_add_loop_test(other, test_growth_is_unbounded, 0, 3);
     tcase_add_loop_test(other, test_chaos_is_undecided, 0, 2);
     tcase_add_test(other, test_torus_is_undecided);
+    tcase_add_test(other, test_heteroclinic_cycle_is_undecided);
+    tcase_add_test(other, test_rest_on_an_invariant_face);
     suite_add_tcase(suite, other);
     TCase *demand = tcase_create("on demand");
     tcase_set_timeout(demand, 120);

@@ -172,6 +172,7 @@ lb_status closed_find(closed_orbit *c, lb_evaluator *evaluator, const double *x,
 /* ---- A second path ----------------------------------------------------------------- */
 
 #define PUSH 0.02                 /* in amplitudes */
+#define FEW_PERIODS 6             /* to wait for a trajectory to fall back, in a small system */
 #define OTHER_TOLERANCE 100       /* times the first one */
 
 /* c->x moved by PUSH amplitudes, species in turn up and down, halved until inside. */
@@ -187,42 +188,93 @@ static void push(const closed_orbit *c, double *y, double *x)
     } while (!space_is_inside(&c->s, x) && size > 1e-6);
 }
 
-/* From the pushed state x: let it fall back for two periods, then close. */
-static lb_status second_path(const closed_orbit *c, double *x, const orbit_options *options,
-                             double *period, lb_error *err)
+/* How many periods it takes until what is left of the push is below the closure. */
+static double periods_to_forget(const closed_orbit *c)
 {
-    integrator *it = NULL;
-    shooting shot = {.converged = false};
-    integrator_options how = {.tolerance = options->tolerance, .method = options->method,
-                              .max_steps = options->max_steps, .allow_negative = true,
-                              .monitor = options->monitor};
-    lb_status status = integrator_new(c->s.evaluator, &how, &it, err);
-    if (status == LB_OK && c->stable == LB_YES) {
-        integrator_start(it, 0, x);
-        status = integrator_to(it, 2 * c->period, err);
-        if (status == LB_OK)
-            memcpy(x, integrator_state(it), (size_t)c->s.n * sizeof *x);
+    double size = hypot(c->multipliers[0].re, c->multipliers[0].im);
+    return size > 0 ? fmax(1, ceil(log(CLOSED / PUSH) / log(size))) : 1;
+}
+
+/* Period from the flow alone: after some periods, the time until the trajectory comes
+ * back to the plane across the flow where it was; NAN when it does not. */
+static lb_status period_by_return(const closed_orbit *c, integrator *it, double periods, double *weight,
+                                  double *x, double *period, lb_error *err)
+{
+    bool found = false;
+    double level = 0;
+    *period = NAN;
+    integrator_start(it, 0, x);
+    lb_status status = integrator_to(it, periods * c->period, err);
+    if (status != LB_OK)
+        return status;
+    memcpy(x, integrator_state(it), (size_t)c->s.n * sizeof *x);
+    lb_rhs(c->s.evaluator, x, weight);
+    for (int i = 0; i < c->s.n; i++) {
+        bool is_core = c->s.system->core_index[i] >= 0;
+        weight[i] = is_core ? weight[i] / (c->scale[i] * c->scale[i]) : 0;
+        level += weight[i] * x[i];
     }
+    integrator_start(it, 0, x);
+    status = integrator_to(it, 0.9 * c->period, err);
+    while (status == LB_OK && !found && integrator_time(it) < 1.1 * c->period) {
+        status = integrator_step(it, 1.1 * c->period, err);
+        if (status == LB_OK)
+            status = integrator_crossing(it, weight, level, +1, &found, period, x, err);
+    }
+    if (status != LB_OK || !found)
+        *period = NAN;
+    return status;
+}
+
+/* Period by shooting again from x. */
+static lb_status period_by_shooting(const closed_orbit *c, double *x, const orbit_options *options,
+                                    double *period, lb_error *err)
+{
+    shooting shot = {.converged = false};
     *period = c->period;
-    if (status == LB_OK)
-        status = shooting_close(&c->s, x, period, c->scale, NULL, 100 * GOAL, options, &shot, err);
+    lb_status status = shooting_close(&c->s, x, period, c->scale, NULL, 100 * GOAL, options, &shot, err);
     if (status != LB_OK || !shot.converged)
         *period = NAN;
     shooting_clear(&shot);
+    return status;
+}
+
+/* From the pushed state x: an attracting orbit is fallen back to, which needs no
+ * tangents and is cheap in large systems; where that takes long, two periods and
+ * then shooting; an orbit that does not attract, shooting alone. */
+static lb_status second_path(const closed_orbit *c, double *x, double *weight, const orbit_options *options,
+                             double *period, lb_error *err)
+{
+    integrator *it = NULL;
+    integrator_options how = {.tolerance = options->tolerance, .method = options->method,
+                              .allow_negative = true, .monitor = options->monitor};
+    double periods = c->stable == LB_YES ? periods_to_forget(c) : INFINITY;
+    lb_status status = integrator_new(c->s.evaluator, &how, &it, err);
+    if (status == LB_OK && periods <= fmax(FEW_PERIODS, c->s.rank)) {
+        status = period_by_return(c, it, periods, weight, x, period, err);
+    } else if (status == LB_OK) {
+        integrator_start(it, 0, x);
+        status = c->stable == LB_YES ? integrator_to(it, 2 * c->period, err) : LB_OK;
+        memcpy(x, integrator_state(it), (size_t)c->s.n * sizeof *x);
+        if (status == LB_OK)
+            status = period_by_shooting(c, x, options, period, err);
+    }
     integrator_free(it);
+    if (status != LB_OK)
+        *period = NAN;
     return is_fatal(status) ? status : LB_OK;
 }
 
 lb_status closed_confirm(const closed_orbit *c, const lb_monitor *monitor, double *difference, lb_error *err)
 {
-    double *x = memory_array((size_t)(c->s.n + c->s.rank), sizeof *x), period;
+    double *x = memory_array((size_t)(2 * c->s.n + c->s.rank), sizeof *x), period;
     *difference = NAN;
     if (!x)
         return status_no_memory(err);
     orbit_options options = {.tolerance = OTHER_TOLERANCE * c->tolerance, .method = LB_METHOD_STIFF,
                              .monitor = monitor};
-    push(c, x + c->s.n, x);
-    lb_status status = second_path(c, x, &options, &period, err);
+    push(c, x + 2 * c->s.n, x);
+    lb_status status = second_path(c, x, x + c->s.n, &options, &period, err);
     if (status == LB_OK)
         *difference = fabs(period - c->period) / c->period;
     memory_free(x);

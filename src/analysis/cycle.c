@@ -211,9 +211,9 @@ static lb_status report_orbit(explorer *e, const closed_orbit *orbit, double con
 
 /* ---- Rest and runaway -------------------------------------------------------------------- */
 
-/* Rest that Newton does not find, or that is not stable: a trajectory may stand still
- * next to a saddle, but not for long unless it lies on the saddle's stable set (an
- * invariant face, say). */
+/* Rest that Newton does not find.  A trajectory may also stand still next to a saddle;
+ * when it does so for longer than rounding would let it, large steps have damped
+ * what should grow, and nothing more is learned from it. */
 static lb_status look_for_stillness(explorer *e, lb_error *err)
 {
     const double *x = integrator_state(e->it);
@@ -227,7 +227,7 @@ static lb_status look_for_stillness(explorer *e, lb_error *err)
     if (rate * now <= 1)
         return settle(e, x, "it comes to rest: as much time again would not move it", err);
     if (rate * (now - e->still_since) > STAYS)
-        return settle(e, x, "it comes to rest at a steady state that is not stable, on its stable set", err);
+        finish(e, CYCLE_UNDECIDED, "it lingers next to a steady state that is not stable");
     e->still_since = fmin(e->still_since, now);
     return LB_OK;
 }

@@ -19,6 +19,7 @@
 enum { NEWTON_ITERATIONS = 25 };
 
 #define NEWTON_CONVERGED 1e-11
+#define LARGEST_CHANGE 1e3         /* of a species in one Newton step, relative */
 #define REACH_FRACTION 1e-3
 #define BALANCED 1e-14             /* of the sum of the terms' magnitudes: rounding */
 
@@ -72,11 +73,12 @@ static bool newton(rest *r, const space *s, const double *reach)
         space_take(s, r->x, y);
         double largest = 0;
         for (int i = 0; i < s->rank; i++) {
-            largest = fmax(largest, fabs(step[i]) / rest_length(r->x, reach, space_state(s, i)));
+            double change = fabs(step[i]) / rest_length(r->x, reach, space_state(s, i));
+            if (!(change <= LARGEST_CHANGE))
+                return false;
+            largest = fmax(largest, change);
             y[i] += step[i];
         }
-        if (!isfinite(largest) || largest > 1e3)
-            return false;
         space_place(s, y, r->x);
         if (largest < NEWTON_CONVERGED)
             return true;
@@ -84,14 +86,15 @@ static bool newton(rest *r, const space *s, const double *reach)
     return false;
 }
 
+/* A state that cannot be classified stays undecided. */
 static lb_status classify(rest *r, const space *s, lb_error *err)
 {
     lb_steady_state state = {.x = r->x};
     lb_status status = stability_classify(s->evaluator, &state, err);
-    r->stable = state.stable;
+    r->stable = status == LB_OK ? state.stable : LB_UNDECIDED;
     memory_free(state.eigenvalues);
     memory_free(state.modes);
-    return status;
+    return status == LB_E_NOMEM ? status : LB_OK;
 }
 
 lb_status rest_near(rest *r, const space *s, const double *x, const double *reach, double close, lb_error *err)
@@ -123,6 +126,19 @@ bool rest_is_balanced(rest *r, const space *s, const double *x)
     return true;
 }
 
+/* A species that was zero from the start and stays so takes no part: what would
+ * grow with it does not count. */
+static void stay_on_face(const space *s, const double *x, const double *f, double *J)
+{
+    for (int k = 0; k < s->core; k++) {
+        int i = s->system->core_state[k];
+        if (x[i] != 0 || f[i] != 0 || s->base[i] != 0)
+            continue;
+        for (int j = 0; j < s->n; j++)
+            J[i + j * s->n] = J[j + i * s->n] = 0;
+    }
+}
+
 lb_status rest_is_still(rest *r, const space *s, const double *x, const double *reach, double elapsed,
                         double fraction, bool *is_still, double *rate, lb_error *err)
 {
@@ -138,7 +154,10 @@ lb_status rest_is_still(rest *r, const space *s, const double *x, const double *
     lb_complex *values = memory_array(rank, sizeof *values);
     if (!values)
         return status_no_memory(err);
-    double *reduced = reduced_jacobian(r, s, x);
+    double *J = r->work, *reduced = J + n * n;
+    lb_jacobian(s->evaluator, x, J);
+    stay_on_face(s, x, f, J);
+    system_reduce(s->system, J, reduced);
     lb_status status = linalg_eigenvalues(s->rank, reduced, values, NULL, err);
     *is_still = status == LB_OK;
     *rate = status == LB_OK && s->rank > 0 ? values[0].re : 0;

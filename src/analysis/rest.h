@@ -27,8 +27,8 @@ lb_status rest_near(rest *r, const space *s, const double *x, const double *reac
 bool rest_is_balanced(rest *r, const space *s, const double *x);
 
 /* is_still: as much time again as `elapsed` would move no core species by more than
- * `fraction` of its reach.  rate: the largest real part of the eigenvalues at x,
- * filled where is_still. */
+ * `fraction` of its reach.  rate: the largest real part of the eigenvalues at x (on
+ * the face of the species that were zero from the start), filled where is_still. */
 lb_status rest_is_still(rest *r, const space *s, const double *x, const double *reach, double elapsed,
                         double fraction, bool *is_still, double *rate, lb_error *err);
 
