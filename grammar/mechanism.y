@@ -27,8 +27,8 @@
 #define yylex lexical_next
 #define YYMALLOC memory_alloc
 #define YYFREE memory_free
-/* A level of nesting takes at most eight symbols on the stack (`a + b * f(x = `,
- * then the next parenthesis), so the lexer's limit is met long before this one. */
+/* A level of nesting takes at most ten symbols on the stack (`a + b * f(c, x =`
+ * and the next), so the lexer's limit is met long before this one. */
 #define YYMAXDEPTH (16 * LEXICAL_NESTING)
 
 #define B (&l->build)

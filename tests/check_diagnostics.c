@@ -172,7 +172,7 @@ START_TEST(test_a_place_behind_the_line_and_an_empty_line_are_shown)
 }
 END_TEST
 
-/* A line of 300 characters, `*` at the places pointed at. */
+/* A line of 300 characters, `*` at the places pointed at, which are in no order. */
 START_TEST(test_a_long_line_is_shown_through_a_window)
 {
     char text[301];
@@ -181,13 +181,13 @@ START_TEST(test_a_long_line_is_shown_through_a_window)
     text[9] = text[149] = text[299] = '*';
     lb_diagnostics *list = list_of(text);
     diagnostics_fault(list, (span){1, 10, 1}, NULL, "left");
-    diagnostics_fault(list, (span){1, 150, 1}, NULL, "middle");
     diagnostics_fault(list, (span){1, 300, 1}, NULL, "right");
+    diagnostics_fault(list, (span){1, 150, 1}, NULL, "middle");
     buffer shown;
     buffer_init(&shown);
     lb_diagnostics_write(list, false, &shown);
     char *line = strtok(shown.data, "\n");
-    static const struct { size_t length; int caret; } wanted[] = {{4 + 96 + 3, 13}, {4 + 3 + 96 + 3, 55}, {4 + 3 + 49, 55}};
+    static const struct { size_t length; int caret; } wanted[] = {{4 + 96 + 3, 13}, {4 + 3 + 49, 55}, {4 + 3 + 96 + 3, 55}};
     for (int i = 0; i < 3; i++) {
         ck_assert_ptr_nonnull(strstr(line, "error: "));
         line = strtok(NULL, "\n");

@@ -126,6 +126,33 @@ START_TEST(test_expressions_have_the_precedence_of_mathematics)
 }
 END_TEST
 
+static int depth_of(const syntax_expression *e)
+{
+    int deepest = 0;
+    if (!e)
+        return 0;
+    for (const syntax_argument *a = e->first; a; a = a->next)
+        deepest = depth_of(a->value) > deepest ? depth_of(a->value) : deepest;
+    deepest = depth_of(e->left) > deepest ? depth_of(e->left) : deepest;
+    deepest = depth_of(e->right) > deepest ? depth_of(e->right) : deepest;
+    ck_assert_int_eq(e->depth, deepest + 1);
+    return e->depth;
+}
+
+/* The last two have a forgotten `^`, which takes the tree apart. */
+START_TEST(test_each_node_knows_its_depth)
+{
+    static const struct { const char *text; int wanted; } rows[] = {
+        {"1", 1}, {"a+b*c", 3}, {"f(a, x = b*c)", 3}, {"-(a^2)", 4}, {"1 M-1*a*b/c", 7}, {"1 M-1 s-1", 5},
+    };
+    for (size_t i = 0; i < sizeof rows / sizeof *rows; i++) {
+        parsed p = parsed_value(rows[i].text);
+        ck_assert_int_eq(depth_of(p.value), rows[i].wanted);
+        parsed_free(&p);
+    }
+}
+END_TEST
+
 START_TEST(test_a_number_has_its_value)
 {
     static const struct { const char *text; double wanted; } rows[] = {
@@ -318,6 +345,24 @@ START_TEST(test_a_line_swallowed_by_a_comma_is_read_again)
 }
 END_TEST
 
+START_TEST(test_a_line_read_again_does_not_repeat_its_fault)
+{
+    assert_recovery("x = 1 +\n"
+                    "A 2 -> B\n"
+                    "y = 1 +\n"
+                    "C => D 2",
+                    "2:3+1 unexpected `2`: the line above ends in `+` and goes on here | "
+                    "finish the line above, or take the `+` at its end away\n"
+                    "4:3+2 `=>` is no arrow | write `->`\n"
+                    "4:3+2 unexpected `=>`: the line above ends in `+` and goes on here | "
+                    "finish the line above, or take the `+` at its end away\n"
+                    "4:8+1 a `+` or an arrow is missing before `2` | "
+                    "write `A + B -> C`; a name with a blank in it stands in quotes",
+                    "",
+                    "x =\ny =\nC -> D");
+}
+END_TEST
+
 START_TEST(test_skipping_a_faulty_statement_stops_at_the_next)
 {
     assert_recovery("(R1) A -> B, k = ),\n"
@@ -375,8 +420,9 @@ static size_t faults_of(const char *text, int *statements)
 
 START_TEST(test_a_thousand_levels_of_nesting_are_read_and_no_more)
 {
-    static const struct { const char *open, *close; } rows[] = {{"(", ")"}, {"-", ""}, {"a^", ""}, {"f(x = 1+2*-(", "))"}};
-    static const size_t levels[] = {1, 1, 1, 3};
+    static const struct { const char *open, *close; } rows[] = {{"(", ")"}, {"-", ""}, {"a^", ""}, {"f(x = 1+2*-(", "))"},
+                                                              {"a+b*f(c, x = ", ")"}};
+    static const size_t levels[] = {1, 1, 1, 3, 1};
     for (size_t i = 0; i < sizeof rows / sizeof *rows; i++) {
         int count;
         char *text = wrapped("x = ", rows[i].open, 1000 / levels[i], "1", rows[i].close);
@@ -481,6 +527,7 @@ Suite *parse_suite(void)
     tcase_add_test(c, test_reactions_are_read);
     tcase_add_test(c, test_words_are_keywords_only_in_their_place);
     tcase_add_test(c, test_expressions_have_the_precedence_of_mathematics);
+    tcase_add_test(c, test_each_node_knows_its_depth);
     tcase_add_test(c, test_a_number_has_its_value);
     tcase_add_test(c, test_numbers_do_not_depend_on_the_locale);
     tcase_add_test(c, test_a_value_is_one_expression_and_no_more);
@@ -490,6 +537,7 @@ Suite *parse_suite(void)
     tcase_add_test(c, test_places_of_definitions);
     tcase_add_test(c, test_one_run_reports_every_fault);
     tcase_add_test(c, test_a_line_swallowed_by_a_comma_is_read_again);
+    tcase_add_test(c, test_a_line_read_again_does_not_repeat_its_fault);
     tcase_add_test(c, test_skipping_a_faulty_statement_stops_at_the_next);
     tcase_add_test(c, test_a_fault_on_a_line_that_goes_on_rightly_is_reported_once);
     tcase_add_test(c, test_a_thousand_levels_of_nesting_are_read_and_no_more);
