@@ -131,15 +131,17 @@ static double compute(syntax_expression_kind kind, double a, double b)
     }
 }
 
-/* `0.05 M + [S]` for `0.05 + [S]`. */
+/* `0.05 M + [S]` for `0.05 + [S]`.  A bare 1 may well be meant, as in `1 - [S]/0.1`. */
 static const char *sum_remedy(lower *l, const syntax_expression *node, const char *left, const char *right,
                               bool left_is_bare, bool right_is_bare)
 {
     const syntax_expression *bare = left_is_bare ? node->left : right_is_bare ? node->right : NULL;
     const char *wanted = left_is_bare ? right : left;
-    if (bare && bare->kind == SYNTAX_NUMBER && bare->text && strcmp(wanted, "another unit") != 0)
-        return lower_text(l, "write `%s %s`", bare->text, wanted);
-    return NULL;
+    if (!bare || bare->kind != SYNTAX_NUMBER || !bare->text || strcmp(wanted, "another unit") == 0)
+        return NULL;
+    if (bare->number == 1)
+        return lower_text(l, "write `%s %s`, or divide the other side by a quantity in %s", bare->text, wanted, wanted);
+    return lower_text(l, "write `%s %s`", bare->text, wanted);
 }
 
 static bool is_bare(const lower_value *v)

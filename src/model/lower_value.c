@@ -76,6 +76,12 @@ bool lower_agree(lower *l, const form *a, const form *b, int line, const char **
     return false;
 }
 
+static bool has_temperature(lower *l, const form *f)
+{
+    dimension d;
+    return infer_resolve(&l->inf, f, &d) && d.num[DIMENSION_TEMPERATURE] != 0;
+}
+
 bool lower_need(lower *l, lower_value *v, const dimension *d, const char *what, const char *remedy)
 {
     if (v->kind == VALUE_BAD)
@@ -84,6 +90,8 @@ bool lower_need(lower *l, lower_value *v, const dimension *d, const char *what, 
     form wanted = form_known(d);
     if (lower_agree(l, &v->dim, &wanted, v->where.line, &is, &needed))
         return true;
+    if (!remedy && has_temperature(l, &v->dim) && d->num[DIMENSION_TEMPERATURE] == 0)
+        remedy = "divide `T` by a temperature with its unit, as in `T/(300 K)`";
     const lower_plain *p = v->plain >= 0 ? &l->plains[v->plain] : NULL;
     if (p && p->unknown >= 0 && p->where.line != v->where.line)
         diagnostics_fault(l->list, v->where, NULL, "`%s` is used as %s here and as %s in line %d", p->name, needed, is,
