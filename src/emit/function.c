@@ -17,7 +17,7 @@
 
 enum {
     CALLS = 40,              /* in one function that only calls others */
-    DENSE_LIMIT = 4096,      /* values of a Jacobian that is written out a second time as a dense one */
+    DENSE_LIMIT = 4096       /* values of a Jacobian that is written out a second time as a dense one */
 };
 
 static const char *out_name(sums_kind kind)

@@ -3,7 +3,7 @@
  * A line goes to the listing of the file, code first, then its comment. */
 #include "emit/statement.h"
 
-#include <string.h>
+#include <math.h>
 
 #include "emit/spell.h"
 
@@ -96,8 +96,8 @@ void statement_local(const function *f, expression e)
     if (file->definition[e] >= 0) {
         int d = file->definition[e], derived = file->net->derived_count;
         listing_comment(&file->listing);
-        statement_comment_name(&file->listing.text,
-                     d < derived ? file->net->derived[d].name : file->net->readings[d - derived].name);
+        statement_comment_name(&file->listing.text, d < derived ? file->net->derived[d].name
+                                                                : file->net->readings[d - derived].name);
     }
     listing_end(&file->listing);
 }
@@ -131,48 +131,66 @@ void statement_item(const function *f, const sums_item *item)
     listing_end(&file->listing);
 }
 
+/* A term with its signs and numbers brought together. */
+struct folded {
+    double number;
+    expression coefficient;  /* EXPRESSION_NONE: 1 */
+    expression value;        /* EXPRESSION_NONE: 1; of an item with a line of its own that name stands for it */
+    const sums_item *named;
+};
+
+static void fold_number(const expression_node *nodes, double *number, expression *factor)
+{
+    if (*factor == EXPRESSION_NONE || nodes[*factor].kind != EXPRESSION_NUMBER ||
+        !isfinite(*number * nodes[*factor].value))
+        return;
+    *number *= nodes[*factor].value;
+    *factor = EXPRESSION_NONE;
+}
+
+static struct folded fold(const function *f, const sums_term *term)
+{
+    const expression_node *nodes = f->file->graph.nodes;
+    const sums_item *item = &f->sums->items[term->item];
+    struct folded t = {term->number, term->coefficient, item->value, NULL};
+    fold_number(nodes, &t.number, &t.coefficient);
+    if (statement_is_named(f, item)) {
+        t.named = item;
+        return t;
+    }
+    if (nodes[t.value].kind == EXPRESSION_NEGATE && !f->plan->is_local[t.value]) {
+        t.value = nodes[t.value].left;
+        t.number = -t.number;
+    }
+    fold_number(nodes, &t.number, &t.value);
+    return t;
+}
+
 /* number * coefficient * item, with its sign joined to what stands before. */
 static void write_term(const function *f, const sums_term *term, bool is_first)
 {
     writer *w = &f->file->writer;
-    const sums_item *item = &f->sums->items[term->item];
-    const expression_node *nodes = f->file->graph.nodes;
-    double number = term->number;
-    expression value = item->value;
-    bool is_named = statement_is_named(f, item);
-    if (!is_named && nodes[value].kind == EXPRESSION_NEGATE && !f->plan->is_local[value]) {
-        value = nodes[value].left;
-        number = -number;
-    }
-    expression coefficient = term->coefficient;
-    if (coefficient != EXPRESSION_NONE && nodes[coefficient].kind == EXPRESSION_NUMBER) {
-        number *= nodes[coefficient].value;
-        coefficient = EXPRESSION_NONE;
-    }
-    bool is_number = nodes[value].kind == EXPRESSION_NUMBER && coefficient == EXPRESSION_NONE;
-    if (is_number)
-        number *= nodes[value].value;
-
-    bool is_negative = number < 0;
-    double magnitude = is_negative ? -number : number;
+    struct folded t = fold(f, term);
+    bool is_negative = t.number < 0;
     buffer_append(w->out, is_first ? (is_negative ? "-" : "") : is_negative ? " - " : " + ");
-    bool has_factor = is_number || magnitude != 1;
-    if (has_factor)
-        spell_number(w->out, magnitude);
-    if (is_number)
-        return;
-    if (coefficient != EXPRESSION_NONE) {
-        if (has_factor)
-            buffer_char(w->out, '*');
-        write_expression(w, coefficient, has_factor ? WRITE_FACTOR : WRITE_TERM);
-        has_factor = true;
+    bool is_number = t.coefficient == EXPRESSION_NONE && t.value == EXPRESSION_NONE;
+    const char *times = "";
+    if (is_number || fabs(t.number) != 1) {
+        spell_number(w->out, fabs(t.number));
+        times = "*";
     }
-    if (has_factor)
-        buffer_char(w->out, '*');
-    if (is_named)
-        write_item_name(f, item);
+    if (t.coefficient != EXPRESSION_NONE) {
+        buffer_append(w->out, times);
+        write_expression(w, t.coefficient, *times ? WRITE_FACTOR : WRITE_TERM);
+        times = "*";
+    }
+    if (t.value == EXPRESSION_NONE)
+        return;
+    buffer_append(w->out, times);
+    if (t.named)
+        write_item_name(f, t.named);
     else
-        write_expression(w, value, has_factor ? WRITE_FACTOR : is_first && !is_negative ? WRITE_SUM : WRITE_TERM);
+        write_expression(w, t.value, *times ? WRITE_FACTOR : is_first && !is_negative ? WRITE_SUM : WRITE_TERM);
 }
 
 void statement_sum(const function *f, const statement_place *places, size_t count, bool is_first)
