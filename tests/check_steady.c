@@ -304,6 +304,53 @@ START_TEST(test_tank_loses_what_nothing_feeds)
 }
 END_TEST
 
+/* Each of the twenty is only lost, so none can last: one face after the other, not
+ * one for each of the 2^20 sets of them. */
+START_TEST(test_many_lost_species_are_dropped_together)
+{
+    static char buffer[20000];
+    struct text t = {buffer, sizeof buffer};
+    put(&t, "units none\n-> A, k = 2\nA ->, k = 1\n");
+    for (int i = 0; i < 20; i++)
+        put(&t, "[C%d]0 = 1\nC%d -> A, k = 1\n", i, i);
+    struct answer a = ask(buffer);
+    ck_assert_uint_eq(a.steady->count, 1);
+    assert_close(value_of(&a, a.steady->state, "A"), 2.0, 1e-13, 0);
+    answer_clear(&a);
+}
+END_TEST
+
+/* The substrate goes round C but only leaves as P: that no rates balance this is
+ * seen without a start. */
+START_TEST(test_no_start_is_spent_where_rates_cannot_balance)
+{
+    lb_steady_options options = {.skip_boundary = true};
+    struct answer a = ask_with("units none\n[E]0 = 1\n[S]0 = 10\nE + S <-> C, kf = 1, kr = 0.5\nC -> E + P, k = 2\n",
+                               &options);
+    ck_assert_uint_eq(a.steady->count, 0);
+    ck_assert_uint_eq(a.steady->starts, 0);
+    answer_clear(&a);
+}
+END_TEST
+
+/* Five independent copies of Schloegl's second model: 3^5 states, each X 1, 2 or 3. */
+START_TEST(test_independent_switches_come_in_all_combinations)
+{
+    static char buffer[20000];
+    struct text t = {buffer, sizeof buffer};
+    put(&t, "units none\n");
+    for (int i = 0; i < 5; i++)
+        put(&t, "[X%d]0 = 1\n2 X%d -> 3 X%d, k = 6\n3 X%d -> 2 X%d, k = 1\nX%d ->, k = 11\n-> X%d, k = 6\n", i, i, i,
+            i, i, i, i);
+    struct answer a = ask(buffer);
+    ck_assert_uint_eq(a.steady->count, 243);
+    for (size_t s = 0; s < a.steady->count; s++)
+        for (int i = 0; i < 5; i++)
+            assert_close(a.steady->state[s].x[i], round(a.steady->state[s].x[i]), 1e-11, 0);
+    answer_clear(&a);
+}
+END_TEST
+
 /* Forty species that exchange by twos in a tank: their sum is that of the feed,
  * which each balance holds only as a small difference of fast steps. */
 START_TEST(test_large_tank_is_solved)
@@ -657,6 +704,9 @@ Suite *steady_suite(void)
     tcase_add_test(faces, test_rate_law_that_vanishes_makes_a_face);
     tcase_add_test(faces, test_decay_leaves_only_the_empty_state);
     tcase_add_test(faces, test_tank_loses_what_nothing_feeds);
+    tcase_add_test(faces, test_many_lost_species_are_dropped_together);
+    tcase_add_test(faces, test_no_start_is_spent_where_rates_cannot_balance);
+    tcase_add_test(faces, test_independent_switches_come_in_all_combinations);
     tcase_add_test(faces, test_large_tank_is_solved);
     suite_add_tcase(suite, faces);
     TCase *degenerate = tcase_create("degenerate");

@@ -172,8 +172,9 @@ static bool must_stop(struct search *s, size_t done, size_t all)
     return s->out->interrupted;
 }
 
-/* Plain starts, and more of them as long as one in `starts` finds a new root;
- * then deflated ones. */
+/* Plain starts, and more of them as long as one in `starts` finds a new root, or one
+ * in twice as many as there are roots, since each of many is rarely hit; then
+ * deflated ones. */
 static lb_status run_starts(struct search *s)
 {
     size_t wanted = s->options->starts, deflated = wanted / 2, i = 0, end = wanted;
@@ -181,8 +182,10 @@ static lb_status run_starts(struct search *s)
     for (; status == LB_OK && i < end && !must_stop(s, i, end + deflated); i++) {
         int before = s->out->count;
         status = try_start(s, i, false);
-        if (s->out->count > before && !s->options->is_fixed)
-            end = i + 1 + wanted < MOST_ROUNDS * wanted ? i + 1 + wanted : MOST_ROUNDS * wanted;
+        if (s->out->count > before && !s->options->is_fixed) {
+            size_t gap = 2 * (size_t)s->out->count > wanted ? 2 * (size_t)s->out->count : wanted;
+            end = i + 1 + gap < MOST_ROUNDS * wanted ? i + 1 + gap : MOST_ROUNDS * wanted;
+        }
     }
     end = s->out->count > 0 ? i + deflated : i;
     for (; status == LB_OK && i < end && !must_stop(s, i, end); i++)
