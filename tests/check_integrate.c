@@ -287,6 +287,21 @@ START_TEST(test_conserved_totals_stay)
 }
 END_TEST
 
+/* From nothing at all: a source that is first constant, x' = 1 - 1e6 x^2,
+ * x = 1e-3 tanh(1e3 t), and one that nearly stays so. */
+START_TEST(test_an_empty_start_is_accurate)
+{
+    integrator_options options = {.tolerance = 1e-9, .method = _i ? LB_METHOD_STIFF : LB_METHOD_AUTO};
+    rig r = rig_new("units none\n-> X, k = 1\n2 X ->, k = 5e5\n-> Y, k = 1\nY ->, k = 1e-30\n", &options);
+    rig_to(&r, 1e-3);
+    assert_close(value_of(&r, "X"), 1e-3 * tanh(1), 1e-8, 0);
+    rig_to(&r, 100);
+    assert_close(value_of(&r, "X"), 1e-3, 1e-8, 0);
+    assert_close(value_of(&r, "Y"), 100, 1e-8, 0);
+    rig_free(&r);
+}
+END_TEST
+
 /* Steps of up to 1e5 with rates of up to 1e3: what w J = 0 leaves of W is 1e-8 of
  * it, and totals drifted by 1e-8 while they rested on that. */
 START_TEST(test_conserved_totals_stay_however_long_the_steps)
@@ -769,6 +784,22 @@ START_TEST(test_a_rate_that_is_not_finite_names_its_species)
 }
 END_TEST
 
+/* Lotka's mechanism without prey: the predator dies out, and steps may grow as
+ * they like. */
+START_TEST(test_free_steps_at_rest_stay_finite)
+{
+    integrator_options options = {.method = _i == 0 ? LB_METHOD_AUTO : LB_METHOD_STIFF};
+    rig r = rig_new("units none\n[Y]0 = 1\nX -> 2 X, k = 1\nX + Y -> 2 Y, k = 1\nY -> P, k = 1\n", &options);
+    for (int k = 0; k < 3000; k++) {
+        ck_assert_int_eq(integrator_step(r.it, INFINITY, &r.err), LB_OK);
+        ck_assert(isfinite(integrator_time(r.it)));
+    }
+    assert_close(value_of(&r, "Y"), 0, 0, 1e-13);
+    assert_close(value_of(&r, "P"), 1, 1e-9, 0);
+    rig_free(&r);
+}
+END_TEST
+
 static bool stop_after(void *context)
 {
     int *left = context;
@@ -892,6 +923,7 @@ static void add_accuracy(Suite *suite)
     tcase_add_loop_test(accuracy, test_error_follows_the_tolerance_in_oscillation, 0, 2);
     tcase_add_loop_test(accuracy, test_michaelis_menten_is_on_time, 0, 2);
     tcase_add_loop_test(accuracy, test_conserved_totals_stay, 0, 2);
+    tcase_add_loop_test(accuracy, test_an_empty_start_is_accurate, 0, 2);
     tcase_add_test(accuracy, test_conserved_totals_stay_however_long_the_steps);
     tcase_add_test(accuracy, test_a_species_that_is_zero_stays_zero);
     tcase_add_test(accuracy, test_reduced_systems_solve_the_full_ones);
@@ -932,6 +964,7 @@ static void add_failures(Suite *suite)
     tcase_add_test(wrong, test_a_start_below_zero_is_refused);
     tcase_add_loop_test(wrong, test_unbounded_growth_is_an_error_with_its_time, 0, 2);
     tcase_add_loop_test(wrong, test_a_rate_that_is_not_finite_names_its_species, 0, 3);
+    tcase_add_loop_test(wrong, test_free_steps_at_rest_stay_finite, 0, 2);
     tcase_add_test(wrong, test_an_interrupted_run_keeps_the_last_step);
     tcase_add_test(wrong, test_a_limit_of_steps_is_kept);
     tcase_add_test(wrong, test_options_outside_their_domain_are_refused);

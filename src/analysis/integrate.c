@@ -28,6 +28,7 @@
 #define DEFAULT_TOLERANCE 1e-8
 #define LOOSEST_TOLERANCE 1e-2
 #define TIGHTEST_TOLERANCE 1e-13
+#define LONGEST_STEP 1e250           /* at rest steps grow without need: not to infinity */
 
 enum {
     STIFF_EVIDENCE = 4,         /* checks near the bound of stability before the explicit method is left */
@@ -223,8 +224,9 @@ static lb_status begin(integrator *it, double t_limit, lb_error *err)
     memset(it->x_new, 0, (size_t)it->n * sizeof *it->x_new);
     stepper_multiply_add(it->system, it->estimate.values, 1, 1, it->f, it->x_new);
     double fastest = largest(it->n, it->f), change = largest(it->n, it->x_new);
-    double span = isfinite(t_limit) ? t_limit - it->t : 0;
-    tolerance_start(&it->control, it->x, change > 0 ? fastest * (fastest / change) : fastest * span);
+    /* What a start at zero comes to: f times the time in which f changes. */
+    double span = isfinite(t_limit) ? t_limit - it->t : INFINITY, time_scale = fmin(fastest / change, span);
+    tolerance_start(&it->control, it->x, isfinite(time_scale) ? fastest * time_scale : 0);
     it->culprit = it->allow_negative ? -1 : tolerance_negative(&it->control, it->x, it->x);
     if (it->culprit >= 0)
         return status_raise(err, LB_E_NEGATIVE, NULL, "[%s] starts below zero, at %.6g",
@@ -384,7 +386,7 @@ lb_status integrator_step(integrator *it, double t_limit, lb_error *err)
         if (attempt_step(it, h, &norm, &shrink)) {
             double next = h * growth(it, norm, was_refused);
             /* A step that was cut short says little about the next one. */
-            it->h = h < it->h && !was_refused ? fmax(it->h, next) : next;
+            it->h = fmin(LONGEST_STEP, h < it->h && !was_refused ? fmax(it->h, next) : next);
             accept(it, h, is_last ? t_limit : it->t + h);
             return review_method(it, err);
         }

@@ -67,10 +67,13 @@ void tolerance_start(tolerance *control, const double *x, double amount)
 
 void tolerance_follow(tolerance *control, const double *x)
 {
+    double most = 0;
     for (int i = 0; i < control->n; i++) {
         control->seen[i] = fmax(control->seen[i], fabs(x[i]));
-        control->reference = fmax(control->reference, control->seen[i]);
+        most = fmax(most, control->seen[i]);
     }
+    if (most > 0)
+        control->reference = most;
     set_absolute(control);
 }
 

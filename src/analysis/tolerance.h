@@ -21,7 +21,7 @@ typedef struct tolerance {
     double *given;              /* [n] absolute tolerances of the caller, or NULL */
     double *absolute;           /* [n] in force */
     double *seen;               /* [n] largest magnitude so far */
-    double reference;           /* largest magnitude of any state so far */
+    double reference;           /* largest magnitude of any state so far; expected, while all are zero */
     bool *is_signed;            /* [n] */
 } tolerance;
 
@@ -29,8 +29,8 @@ typedef struct tolerance {
 lb_status tolerance_init(tolerance *control, const lb_network *network, double relative, const double *absolute);
 void tolerance_clear(tolerance *control);
 
-/* Forget the run so far: start at x [n]; amount: what the fastest species makes
- * of itself within the time scale of the start, for a start at zero. */
+/* Forget the run so far: start at x [n].  amount: the magnitude that is expected,
+ * used while all states are zero. */
 void tolerance_start(tolerance *control, const double *x, double amount);
 /* Take x [n], an accepted state, into account. */
 void tolerance_follow(tolerance *control, const double *x);
