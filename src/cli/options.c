@@ -13,7 +13,8 @@
 #include "cli/command.h"
 
 static const option_spec common_options[] = {
-    {OPTION_SET, "--set", 0, "NAME=VALUE", "replace a number of the file: k2=0.1, [A]=2, [X]0=1e-3, R3.kf=10; may be repeated"},
+    {OPTION_SET, "--set", 0, "NAME=VALUE",
+     "replace a number of the file: k2=0.1, [A]=2, [X]0=1e-3, R3.kf=10; may be repeated"},
     {OPTION_JSON, "--json", 0, NULL, "print one JSON object instead of text"},
     {OPTION_SEED, "--seed", 0, "N", "where the sampling starts (0); the same seed gives the same answer"},
     {OPTION_QUIET, "--quiet", 0, NULL, "no warnings, notes or progress"},
@@ -263,7 +264,16 @@ static bool read_option(options *o, int argc, char **argv, int *i)
     return apply(o, spec, value);
 }
 
-/* A second word: a misspelt or misplaced command, or one file too many. */
+static bool is_time_unit(const char *word)
+{
+    static const char *const units[] = {"ms", "s", "min", "h"};
+    for (size_t i = 0; i < sizeof units / sizeof *units; i++)
+        if (strcmp(word, units[i]) == 0)
+            return true;
+    return false;
+}
+
+/* A second word: a unit that lost its quotes, a misspelt or misplaced command, or one file too many. */
 static bool fail_second_word(options *o, const char *word)
 {
     char remedy[200];
@@ -276,6 +286,10 @@ static bool fail_second_word(options *o, const char *word)
         if (nearest)
             snprintf(remedy, sizeof remedy, "did you mean `limbeck %s %s`?", nearest, word);
         return fail(o, nearest ? remedy : "`limbeck --help` lists the commands", "there is no command `%s`", o->file);
+    }
+    if ((o->until || o->every) && is_time_unit(word)) {
+        snprintf(remedy, sizeof remedy, "quote a time with its unit: --until \"1 %s\"", word);
+        return fail(o, remedy, "`%s` stands alone", word);
     }
     return fail(o, NULL, "one mechanism file at a time: `%s` is a second one", word);
 }

@@ -89,7 +89,8 @@ static int run(const options *given)
 }
 
 static const option_spec own[] = {
-    {OPTION_SCOPE, "--scope", 0, "SCOPES", "given: the constants as they are; ranges: anywhere in their ranges; given,ranges (both that apply)"},
+    {OPTION_SCOPE, "--scope", 0, "SCOPES",
+     "given: the constants as they are; ranges: anywhere in their ranges; given,ranges (both that apply)"},
     {OPTION_SAMPLES, "--samples", 0, "N", "how many sets of constants to try in the ranges"},
     {OPTION_SECONDS, "--seconds", 0, "X", "stop the search after so long"},
     {OPTION_OUTPUT, "--output", 'o', "FILE", "write the witness, a mechanism that oscillates, to FILE"},

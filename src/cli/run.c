@@ -20,7 +20,8 @@ static lb_status read_time(const session *s, const char *option, const char *tex
         snprintf(error->message, sizeof error->message, "%s: %.400s", option, reason.message);
     else
         snprintf(error->message, sizeof error->message, "%s takes a time above zero, and `%.80s` is none", option, text);
-    snprintf(error->remedy, sizeof error->remedy, "write it in the file's unit, or with one: %s 3600, %s \"1 h\"", option, option);
+    snprintf(error->remedy, sizeof error->remedy, "write it in the file's unit, or with one: %s 3600, %s \"1 h\"", option,
+             option);
     return status;
 }
 
@@ -76,7 +77,7 @@ static int end_early(session *s, const lb_run *run, const lb_error *error)
     if (s->given->json)
         return EXIT_NOT_COMPLETED;
     session_fail(s, error);
-    session_note(s, "the %zu rows until then are kept", run->rows);
+    session_note(s, "the rows until then (%zu) are kept", run->rows);
     if (error->code == LB_E_FINITE || error->code == LB_E_STEP)
         session_note(s, "growth without bound in a model may be a runaway in the vessel; "
                         "scale-up is for those with the licence and the calorimetry for it");
@@ -101,7 +102,7 @@ static int solve(session *s)
         bool is_interrupted = status == LB_E_STOPPED || run->interrupted;
         result = s->given->json ? write_json(s, run, NULL) : write_csv(s, run);
         if (is_interrupted && result == EXIT_ANSWERED) {
-            session_note(s, "interrupted; the %zu rows until then are kept", run->rows);
+            session_note(s, "interrupted; the rows until then (%zu) are kept", run->rows);
             result = EXIT_INTERRUPTED;
         }
     }

@@ -99,7 +99,8 @@ int session_open(session *s, const options *given)
     if (!s->text)
         return session_fail_status(s, LB_E_NOMEM);
     lb_error error = {.code = LB_OK};
-    lb_status status = lb_network_read(given->file, given->settings, given->setting_count, &s->network, &s->diagnostics, &error);
+    lb_status status = lb_network_read(given->file, given->settings, given->setting_count, &s->network,
+                                       &s->diagnostics, &error);
     switch (status) {
     case LB_OK: return EXIT_ANSWERED;
     case LB_E_MECHANISM: return fail_mechanism(s, &error);

@@ -1,7 +1,8 @@
 /* Tables of aligned columns, two blanks between them.
  *
  * Numbers are set with their decimal points under each other: each cell is
- * split before the point (or the exponent, or its end) and padded before that.  Only the last column may be wrapped, so the others stay readable. */
+ * split before the point (or the exponent, or its end) and padded before that.
+ * Only the last column may be wrapped, so the others stay readable. */
 #include "output/grid.h"
 
 #include <assert.h>

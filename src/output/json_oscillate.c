@@ -99,7 +99,8 @@ lb_status lb_json_oscillate(const lb_system *system, const lb_diagnostics *diagn
     return json_finish(&w, out);
 }
 
-lb_status lb_json_page(const lb_system *system, const lb_diagnostics *diagnostics, const lb_oscillate *oscillate, lb_text *out)
+lb_status lb_json_page(const lb_system *system, const lb_diagnostics *diagnostics, const lb_oscillate *oscillate,
+                       lb_text *out)
 {
     json_writer w;
     json_begin(&w, "page", system->network->file, diagnostics);

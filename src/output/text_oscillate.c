@@ -66,12 +66,14 @@ static void write_verdict(buffer *out, const lb_layout *layout, const lb_network
     if (answer->cycle)
         layout_quantity(&period, answer->cycle->period, DIGITS, describe_time_unit(net));
     if (answer->verdict == LB_OSCILLATES && answer->cycle)
-        verdict_line(out, layout, word, "(witnessed): %s, period %s.", attraction_text(answer->cycle->stable), buffer_get(&period));
+        verdict_line(out, layout, word, "(witnessed): %s, period %s.", attraction_text(answer->cycle->stable),
+                     buffer_get(&period));
     else if (answer->verdict == LB_IS_CENTRE && answer->cycle)
         verdict_line(out, layout, word, "(witnessed): neutral closed orbits, one beside the other; period of this one %s.",
                      buffer_get(&period));
     else
-        verdict_line(out, layout, word, "(searched): no sustained oscillation was found, which does not prove that there is none.");
+        verdict_line(out, layout, word, "%s",
+                     "(searched): no sustained oscillation was found, which does not prove that there is none.");
     layout_end(&period, out);
 }
 
@@ -118,7 +120,8 @@ static void write_multipliers(buffer *out, const lb_layout *layout, const lb_cyc
         buffer_printf(&text, "%s%d of less than %s", *buffer_get(&text) ? ", and " : "", cycle->multiplier_count - shown,
                       shown < MULTIPLIERS_SHOWN ? "1e-8" : "that");
     const char *judgement = cycle->stable == LB_YES ? ", all inside the unit circle" : "";
-    layout_printf(out, layout, 2, "Floquet multipliers, the one along the orbit left out%s: %s.", judgement, buffer_get(&text));
+    layout_printf(out, layout, 2, "Floquet multipliers, the one along the orbit left out%s: %s.", judgement,
+                  buffer_get(&text));
     layout_end(&text, out);
 }
 
@@ -209,7 +212,8 @@ static void write_effort(buffer *out, const lb_layout *layout, const lb_oscillat
         layout_printf(out, layout, 2, "Not covered: %s", answer->limits);
 }
 
-void oscillate_write_answer(buffer *out, const lb_layout *layout, const lb_system *system, const lb_oscillate_answer *answer)
+void oscillate_write_answer(buffer *out, const lb_layout *layout, const lb_system *system,
+                            const lb_oscillate_answer *answer)
 {
     const lb_network *net = system->network;
     layout_heading(out, layout, scope_heading(answer->scope));

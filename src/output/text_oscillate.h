@@ -6,6 +6,7 @@
 #include "limbeck.h"
 
 /* One section: the verdict in one scope with its evidence. */
-void oscillate_write_answer(buffer *out, const lb_layout *layout, const lb_system *system, const lb_oscillate_answer *answer);
+void oscillate_write_answer(buffer *out, const lb_layout *layout, const lb_system *system,
+                            const lb_oscillate_answer *answer);
 
 #endif

@@ -21,7 +21,8 @@ static void write_search(buffer *out, const lb_layout *layout, const lb_network 
 {
     buffer text;
     buffer_init(&text);
-    buffer_printf(&text, "%s by a search of the inside (%zu starts, %zu converged) and of the faces where species are absent; %s.",
+    buffer_printf(&text,
+                  "%s by a search of the inside (%zu starts, %zu converged) and of the faces where species are absent; %s.",
                   steady->count == 0 ? "None found" : "Found", steady->starts, steady->converged,
                   steady->count == 0 ? "that does not exclude one" : "it can miss one");
     if (steady->interrupted)
@@ -30,12 +31,13 @@ static void write_search(buffer *out, const lb_layout *layout, const lb_network 
     layout_end(&text, out);
     if (steady->continuum > 0)
         layout_printf(out, layout, 2,
-                      "They are not single points but a continuum, of dimension %d; points of it are shown.",
-                      steady->continuum);
+                      "They are not single points but a continuum, of dimension %d; %s.",
+                      steady->continuum, steady->count == 1 ? "a point of it is shown" : "points of it are shown");
     buffer_init(&text);
     describe_states(&text, net, steady->accumulating);
     if (*buffer_get(&text))
-        layout_printf(out, layout, 2, "Set aside (no rate depends on it, no conserved total fixes it): %s.", buffer_get(&text));
+        layout_printf(out, layout, 2, "Set aside (no rate depends on it, no conserved total fixes it): %s.",
+                      buffer_get(&text));
     layout_end(&text, out);
 }
 
@@ -158,7 +160,8 @@ static const char *stability_text(lb_answer stable)
     return "stability undecided: a real part is zero to within its error";
 }
 
-static void write_state(buffer *out, const lb_layout *layout, const lb_network *net, const lb_steady_state *state, size_t number)
+static void write_state(buffer *out, const lb_layout *layout, const lb_network *net, const lb_steady_state *state,
+                        size_t number)
 {
     char residual[LAYOUT_NUMBER];
     layout_number(state->residual, 2, residual);
@@ -166,7 +169,8 @@ static void write_state(buffer *out, const lb_layout *layout, const lb_network *
                   stability_text(state->stable), state->is_boundary ? ", a species is absent" : "", residual);
     if (!state->routh_hurwitz_agrees)
         layout_paragraph(out, layout, 4, 0,
-                         "The Routh-Hurwitz count of growing motions differs from the eigenvalues': do not rely on the stability.");
+                         "The Routh-Hurwitz count of growing motions differs from the eigenvalues': do not rely on the "
+                         "stability.");
     write_modes(out, layout, net, state);
 }
 

@@ -10,3 +10,5 @@ try emit networks/brusselator.mech -o "$SCRATCH/new/model"
 try emit networks/brusselator.mech -o "$SCRATCH/new/model/" --name other --quiet
 try emit networks/brusselator.mech -o "$SCRATCH/new/model" --json
 ls -A "$SCRATCH/new/model"
+try run networks/brusselator.mech --until 1 --every 1 --json -o "$SCRATCH/beside.csv" | cut -c 1-60
+wc -l <"$SCRATCH/beside.csv"
