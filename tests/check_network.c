@@ -217,6 +217,19 @@ START_TEST(test_coefficients_are_exact_or_expressions)
 }
 END_TEST
 
+/* The language has no exponent in a coefficient. */
+START_TEST(test_coefficients_are_written_without_exponents)
+{
+    int reaction = network_add_reaction(net, "R1", false);
+    network_add_term(net, reaction, false, X, 1, 1000000, EXPRESSION_NONE);
+    network_add_term(net, reaction, true, Y, 25, 2, EXPRESSION_NONE);
+    network_add_term(net, reaction, true, Z, 3000000, 1, EXPRESSION_NONE);
+    network_add_mass_action(net, reaction, STEP_FORWARD, k);
+    ck_assert_int_eq(network_finish(net), LB_OK);
+    ck_assert_str_eq(net->reactions[0].equation, "0.000001 X -> 12.5 Y + 3000000 \"Z-\"");
+}
+END_TEST
+
 /* Coefficients that leave 64 bits when added become numbers instead of wrong fractions. */
 START_TEST(test_coefficients_do_not_overflow)
 {
@@ -412,6 +425,7 @@ Suite *network_suite(void)
     tcase_add_test(all, test_reversible_mass_action);
     tcase_add_test(all, test_catalysts_cancel_and_equal_species_merge);
     tcase_add_test(all, test_coefficients_are_exact_or_expressions);
+    tcase_add_test(all, test_coefficients_are_written_without_exponents);
     tcase_add_test(all, test_coefficients_do_not_overflow);
     tcase_add_test(all, test_a_rate_constant_of_zero_keeps_the_orders);
     tcase_add_test(all, test_sources_and_sinks_open_a_network);

@@ -53,15 +53,14 @@ void network_write_name(const char *name, buffer *out)
         buffer_char(out, '"');
 }
 
-/* Is num/den a decimal that can be written without an exponent? */
-static bool is_short_decimal(int64_t num, int64_t den)
+/* Digits after the point that num/den has as a decimal, or -1 when a double does not hold it. */
+static int decimal_places(int64_t num, int64_t den)
 {
-    while (den % 2 == 0)
-        den /= 2;
-    while (den % 5 == 0)
-        den /= 5;
-    double value = (double)num / (double)den;
-    return den == 1 && value < 1e15;
+    int64_t scale = 1;
+    for (int places = 0; places <= 15; places++, scale *= 10)
+        if (scale % den == 0)
+            return (double)num / (double)den * (double)scale < 1e15 ? places : -1;
+    return -1;
 }
 
 static void write_term(const lb_network *net, const network_term *term, buffer *out)
@@ -71,9 +70,9 @@ static void write_term(const lb_network *net, const network_term *term, buffer *
         network_write(net, term->expression, false, out);
         buffer_append(out, ") ");
     } else if (term->num != term->den) {
-        bool decimal = is_short_decimal(term->num, term->den);
-        if (decimal)
-            expression_write_number((double)term->num / (double)term->den, out);
+        int places = decimal_places(term->num, term->den);
+        if (places >= 0)
+            buffer_printf(out, "%.*f", places, (double)term->num / (double)term->den);
         else
             buffer_printf(out, "(%lld/%lld)", (long long)term->num, (long long)term->den);
         buffer_char(out, ' ');

@@ -20,7 +20,7 @@ void table_free(table *t)
                       t->row_start, t->row_entry, t->row_step, t->term_start, t->term_slot, t->term_entry,
                       t->rates, t->slopes, t->rate_chains.chain, t->rate_chains.link, t->slope_chains.chain,
                       t->slope_chains.link, t->rate_laws, t->slope_laws, t->factors.list, t->laws.list,
-                      t->coefficients.list, t->node_of, t->is_constant, t->ones};
+                      t->coefficients.list, t->node_of, t->ones};
     for (size_t i = 0; i < sizeof blocks / sizeof *blocks; i++)
         memory_free(blocks[i]);
     program_clear(&t->rate_program);

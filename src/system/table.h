@@ -94,7 +94,6 @@ typedef struct table {
 
     expression_graph graph;
     expression *node_of;        /* [network's nodes] their number in the graph, or EXPRESSION_NONE */
-    unsigned char *is_constant; /* [graph.count] no state in it */
     program rate_program, slope_program, law_program, reading_program;
     double *ones;               /* [steps] */
 } table;

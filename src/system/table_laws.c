@@ -103,16 +103,6 @@ static lb_status compile_readings(table *t, const lb_network *net)
     return status;
 }
 
-static lb_status mark_constants(table *t)
-{
-    t->is_constant = memory_array(t->graph.count, 1);
-    if (!t->is_constant)
-        return LB_E_NOMEM;
-    for (size_t e = 0; e < t->graph.count; e++)
-        t->is_constant[e] = !t->graph.nodes[e].has_state;
-    return LB_OK;
-}
-
 lb_status table_fill_laws(table *t, const lb_network *net)
 {
     t->rate_laws = memory_array((size_t)t->steps, sizeof *t->rate_laws);
@@ -128,7 +118,5 @@ lb_status table_fill_laws(table *t, const lb_network *net)
         status = compile_parameters(t);
     if (status == LB_OK)
         status = compile_readings(t, net);
-    if (status == LB_OK)
-        status = mark_constants(t);
     return status;
 }
