@@ -186,6 +186,10 @@ START_TEST(test_ranges_are_logarithmic_above_zero)
     ck_assert(lb_network_range(net, 0, &low, &high, &logarithmic));
     ck_assert(low == -2 && high == 3 && !logarithmic);
     lb_network_free(net);
+    net = support_network("k = 1 in 0 .. 3\nA -> B, k = k\n");
+    ck_assert(lb_network_range(net, 0, &low, &high, &logarithmic));
+    ck_assert(low == 0 && !logarithmic);
+    lb_network_free(net);
 }
 END_TEST
 
@@ -618,6 +622,32 @@ START_TEST(test_what_a_broken_line_defines_is_known)
 }
 END_TEST
 
+/* ---- Warnings about the start ------------------------------------------------------------------------------ */
+
+START_TEST(test_what_can_be_made_is_not_warned_about)
+{
+    assert_says("f = 1\n[A]0 = 1\nA -> (f) B, k = 1\nB -> A, k = 1\n", LB_OK, "");              /* by an expression */
+    assert_says("residence = 2\n[A]in = 1\nA -> B, k = 1\nB -> A, k = 1\n", LB_OK, "");         /* from the feed */
+    assert_says("[B]0 = 1\nA -> B, v = ([A] - [B])/s\nC -> B, k = 1\nA -> C, k = 1\n", LB_OK, ""); /* backwards */
+    assert_says("signed A\nA -> B, k = 1\nB -> A, k = 1\n", LB_OK, "");
+    assert_says("[A] = 1\nA -> B, k = 1\nB + C -> 2 C, k = 1\nC -> B, k = 1\nB -> C, k = 1\n", LB_OK, "");
+}
+END_TEST
+
+START_TEST(test_a_law_is_tried_with_all_that_is_absent_at_zero)
+{
+    assert_says("-> A, v = ([A] + [B])/s\n-> B, v = ([A] + [B])/s\n", LB_OK,
+                "1:4 nothing that is there at the start can make `A` and `B`, so they stay zero\n");
+}
+END_TEST
+
+START_TEST(test_a_rate_of_zero_makes_nothing)
+{
+    assert_says("[A]0 = 1\nA -> B, k = 0\nB -> A, k = 1\n", LB_OK,
+                "2:6 nothing that is there at the start can make `B`, so it stays zero\n");
+}
+END_TEST
+
 /* ---- Size ------------------------------------------------------------------------------------------------ */
 
 START_TEST(test_a_chain_of_definitions_needs_no_stack)
@@ -770,6 +800,11 @@ Suite *lower_suite(void)
     tcase_add_test(t, test_all_faults_are_reported_in_one_run);
     tcase_add_test(t, test_one_mistake_gives_one_message);
     tcase_add_test(t, test_what_a_broken_line_defines_is_known);
+    suite_add_tcase(s, t);
+    t = tcase_create("warnings");
+    tcase_add_test(t, test_what_can_be_made_is_not_warned_about);
+    tcase_add_test(t, test_a_law_is_tried_with_all_that_is_absent_at_zero);
+    tcase_add_test(t, test_a_rate_of_zero_makes_nothing);
     suite_add_tcase(s, t);
     t = tcase_create("size and memory");
     tcase_set_timeout(t, 60);

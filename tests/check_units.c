@@ -135,6 +135,18 @@ START_TEST(test_decimal_units_are_correctly_rounded)
 }
 END_TEST
 
+/* One rounding, not two: 60 and not 3600/60. */
+START_TEST(test_whole_factors_are_applied_at_once)
+{
+    unit_system minutes = system_of("M", "min"), hours = system_of("M", "h");
+    unit h = unit_of("h"), min = unit_of("min");
+    for (int i = 1; i < 1000; i++) {
+        ck_assert_double_eq(unit_to_stored(&minutes, &h, i / 7.0), i / 7.0 * 60);
+        ck_assert_double_eq(unit_to_stored(&hours, &min, i / 7.0), i / 7.0 / 60);
+    }
+}
+END_TEST
+
 START_TEST(test_the_files_own_units_store_the_number_itself)
 {
     unit_system gas = gas_system();
@@ -238,6 +250,7 @@ START_TEST(test_decimals_have_limits)
     ck_assert_int_eq(rational_read("99999999999999999999999999", &r), RATIONAL_TOO_LARGE);
     ck_assert_int_eq(rational_read("0.123456789012345", &r), RATIONAL_OK);
     ck_assert_int_eq(rational_read("0.1234567890123456", &r), RATIONAL_TOO_LONG);
+    ck_assert_int_eq(rational_read("0.0000000000000001", &r), RATIONAL_TOO_LONG);
     ck_assert_int_eq(rational_read("0.50000000000000000000000000", &r), RATIONAL_OK);
 }
 END_TEST
@@ -401,6 +414,7 @@ START_TEST(test_the_nearest_name_is_found)
 {
     static const char *const known[] = {"check", "run", "steady", "oscillate", "k2", "Vmax"};
     ck_assert_str_eq(lb_nearest("chekc", known, 6), "check");       /* transposition */
+    ck_assert_str_eq(lb_nearest("rnu", known, 6), "run");           /* one edit is all that three letters allow */
     ck_assert_str_eq(lb_nearest("stedy", known, 6), "steady");      /* deletion */
     ck_assert_str_eq(lb_nearest("ocsillates", known, 6), "oscillate");
     ck_assert_str_eq(lb_nearest("VMAX", known, 6), "Vmax");         /* case */
@@ -437,6 +451,7 @@ Suite *units_suite(void)
     tcase_add_test(t, test_exponents_beyond_all_sense_are_refused);
     tcase_add_test(t, test_powers_of_concentration_are_told_from_lengths);
     tcase_add_test(t, test_decimal_units_are_correctly_rounded);
+    tcase_add_test(t, test_whole_factors_are_applied_at_once);
     tcase_add_test(t, test_the_files_own_units_store_the_number_itself);
     tcase_add_test(t, test_molecules_become_moles);
     tcase_add_test(t, test_energies_per_mole_stay_what_they_are);

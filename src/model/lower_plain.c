@@ -141,8 +141,6 @@ static void set_dimension(lower *l, lower_plain *p)
         return;
     if (p->has_unit) {
         p->dim = form_known(&p->measure.dim);
-    } else if (p->kind == CONSTANT_TEMPERATURE) {
-        p->dim.known.num[DIMENSION_TEMPERATURE] = 1;    /* a bare temperature means kelvin */
     } else {
         p->unknown = infer_new(&l->inf);
         if (p->unknown < 0 || !form_unknown(&l->inf, p->unknown, &p->dim))
