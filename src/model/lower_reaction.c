@@ -175,6 +175,15 @@ static const char *what_is(const char *name)
     return strcmp(name, "kr") == 0 ? "the rate constant kr" : "the rate constant k";
 }
 
+/* Where eyring in a definition, which is of first order, is meant for another one. */
+static const char *eyring_remedy(const lower *l, const syntax_expression *node)
+{
+    int index = node->kind == SYNTAX_NAME ? names_find(&l->definition_names, node->text) : -1;
+    const syntax_statement *s = index >= 0 ? l->definitions[index].statement : NULL;
+    bool is_eyring = s && s->value && s->value->kind == SYNTAX_CALL && strcmp(s->value->text, "eyring") == 0;
+    return is_eyring ? "in a definition eyring(...) is in s^-1: for a second-order step write `eyring(...)/M`" : NULL;
+}
+
 /* A rate constant of a step that uses up `side`. */
 static lower_value rate_constant(lower *l, const syntax_argument *a, const struct side *side)
 {
@@ -183,7 +192,7 @@ static lower_value rate_constant(lower *l, const syntax_argument *a, const struc
     lower_context context = {.what = what, .state_remedy = law_remedy, .has_order = side->is_known
                              && side->order.num <= 1000000 && side->order.den <= 1000000, .order = side->order};
     lower_value v = lower_evaluate(l, a->value, &context);
-    need_order(l, &v, side, &one, -1, what, NULL);
+    need_order(l, &v, side, &one, -1, what, eyring_remedy(l, a->value));
     lower_require_sign(l, &v, SIGN_NOT_NEGATIVE, "rate constant", what);
     return v;
 }
