@@ -145,15 +145,21 @@ typedef struct bench {
     cycle_report report;
 } bench;
 
-static void bench_open(bench *b, const char *text)
+/* System, evaluator and initial state of b->net. */
+static void bench_start(bench *b)
 {
     lb_error err = {.message = ""};
-    memset(b, 0, sizeof *b);
-    b->net = support_network(text);
     ck_assert_msg(lb_system_new(b->net, &b->sys, &err) == LB_OK, "%s", err.message);
     ck_assert_msg(lb_evaluator_new(b->sys, &b->ev, &err) == LB_OK, "%s", err.message);
     b->x = calloc((size_t)lb_network_states(b->net), sizeof *b->x);
     lb_initial(b->ev, b->x);
+}
+
+static void bench_open(bench *b, const char *text)
+{
+    memset(b, 0, sizeof *b);
+    b->net = support_network(text);
+    bench_start(b);
 }
 
 static void bench_find(bench *b, const cycle_options *options)
@@ -297,6 +303,34 @@ START_TEST(test_stable_focus_is_rest_with_swings)
     ck_assert_int_ge(b.report.swings, 3);
     assert_close(b.report.swing_decay, exp(-2 * 3.14159265358979 * 0.15 / 0.9886859966642595), 0.05, 0);
     ck_assert_int_ge(b.report.swing_species, 0);
+    bench_close(&b);
+}
+END_TEST
+
+/* x'' + 0.1 x' + x = 0: each swing is exp(-0.1 pi/omega) = 0.73 of the last, so 22 of
+ * them are above a thousandth of the first. */
+START_TEST(test_swings_are_counted_down_to_a_thousandth)
+{
+    bench b;
+    find_in(&b, "units none\nsigned X, Y\n[X]0 = 1\n-> X, v = [Y]\n-> Y, v = -[X] - 0.1*[Y]\n", CYCLE_SETTLED);
+    ck_assert_int_ge(b.report.swings, 21);
+    ck_assert_int_le(b.report.swings, 23);
+    assert_close(b.report.swing_decay, exp(-0.1 * 3.14159265358979 / sqrt(1 - 0.0025)), 1e-4, 0);
+    bench_close(&b);
+}
+END_TEST
+
+/* POLLU decays over ten decades of time; fast species follow slow ones, with signs of
+ * their rates that are only noise. */
+START_TEST(test_noise_is_no_swing)
+{
+    bench b;
+    memset(&b, 0, sizeof b);
+    b.net = support_network_file("networks/pollu.mech");
+    bench_start(&b);
+    bench_find(&b, NULL);
+    assert_outcome(&b, CYCLE_SETTLED);
+    ck_assert_int_eq(b.report.swings, 0);
     bench_close(&b);
 }
 END_TEST
@@ -480,6 +514,28 @@ START_TEST(test_repelling_cycle_is_closed_but_not_stable)
 }
 END_TEST
 
+/* A cycle so weak that its multiplier is one within error stands alone all the same. */
+START_TEST(test_lone_neutral_orbit_is_no_centre)
+{
+    bench b;
+    find_in(&b, "units none\nsigned X, Y\n[X]0 = 1\n-> X, v = -[Y] + 5e-9*[X]*(1 - [X]^2 - [Y]^2)\n"
+            "-> Y, v = [X] + 5e-9*[Y]*(1 - [X]^2 - [Y]^2)\n", CYCLE_UNDECIDED);
+    bench_close(&b);
+}
+END_TEST
+
+START_TEST(test_steady_state_is_no_orbit)
+{
+    bench b;
+    lb_cycle *cycle = NULL;
+    bench_open(&b, BRUSSELATOR("3"));
+    b.x[lb_network_find_state(b.net, "X")] = 1;
+    ck_assert_int_eq(cycle_close(b.ev, b.x, 7, NULL, &cycle, NULL), LB_OK);
+    ck_assert_ptr_null(cycle);
+    bench_close(&b);
+}
+END_TEST
+
 START_TEST(test_close_far_from_any_orbit_finds_nothing)
 {
     bench b;
@@ -543,6 +599,8 @@ Suite *cycle_suite(void)
     TCase *rest = tcase_create("rest");
     tcase_set_timeout(rest, 60);
     tcase_add_test(rest, test_stable_focus_is_rest_with_swings);
+    tcase_add_test(rest, test_swings_are_counted_down_to_a_thousandth);
+    tcase_add_test(rest, test_noise_is_no_swing);
     tcase_add_test(rest, test_slow_focus_is_rest);
     tcase_add_test(rest, test_relaxation_to_a_node_has_no_swings);
     tcase_add_test(rest, test_degenerate_rest_is_rest);
@@ -558,11 +616,13 @@ Suite *cycle_suite(void)
     tcase_add_test(other, test_torus_is_undecided);
     tcase_add_test(other, test_heteroclinic_cycle_is_undecided);
     tcase_add_test(other, test_rest_on_an_invariant_face);
+    tcase_add_test(other, test_lone_neutral_orbit_is_no_centre);
     suite_add_tcase(suite, other);
     TCase *demand = tcase_create("on demand");
     tcase_set_timeout(demand, 120);
     tcase_add_test(demand, test_close_finds_the_least_period);
     tcase_add_test(demand, test_repelling_cycle_is_closed_but_not_stable);
+    tcase_add_test(demand, test_steady_state_is_no_orbit);
     tcase_add_test(demand, test_close_far_from_any_orbit_finds_nothing);
     tcase_add_test(demand, test_a_stop_is_heeded);
     tcase_add_test(demand, test_every_failed_allocation_is_reported);

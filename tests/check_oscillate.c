@@ -268,6 +268,18 @@ END_TEST
 
 /* ---- Witnesses --------------------------------------------------------------------------- */
 
+/* Written to 17 digits, so the very numbers. */
+static void assert_starts_on_the_cycle(const lb_system *sys, const lb_cycle *cycle)
+{
+    lb_evaluator *ev = NULL;
+    double x[16];
+    ck_assert_int_eq(lb_evaluator_new(sys, &ev, NULL), LB_OK);
+    lb_initial(ev, x);
+    for (int i = 0; i < cycle->states; i++)
+        ck_assert_msg(x[i] == cycle->x[i], "%.17g, wanted %.17g", x[i], cycle->x[i]);
+    lb_evaluator_free(ev);
+}
+
 /* The witness reads back, starts on the cycle and has the same period and range. */
 static void assert_witness_runs(const bench *b)
 {
@@ -283,6 +295,7 @@ static void assert_witness_runs(const bench *b)
         assert_close(again.answer->cycle->low[j], cycle->low[i], 1e-7, 0);
         assert_close(again.answer->cycle->high[j], cycle->high[i], 1e-7, 0);
     }
+    assert_starts_on_the_cycle(again.sys, cycle);
     for (int i = 0; i < lb_network_constants(b->net); i++)
         ck_assert_msg(lb_network_default(again.net, i) == b->answer->k[i], "%s: %.17g, wanted %.17g",
                       lb_network_constant_name(b->net, i), lb_network_default(again.net, i), b->answer->k[i]);
@@ -304,6 +317,11 @@ START_TEST(test_witness_runs)
         /* a tank, a feed with a range, a derived initial value */
         "units none\nresidence = 164 in 50 .. 300\nhalf = 0.5\n[a]in = 1 in 0.5 .. 2\n[a]0 = 0.4*half\n[b]0 = 0.16\n"
         "a + 2 b -> 3 b, k = 1\nb -> c, k = 0.025\n",
+        /* arguments of functions, in a reaction and in a definition */
+        "units M s\ntemperature = 310 K in 300 .. 320\n[A] = 1 M\n[B] = 1.7 M in 0.5 .. 5\n[X]0 = 1.2 M\n[Y]0 = 3\n"
+        "k1 = 2*eyring(dH = 73 kJ/mol in 70 .. 76, dS = -15 J/(mol K))\n"
+        "A -> X, k = k1\n2 X + Y -> 3 X, k = 0.5*arrhenius_ref(k = 2 M^-2 s^-1 within factor 2, Tref = 310 K, Ea = 1 kJ/mol)\n"
+        "B + X -> Y + D, k = 1\n[E] = 0 M\nX <-> E, kf = arrhenius(A = 1 s^-1 in 0.5 .. 2, n = 0, Ea = 0 J/mol), kr = 1 s^-1\n",
         /* a centre */
         "units none\n[A] = 1\n[X]0 = 2\n[Y]0 = 1\nA + X -> 2 X, k = 1\nX + Y -> 2 Y, k = 1\nY -> P, k = 1\n",
     };
@@ -317,8 +335,9 @@ END_TEST
 /* Values from settings are in the witness though they are not in the text. */
 START_TEST(test_witness_holds_settings)
 {
+    static const char *const texts[] = {BRUSSELATOR("1.7", ""), BRUSSELATOR("1.7 in 0.5 .. 1.9", "")};
     bench b = {.net = NULL};
-    const char *text = BRUSSELATOR("1.7", "");
+    const char *text = texts[_i];
     lb_setting setting = {"[B]", "3"};
     lb_diagnostics *list = NULL;
     lb_error err = {.message = ""};
@@ -398,8 +417,8 @@ Suite *oscillate_suite(void)
     suite_add_tcase(suite, box);
     TCase *witness = tcase_create("witness");
     tcase_set_timeout(witness, 60);
-    tcase_add_loop_test(witness, test_witness_runs, 0, 7);
-    tcase_add_test(witness, test_witness_holds_settings);
+    tcase_add_loop_test(witness, test_witness_runs, 0, 8);
+    tcase_add_loop_test(witness, test_witness_holds_settings, 0, 2);
     suite_add_tcase(suite, witness);
     TCase *trouble = tcase_create("interruption and memory");
     tcase_set_timeout(trouble, 120);

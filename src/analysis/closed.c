@@ -16,7 +16,7 @@
 #define LOOSE 1e-7                /* tolerance of the loops that only show the way */
 #define GOAL 1e-8                 /* residual of the shooting, in amplitudes */
 #define CLOSED 1e-9               /* closure of an orbit that is reported, in amplitudes */
-#define COLLAPSED 0.05            /* an orbit this much smaller than the guess is another thing */
+#define FLAT 1e-8                 /* largest relative swing below which there is only noise */
 #define STIFF_RATIO 12            /* the stiff method does this many times the work of a step */
 
 static lb_status prepare(closed_orbit *c, lb_evaluator *evaluator, const double *x, lb_error *err)
@@ -94,6 +94,17 @@ static lb_status reduce_period(closed_orbit *c, const lb_monitor *monitor, lb_er
     return shoot(c, monitor, err);
 }
 
+/* No species moves by more than noise: the orbit has shrunk to a steady state. */
+static bool is_flat(const closed_orbit *c)
+{
+    for (int k = 0; k < c->s.core; k++) {
+        int i = c->s.system->core_state[k];
+        if (c->high[i] - c->low[i] > FLAT * fmax(fabs(c->high[i]), fabs(c->low[i])))
+            return false;
+    }
+    return true;
+}
+
 /* Extrema and closure of the orbit found; false into converged when it has shrunk to
  * a point or does not close. */
 static lb_status measure(closed_orbit *c, const lb_monitor *monitor, lb_error *err)
@@ -104,14 +115,9 @@ static lb_status measure(closed_orbit *c, const lb_monitor *monitor, lb_error *e
     orbit_options options = with(c, c->tolerance, monitor);
     lb_status status = orbit_measure(&c->s, c->x, c->period, &options, c->low, c->high, end, &c->steps, err);
     if (status == LB_OK) {
-        double size = 0;
-        for (int k = 0; k < c->s.core; k++) {
-            int i = c->s.system->core_state[k];
-            size = fmax(size, (c->high[i] - c->low[i]) / c->scale[i]);
-        }
         orbit_scale(&c->s, c->low, c->high, c->scale);
         c->closure = space_distance(&c->s, end, c->x, c->scale);
-        c->converged = size > COLLAPSED && c->closure < CLOSED;
+        c->converged = !is_flat(c) && c->closure < CLOSED;
     }
     memory_free(end);
     return status;

@@ -129,7 +129,7 @@ static lb_status search_sample(hunt *h, box *b, const lb_oscillate_options *opti
     for (size_t j = 0; j < steady->count; j++)
         h->answer->unstable += steady->state[j].stable == LB_NO;
     if (i == 0)
-        status = hunt_from(h, b->x0, true, err);
+        status = hunt_from(h, b->x0, false, err);
     if (status == LB_OK && h->answer->verdict == LB_NOT_FOUND)
         status = hunt_near_states(h, steady, b->x0, err);
     lb_steady_free(steady);

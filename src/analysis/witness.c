@@ -18,6 +18,11 @@
 #include "text/syntax.h"
 #include "text/utf8.h"
 
+enum {
+    NAME_LIMIT = 1024,            /* bytes of a constant's name that are looked for */
+    PLAIN_DEPTH = 16              /* of the tree of a number with its unit */
+};
+
 typedef struct edit {
     size_t start, end;            /* bytes of the source that go */
     char text[256];               /* what comes instead */
@@ -113,49 +118,85 @@ static bool has_unit(const syntax_expression *e)
     return e->kind != SYNTAX_NUMBER && !(e->kind == SYNTAX_NEGATE && e->left->kind == SYNTAX_NUMBER);
 }
 
-/* Replace the number `value` of a constant where it differs from the text's; a range
- * that does not hold the new value goes, one by a factor is written out. */
-static lb_status edit_constant(writer *w, const char *name, const syntax_expression *value,
-                               const syntax_range *range)
+/* A number with its unit is a small tree without a function in it. */
+static bool has_call(const syntax_expression *e)
 {
-    int i = lb_network_find_constant(w->net, name);
-    if (i < 0 || (w->plain && lb_network_default(w->plain, i) == w->k[i]))
+    return e && (e->kind == SYNTAX_CALL || has_call(e->left) || has_call(e->right));
+}
+
+static bool may_be_plain(const syntax_expression *e)
+{
+    return e->depth <= PLAIN_DEPTH && !has_call(e);
+}
+
+/* Replace the number `value` of constant i where it differs from the text's.  Its range
+ * is written anew, since ends without a unit take the value's; one that does not hold
+ * the new value goes. */
+static lb_status edit_constant(writer *w, int i, const syntax_expression *value, const syntax_range *range)
+{
+    if (w->plain && lb_network_default(w->plain, i) == w->k[i])
         return LB_OK;
     const network_constant *c = &w->net->constants[i];
     char number[32], low[32], high[32], text[256];
-    size_t end = end_of(w, value);
-    bool is_held = c->has_range && w->k[i] >= c->low && w->k[i] <= c->high;
+    bool has_own_unit = has_unit(value) && *c->unit;
     write_number(w->k[i], number, sizeof number);
-    int length = snprintf(text, sizeof text, "%s%s%.80s", number, has_unit(value) && *c->unit ? " " : "",
-                          has_unit(value) ? c->unit : "");
-    if (range && (range->is_factor || !is_held))
-        end = end_of_range(w, range);
-    if (range && range->is_factor && is_held) {
+    int length = snprintf(text, sizeof text, "%s%s%.80s", number, has_own_unit ? " " : "", has_own_unit ? c->unit : "");
+    if (range && c->has_range && w->k[i] >= c->low && w->k[i] <= c->high) {
         write_number(c->low, low, sizeof low);
         write_number(c->high, high, sizeof high);
         snprintf(text + length, sizeof text - (size_t)length, " in %s .. %s", low, high);
     }
-    return add_edit(w, offset_of(w, value->where.line, value->where.column), end, text);
+    return add_edit(w, offset_of(w, value->where.line, value->where.column),
+                    range ? end_of_range(w, range) : end_of(w, value), text);
 }
 
-/* Numbers inside a reaction: `k = 1`, or an argument of a function there. */
+/* Named arguments inside an expression: constants called prefix.NAME.  Sums of many
+ * terms are deep, so the walk keeps its own stack. */
+static lb_status edit_arguments(writer *w, const char *prefix, const syntax_expression *root)
+{
+    const syntax_expression **stack = NULL;
+    size_t count = 0, capacity = 0;
+    char name[NAME_LIMIT];
+    lb_status status = LB_OK;
+    for (const syntax_expression *e = root; e && status == LB_OK; e = count > 0 ? stack[--count] : NULL) {
+        if (memory_grow(&stack, &capacity, count, sizeof *stack) != 0 ||
+            memory_grow(&stack, &capacity, count + 1, sizeof *stack) != 0) {
+            status = LB_E_NOMEM;
+            break;
+        }
+        for (const syntax_argument *a = e->first; a && status == LB_OK; a = a->next) {
+            snprintf(name, sizeof name, "%s.%s", prefix, a->name ? a->name : "");
+            int i = lb_network_find_constant(w->net, name);
+            status = i >= 0 ? edit_constant(w, i, a->value, a->range) : edit_arguments(w, prefix, a->value);
+        }
+        if (e->left)
+            stack[count++] = e->left;
+        if (e->right)
+            stack[count++] = e->right;
+    }
+    memory_free(stack);
+    return status;
+}
+
+/* A value that is a constant called `name`, or has such inside it called prefix.NAME. */
+static lb_status edit_value(writer *w, const char *name, const char *prefix, const syntax_expression *value,
+                            const syntax_range *range)
+{
+    int i = may_be_plain(value) ? lb_network_find_constant(w->net, name) : -1;
+    return i >= 0 ? edit_constant(w, i, value, range) : edit_arguments(w, prefix, value);
+}
+
+/* Numbers inside a reaction: LABEL.k, or LABEL.A of an argument in k or v, or
+ * LABEL.kf.A of one elsewhere. */
 static lb_status edit_settings(writer *w, const char *label, const syntax_argument *settings)
 {
-    char name[512];
+    char name[NAME_LIMIT];
     lb_status status = LB_OK;
     for (const syntax_argument *a = settings; a && status == LB_OK; a = a->next) {
-        if (!a->name)
-            continue;
-        snprintf(name, sizeof name, "%s.%s", label, a->name);
-        status = edit_constant(w, name, a->value, a->range);
-        for (const syntax_argument *inner = a->value->first; inner && status == LB_OK; inner = inner->next) {
-            if (!inner->name)
-                continue;
-            snprintf(name, sizeof name, "%s.%s", label, inner->name);
-            if (lb_network_find_constant(w->net, name) < 0)
-                snprintf(name, sizeof name, "%s.%s.%s", label, a->name, inner->name);
-            status = edit_constant(w, name, inner->value, inner->range);
-        }
+        const char *slot = a->name ? a->name : "k";
+        bool is_plain_slot = strcmp(slot, "k") == 0 || strcmp(slot, "v") == 0;
+        snprintf(name, sizeof name, "%s.%s", label, slot);
+        status = edit_value(w, name, is_plain_slot ? label : name, a->value, a->range);
     }
     return status;
 }
@@ -176,16 +217,16 @@ static lb_status edit_initial(writer *w, const syntax_statement *s)
 
 static lb_status edit_statement(writer *w, const syntax_statement *s, int *reaction)
 {
-    char name[512];
+    char name[NAME_LIMIT];
     switch (s->kind) {
     case SYNTAX_DEFINE_NAME:
-        return edit_constant(w, s->text, s->value, s->range);
+        return edit_value(w, s->text, s->text, s->value, s->range);
     case SYNTAX_DEFINE_CONCENTRATION:
         snprintf(name, sizeof name, "[%s]", s->text);
-        return edit_constant(w, name, s->value, s->range);
+        return edit_value(w, name, name, s->value, s->range);
     case SYNTAX_DEFINE_FEED:
         snprintf(name, sizeof name, "[%s]in", s->text);
-        return edit_constant(w, name, s->value, s->range);
+        return edit_value(w, name, name, s->value, s->range);
     case SYNTAX_DEFINE_INITIAL:
         return edit_initial(w, s);
     case SYNTAX_REACTION:
