@@ -249,6 +249,7 @@ typedef struct lb_mode {
     double time;             /* 1/|re|: relaxation time, or growth time when re > 0; infinite when re is 0 */
     double period;           /* 2 pi/im; 0 for a real eigenvalue */
     double damping;          /* factor by which the swing shrinks per period, exp(2 pi re/im); 0 when real */
+    double error;            /* bound of rounding and residual on the eigenvalue; a smaller re may have either sign */
 } lb_mode;
 
 typedef struct lb_steady_state {
@@ -256,7 +257,7 @@ typedef struct lb_steady_state {
     lb_complex *eigenvalues; /* [rank], in the reaction space, by falling real part, pairs adjacent with im > 0 first */
     lb_mode *modes;          /* [mode_count], slowest first */
     int mode_count;
-    double real_part_error;  /* bound of rounding and residual on the real parts; below it a sign is undecided */
+    double real_part_error;  /* the mode's error whose sign is the least certain */
     lb_answer stable;
     lb_kind kind;
     bool is_boundary;        /* some core species is zero */

@@ -160,6 +160,38 @@ START_TEST(test_bound_covers_the_true_error)
 }
 END_TEST
 
+/* A slow mode beside a fast one keeps its own bound. */
+START_TEST(test_each_mode_has_its_own_bound)
+{
+    const double A[] = {-1e-6, 0, 0, -1e12};
+    struct linear l = classify(2, A);
+    ck_assert_int_eq(l.state.kind, LB_STABLE_NODE);
+    ck_assert(l.state.modes[0].error < 1e-20 && l.state.modes[1].error > 1e-5);
+    linear_clear(&l);
+}
+END_TEST
+
+/* An exchange 13 decades faster than what flows through it: by hand the slow mode
+ * is -0.5e-3 to 1e-12. */
+START_TEST(test_slow_mode_under_a_fast_exchange_is_decided)
+{
+    lb_network *network = support_network("units none\n-> A, k = 1e-3\nA <-> B, kf = 1e10, kr = 1e10\nB ->, k = 1e-3\n");
+    lb_system *system = NULL;
+    lb_steady *steady = NULL;
+    lb_error err;
+    ck_assert_int_eq(lb_system_new(network, &system, &err), LB_OK);
+    ck_assert_int_eq(lb_steady_solve(system, NULL, &steady, &err), LB_OK);
+    ck_assert_uint_eq(steady->count, 1);
+    assert_close(steady->state[0].x[0], 1.0, 1e-12, 0);
+    assert_close(steady->state[0].x[1], 1.0, 1e-12, 0);
+    ck_assert_int_eq(steady->state[0].kind, LB_STABLE_NODE);
+    assert_close(steady->state[0].eigenvalues[0].re, -5e-4, 1e-12, steady->state[0].real_part_error);
+    lb_steady_free(steady);
+    lb_system_free(system);
+    lb_network_free(network);
+}
+END_TEST
+
 /* ---- Modes -------------------------------------------------------------------------- */
 
 /* -0.5 +- 3i and -4: slowest first. */
@@ -208,6 +240,8 @@ Suite *stability_suite(void)
     tcase_add_test(bounds, test_sign_is_decided_down_to_rounding);
     tcase_add_test(bounds, test_bound_does_not_grow_with_bad_scales);
     tcase_add_test(bounds, test_bound_covers_the_true_error);
+    tcase_add_test(bounds, test_each_mode_has_its_own_bound);
+    tcase_add_test(bounds, test_slow_mode_under_a_fast_exchange_is_decided);
     suite_add_tcase(suite, bounds);
     TCase *modes = tcase_create("modes");
     tcase_add_test(modes, test_modes_are_relaxation_times_and_periods);

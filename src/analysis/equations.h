@@ -6,8 +6,8 @@
  * conservation law.  There are more rows than unknowns when there are pools or
  * laws, and they are consistent at a root.
  *
- * A pool is a weighted sum of species that only flows change: what the other
- * steps would conserve.  Its balance follows from those of its species, but there
+ * A pool is a weighted sum of species that only some steps change: all but flows,
+ * or the reversible ones, would conserve it.  Its balance follows from those of its species, but there
  * it is a small difference of large terms, so it is better had directly. */
 #ifndef LIMBECK_ANALYSIS_EQUATIONS_H
 #define LIMBECK_ANALYSIS_EQUATIONS_H

@@ -94,44 +94,63 @@ static bool is_flow(const network_step *step)
     return step->order_count == 0 || step->orders[0].state == step->entries[0].state;
 }
 
+static bool is_reversible(const lb_network *net, int step)
+{
+    return net->steps[step].reaction >= 0 && net->reactions[net->steps[step].reaction].is_reversible;
+}
+
+/* Non-negative weights on two species or more, and not there yet. */
 static void keep_pool(equations_laws *laws, const int64_t *weight)
 {
+    double *pool = laws->pool + (size_t)laws->pool_count * (size_t)laws->width;
+    size_t bytes = (size_t)laws->width * sizeof *pool;
     int support = 0;
     for (int i = 0; i < laws->width; i++) {
         if (weight[i] < 0)
             return;
         support += weight[i] > 0;
+        pool[i] = (double)weight[i];
     }
-    if (support < 2)
-        return;
-    for (int i = 0; i < laws->width; i++)
-        laws->pool[(size_t)laws->pool_count * (size_t)laws->width + (size_t)i] = (double)weight[i];
-    laws->pool_count++;
+    for (int p = 0; p < laws->pool_count; p++)
+        if (memcmp(laws->pool + (size_t)p * (size_t)laws->width, pool, bytes) == 0)
+            return;
+    if (support >= 2)
+        laws->pool_count++;
 }
 
-/* What the steps conserve that are no flows.  A network too large for that has no
- * pools. */
-static lb_status find_pools(equations_laws *laws, const lb_system *system, bool *use, lb_error *err)
+/* What the steps in use conserve.  A network too large for that has no pools. */
+static lb_status add_pools(equations_laws *laws, const lb_system *system, const bool *use, lb_error *err)
 {
     conservation found = {0};
-    bool has_flow = false;
-    for (int s = 0; s < system->steps; s++) {
-        has_flow = has_flow || (use[s] && is_flow(&system->network->steps[s]));
-        use[s] = use[s] && !is_flow(&system->network->steps[s]);
-    }
-    if (!has_flow)
-        return LB_OK;
     lb_status status = conservation_find(system->network, system->core_state, system->core, use, &found, NULL);
-    if (status == LB_E_LIMIT)
-        return LB_OK;
-    if (status == LB_OK) {
-        int most = found.count < MOST_POOLS ? found.count : MOST_POOLS;
-        laws->pool = memory_array((size_t)most * (size_t)laws->width, sizeof *laws->pool);
-        for (int row = 0; laws->pool && row < most; row++)
-            keep_pool(laws, found.law + (size_t)row * (size_t)found.width);
+    for (int row = 0; status == LB_OK && row < found.count && laws->pool_count < MOST_POOLS; row++)
+        keep_pool(laws, found.law + (size_t)row * (size_t)found.width);
+    if (status == LB_OK)
+        conservation_clear(&found);
+    return status == LB_OK || status == LB_E_LIMIT ? LB_OK : status_no_memory(err);
+}
+
+/* Two families: what all steps but flows conserve, and what the reversible reactions
+ * conserve, which are often fast beside the others. */
+static lb_status find_pools(equations_laws *laws, const lb_system *system, const bool *is_alive, lb_error *err)
+{
+    bool has_flow = false, has_reversible = false;
+    bool *use = memory_array((size_t)system->steps, sizeof *use);
+    laws->pool = memory_array((size_t)(MOST_POOLS + 1) * (size_t)laws->width, sizeof *laws->pool);
+    lb_status status = use && laws->pool ? LB_OK : status_no_memory(err);
+    for (int s = 0; status == LB_OK && s < system->steps; s++) {
+        use[s] = is_alive[s] && !is_flow(&system->network->steps[s]);
+        has_flow = has_flow || (is_alive[s] && !use[s]);
+        has_reversible = has_reversible || (use[s] && is_reversible(system->network, s));
     }
-    conservation_clear(&found);
-    return status == LB_OK && laws->pool ? LB_OK : status_no_memory(err);
+    if (status == LB_OK && has_flow)
+        status = add_pools(laws, system, use, err);
+    for (int s = 0; status == LB_OK && s < system->steps; s++)
+        use[s] = use[s] && is_reversible(system->network, s);
+    if (status == LB_OK && has_reversible)
+        status = add_pools(laws, system, use, err);
+    memory_free(use);
+    return status;
 }
 
 lb_status equations_laws_init(equations_laws *laws, lb_evaluator *evaluator, const double *x0, lb_error *err)

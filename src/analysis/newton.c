@@ -27,7 +27,7 @@ enum { MOST_ITERATIONS = 40, MOST_HALVINGS = 6, MOST_POLISHING = 30, MOST_RELAXA
 static const double STEP_LIMIT = 5;             /* e^5: two decades */
 static const double RESIDUAL_TOLERANCE = 1e-11; /* a root, before polishing */
 static const double STEP_TOLERANCE = 1e-3;      /* and well placed: not on its way to zero or infinity */
-static const double RANK_TOLERANCE = 1e-10;
+static const double RANK_TOLERANCE = 1e-13;     /* fast steps may hide slow ones 13 decades below */
 static const double FAR = 100;                  /* e^-100 = 4e-44: on the way to zero or infinity */
 
 /* ---- Workspace -------------------------------------------------------------------- */
@@ -336,16 +336,13 @@ static double farthest_move(const newton *w, const double *u)
 lb_status newton_relax(newton *w, double *u, bool *is_near, lb_error *err)
 {
     int count = w->eq->count;
-    double inertia = 0;
     *is_near = false;
-    for (int i = 0; i < MOST_RELAXATIONS; i++) {
-        if (!equations_matrix(w->eq, u, i == 0 ? 1 : inertia, w->F, w->A))
+    if (!equations_matrix(w->eq, u, 1, w->F, w->A))
+        return LB_OK;
+    double inertia = first_inertia(w);
+    for (int i = 0; i < MOST_RELAXATIONS && inertia > 0; i++) {
+        if (!equations_matrix(w->eq, u, inertia, w->F, w->A))
             return LB_OK;
-        if (i == 0) {
-            inertia = first_inertia(w);
-            if (!(inertia > 0) || !equations_matrix(w->eq, u, inertia, w->F, w->A))
-                return LB_OK;
-        }
         *is_near = equations_residual(w->eq, w->F) < 1e-6;
         if (*is_near)
             return LB_OK;

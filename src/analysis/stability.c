@@ -4,8 +4,8 @@
  * which changes no eigenvalue): species that live at 1e-9 and at 1 would else
  * hide in each other's rounding.  With left and right vectors y and z, a value is
  * off by y(Az - value z)/yz, and an uncertainty E of the entries moves it by
- * |y|E|z|/|yz|, both to first order; E holds the rounding of each entry's terms,
- * and the change of the entry when the state moves by its own uncertainty.
+ * |y|E|z|/|yz|, both to first order; E holds the rounding of each entry's terms.
+ * What the uncertainty of the state does is found by moving it.
  *
  * Sources: G. H. Golub and C. F. Van Loan, Matrix Computations, 4th ed. (2013),
  * sections 7.2.2 and 7.5.7; E. E. Osborne, J. ACM 7 (1960) 338 (balancing).  What
@@ -17,17 +17,20 @@
 #include <string.h>
 
 #include "analysis/linalg.h"
+#include "analysis/sample.h"
 #include "base/memory.h"
 #include "base/status.h"
 
-enum { ROUTH_LIMIT = 8 };
+enum { ROUTH_LIMIT = 8, MOVES = 4 };
 
 struct workspace {
     int n, rank;
     double *x;              /* [n] the state; zero for species set aside */
-    double *J;              /* [n*n] */
+    double *y;              /* [n] the state moved */
+    double *J, *moved_J;    /* [n*n] */
     double *reduced;        /* [rank*rank] */
-    double *moved;          /* [rank*rank] at the state moved by its uncertainty */
+    double *moved;          /* [MOVES*rank*rank] changes of reduced when the state moves by its uncertainty */
+    int moves;              /* of them that were made */
     double *error;          /* [rank*rank] uncertainty of each entry of reduced */
     double *scale;          /* [rank] of the balancing */
     double *matrix;         /* [rank*rank] scratch */
@@ -41,7 +44,9 @@ struct workspace {
 static void workspace_clear(struct workspace *w)
 {
     memory_free(w->x);
+    memory_free(w->y);
     memory_free(w->J);
+    memory_free(w->moved_J);
     memory_free(w->reduced);
     memory_free(w->moved);
     memory_free(w->error);
@@ -62,9 +67,11 @@ static lb_status workspace_init(struct workspace *w, const lb_system *system, lb
     w->n = system->n;
     w->rank = system->rank;
     w->x = memory_array(n, sizeof *w->x);
+    w->y = memory_array(n, sizeof *w->y);
     w->J = memory_array(n * n, sizeof *w->J);
+    w->moved_J = memory_array(n * n, sizeof *w->moved_J);
     w->reduced = memory_array(rank * rank, sizeof *w->reduced);
-    w->moved = memory_array(rank * rank, sizeof *w->moved);
+    w->moved = memory_array(MOVES * rank * rank, sizeof *w->moved);
     w->error = memory_array(rank * rank, sizeof *w->error);
     w->scale = memory_array(rank, sizeof *w->scale);
     w->matrix = memory_array(rank * rank, sizeof *w->matrix);
@@ -74,7 +81,7 @@ static lb_status workspace_init(struct workspace *w, const lb_system *system, lb
     w->f = memory_array(n, sizeof *w->f);
     w->magnitude = memory_array(n, sizeof *w->magnitude);
     w->pivot = memory_array(rank, sizeof *w->pivot);
-    if (w->x && w->J && w->reduced && w->moved && w->error && w->scale && w->matrix && w->vectors && w->inverse && w->bound &&
+    if (w->x && w->y && w->J && w->moved_J && w->reduced && w->moved && w->error && w->scale && w->matrix && w->vectors && w->inverse && w->bound &&
         w->f && w->magnitude && w->pivot)
         return LB_OK;
     workspace_clear(w);
@@ -133,36 +140,72 @@ static double balance_error(const struct workspace *w, int i)
     double size = w->magnitude[i];
     for (int j = 0; j < w->n; j++)
         size += fabs(w->J[i + (size_t)j * (size_t)w->n] * w->x[j]);
-    return fabs(w->f[i]) + 2 * DBL_EPSILON * size;
+    return fabs(w->f[i]) + DBL_EPSILON * size;
 }
 
-/* Move the state by what rounding and the residual leave uncertain of it, to
- * first order: independent species by |inverse(A)| |error of f|, the dependent
- * ones along the laws.  False: the matrix is singular. */
-static bool move_state(struct workspace *w, const lb_system *system)
+/* change [rank]: what an error of f does to the independent species, with signs
+ * drawn for each balance, the matrix being factored in w->matrix. */
+static void draw_change(struct workspace *w, const lb_system *system, int move, double *change)
 {
-    int rank = w->rank, dependent = system->core - rank;
-    size_t size = (size_t)rank * (size_t)rank;
-    memcpy(w->matrix, w->reduced, size * sizeof *w->matrix);
-    memset(w->inverse, 0, size * sizeof *w->inverse);
-    for (int i = 0; i < rank; i++)
-        w->inverse[i + (size_t)i * (size_t)rank] =
-            balance_error(w, system->core_state[system->independent[i]]) / w->scale[i];
-    if (!linalg_factor(rank, w->matrix, w->pivot))
-        return false;
-    linalg_solve(rank, w->matrix, w->pivot, rank, w->inverse);
-    for (int i = 0; i < rank; i++) {
-        double change = 0;
-        for (int j = 0; j < rank; j++)
-            change += fabs(w->inverse[i + (size_t)j * (size_t)rank]) * w->scale[i];
-        if (!isfinite(change))
-            return false;
-        w->x[system->core_state[system->independent[i]]] += change;
-        for (int d = 0; d < dependent; d++)
-            w->x[system->core_state[system->dependent[d]]] -=
-                system->elimination[d + (size_t)i * (size_t)dependent] * change;
+    for (int i = 0; i < w->rank; i++) {
+        double side = sample_uniform(0x73746174, (uint64_t)move, (uint64_t)i) < 0.5 ? -1 : 1;
+        change[i] = side * balance_error(w, system->core_state[system->independent[i]]) / w->scale[i];
     }
-    return true;
+    linalg_solve(w->rank, w->matrix, w->pivot, 1, change);
+    for (int i = 0; i < w->rank; i++)
+        change[i] *= w->scale[i];
+}
+
+/* y: x moved by stretch*change, the dependent species along the laws. */
+static void move_state(struct workspace *w, const lb_system *system, const double *change, double stretch)
+{
+    int dependent = system->core - w->rank;
+    memcpy(w->y, w->x, (size_t)w->n * sizeof *w->y);
+    for (int i = 0; i < w->rank; i++) {
+        w->y[system->core_state[system->independent[i]]] += stretch * change[i];
+        for (int d = 0; d < dependent; d++)
+            w->y[system->core_state[system->dependent[d]]] -=
+                stretch * system->elimination[d + (size_t)i * (size_t)dependent] * change[i];
+    }
+}
+
+/* Multiple of a change that moves some species by a millionth: far above the
+ * rounding of the Jacobian, and still linear. */
+static double stretch_of(const struct workspace *w, const lb_system *system, const double *change)
+{
+    double largest = 0;
+    for (int i = 0; i < w->rank; i++) {
+        double x = w->x[system->core_state[system->independent[i]]];
+        if (x != 0)
+            largest = fmax(largest, fabs(change[i] / x));
+    }
+    return largest > 0 && largest < 1e-6 ? 1e-6 / largest : 1;
+}
+
+/* Changes of the reduced matrix when the state moves by what rounding and the
+ * residual leave uncertain of it: first order, a few draws of the errors' signs.
+ * None when the matrix is singular: then some eigenvalue is zero anyway. */
+static void make_moves(struct workspace *w, lb_evaluator *evaluator)
+{
+    const lb_system *system = evaluator_system(evaluator);
+    size_t size = (size_t)w->rank * (size_t)w->rank;
+    double *change = w->bound;
+    memcpy(w->matrix, w->reduced, size * sizeof *w->matrix);
+    if (!linalg_factor(w->rank, w->matrix, w->pivot))
+        return;
+    for (; w->moves < MOVES; w->moves++) {
+        double *moved = w->moved + (size_t)w->moves * size;
+        draw_change(w, system, w->moves, change);
+        double stretch = stretch_of(w, system, change);
+        move_state(w, system, change, stretch);
+        lb_jacobian(evaluator, w->y, w->moved_J);
+        system_reduce(system, w->moved_J, moved);
+        apply_balance(w, moved);
+        for (size_t i = 0; i < size; i++)
+            moved[i] = (moved[i] - w->reduced[i]) / stretch;
+        if (!isfinite(frobenius(size, moved)))
+            return;
+    }
 }
 
 /* Magnitude of the terms that each entry of the reduced matrix is the sum of. */
@@ -182,10 +225,10 @@ static void start_error(struct workspace *w, const lb_system *system)
     for (int j = 0; j < w->rank; j++)
         for (int i = 0; i < w->rank; i++)
             w->error[i + (size_t)j * (size_t)w->rank] =
-                2 * (w->rank + 3) * DBL_EPSILON * entry_size(w, system, i, j);
+                2 * DBL_EPSILON * entry_size(w, system, i, j);
 }
 
-/* Fills reduced and error, both balanced. */
+/* Fills reduced, error and moved, all balanced. */
 static lb_status make_matrix(struct workspace *w, lb_evaluator *evaluator, const lb_steady_state *state,
                              lb_error *err)
 {
@@ -202,14 +245,7 @@ static lb_status make_matrix(struct workspace *w, lb_evaluator *evaluator, const
         return status_raise(err, LB_E_FINITE, NULL, "the Jacobian at a steady state is not finite");
     start_error(w, system);
     apply_balance(w, w->error);
-    if (!move_state(w, system))
-        return LB_OK;
-    lb_jacobian(evaluator, w->x, w->J);
-    system_reduce(system, w->J, w->moved);
-    apply_balance(w, w->moved);
-    for (size_t i = 0; i < size; i++)
-        if (isfinite(w->moved[i]))
-            w->error[i] += fabs(w->moved[i] - w->reduced[i]);
+    make_moves(w, evaluator);
     return LB_OK;
 }
 
@@ -230,8 +266,8 @@ static struct pair pair_of(const struct workspace *w, int i, bool is_complex)
     return (struct pair){z, is_complex ? z + w->rank : NULL, y, is_complex ? y + 1 : NULL, is_complex ? 2 : 1};
 }
 
-/* |y (A z - value z)|: what the computed value is off by, to first order. */
-static double pair_residual(const struct workspace *w, const struct pair *p, lb_complex value)
+/* |y (B - value) z| for a matrix B. */
+static double pair_form(const struct workspace *w, const struct pair *p, const double *B, lb_complex value)
 {
     int rank = w->rank;
     double re = 0, im = 0;
@@ -240,8 +276,8 @@ static double pair_residual(const struct workspace *w, const struct pair *p, lb_
         double y_im = p->y_im ? -p->y_im[(size_t)i * (size_t)rank] : 0;
         double r = value.im * z_im - value.re * p->z[i], r_im = -value.re * z_im - value.im * p->z[i];
         for (int j = 0; j < rank; j++) {
-            r += w->reduced[i + (size_t)j * (size_t)rank] * p->z[j];
-            r_im += p->z_im ? w->reduced[i + (size_t)j * (size_t)rank] * p->z_im[j] : 0;
+            r += B[i + (size_t)j * (size_t)rank] * p->z[j];
+            r_im += p->z_im ? B[i + (size_t)j * (size_t)rank] * p->z_im[j] : 0;
         }
         re += y * r - y_im * r_im;
         im += y * r_im + y_im * r;
@@ -261,6 +297,18 @@ static double pair_uncertainty(const struct workspace *w, const struct pair *p, 
         }
     }
     return sum;
+}
+
+/* What is left of the equation of the eigenvalue, what rounding of the entries and
+ * what the uncertainty of the state do to it; twice what is only estimated. */
+static double pair_bound(const struct workspace *w, const struct pair *p, lb_complex value)
+{
+    size_t size = (size_t)w->rank * (size_t)w->rank;
+    double moved = 0;
+    for (int m = 0; m < w->moves; m++)
+        moved = fmax(moved, pair_form(w, p, w->moved + (size_t)m * size, (lb_complex){0, 0}));
+    double sum = 2 * pair_form(w, p, w->reduced, value) + pair_uncertainty(w, p, w->error) + 2 * moved;
+    return sum / p->product;
 }
 
 /* False when the vectors are dependent to the last bit. */
@@ -287,7 +335,7 @@ static void find_bounds(struct workspace *w, const lb_complex *values)
         struct pair p = pair_of(w, i, is_complex);
         w->bound[i] = sqrt(DBL_EPSILON) * frobenius(size, w->reduced);
         if (is_regular)
-            w->bound[i] = (2 * pair_residual(w, &p, values[i]) + pair_uncertainty(w, &p, w->error)) / p.product;
+            w->bound[i] = pair_bound(w, &p, values[i]);
         if (is_complex)
             w->bound[i + 1] = w->bound[i];
         i += is_complex ? 2 : 1;
@@ -368,10 +416,10 @@ static void name_state(lb_steady_state *state, int rank, const struct signs *s)
         state->kind = s->has_pair ? LB_STABLE_FOCUS : LB_STABLE_NODE;
 }
 
-static lb_mode mode_of(lb_complex value)
+static lb_mode mode_of(lb_complex value, double error)
 {
     const double two_pi = 6.283185307179586477;
-    lb_mode mode = {.eigenvalue = value, .time = 1 / fabs(value.re)};
+    lb_mode mode = {.eigenvalue = value, .time = 1 / fabs(value.re), .error = error};
     if (value.im != 0) {
         mode.period = two_pi / value.im;
         mode.damping = exp(two_pi * value.re / value.im);
@@ -380,13 +428,13 @@ static lb_mode mode_of(lb_complex value)
 }
 
 /* Slowest first; equal times keep the order of the eigenvalues. */
-static void fill_modes(lb_steady_state *state, int rank)
+static void fill_modes(lb_steady_state *state, int rank, const double *bound)
 {
     state->mode_count = 0;
     for (int i = 0; i < rank; i++) {
         if (state->eigenvalues[i].im < 0)
             continue;
-        lb_mode mode = mode_of(state->eigenvalues[i]);
+        lb_mode mode = mode_of(state->eigenvalues[i], bound[i]);
         int place = state->mode_count++;
         for (; place > 0 && state->modes[place - 1].time < mode.time; place--)
             state->modes[place] = state->modes[place - 1];
@@ -426,7 +474,7 @@ lb_status stability_classify(lb_evaluator *evaluator, lb_steady_state *state, lb
         struct signs signs = count_signs(&w, state->eigenvalues);
         state->real_part_error = signs.error;
         name_state(state, w.rank, &signs);
-        fill_modes(state, w.rank);
+        fill_modes(state, w.rank, w.bound);
         state->routh_hurwitz_agrees = routh_agrees(&w, &signs);
     }
     workspace_clear(&w);
