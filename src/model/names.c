@@ -29,43 +29,50 @@ void names_clear(names *table)
     names_init(table);
 }
 
-static size_t hash(const char *name)
+static uint32_t hash(const char *name)
 {
     uint64_t h = 14695981039346656037u;
     for (const unsigned char *c = (const unsigned char *)name; *c; c++)
         h = (h ^ *c) * 1099511628211u;
-    return (size_t)(h ^ (h >> 32));
+    return (uint32_t)(h ^ (h >> 32));
 }
 
 /* Slot of the name, or the empty slot where it belongs. */
-static size_t find_slot(const names *table, const char *name)
+static names_slot *find_slot(const names *table, const char *name, uint32_t h)
 {
-    size_t i = hash(name) & (table->slots - 1);
-    while (table->slot[i] >= 0 && strcmp(table->name[table->slot[i]], name) != 0)
+    size_t i = h & (table->slots - 1);
+    while (table->slot[i].entry >= 0
+           && (table->slot[i].hash != h || strcmp(table->name[table->slot[i].entry], name) != 0))
         i = (i + 1) & (table->slots - 1);
-    return i;
+    return &table->slot[i];
 }
 
 int names_find(const names *table, const char *name)
 {
     if (table->slots == 0)
         return -1;
-    int entry = table->slot[find_slot(table, name)];
+    int entry = find_slot(table, name, hash(name))->entry;
     return entry < 0 ? -1 : table->value[entry];
 }
 
+/* Twice the slots; the entries move by their hashes alone. */
 static int make_slots(names *table, size_t slots)
 {
-    int *fresh = memory_array(slots, sizeof *fresh);
+    names_slot *fresh = memory_array(slots, sizeof *fresh);
     if (!fresh)
         return -1;
+    for (size_t i = 0; i < slots; i++)
+        fresh[i] = (names_slot){0, -1};
+    for (size_t i = 0; i < table->slots; i++) {
+        size_t to = table->slot[i].hash & (slots - 1);
+        while (table->slot[i].entry >= 0 && fresh[to].entry >= 0)
+            to = (to + 1) & (slots - 1);
+        if (table->slot[i].entry >= 0)
+            fresh[to] = table->slot[i];
+    }
     memory_free(table->slot);
     table->slot = fresh;
     table->slots = slots;
-    for (size_t i = 0; i < slots; i++)
-        fresh[i] = -1;
-    for (size_t i = 0; i < table->count; i++)
-        fresh[find_slot(table, table->name[i])] = (int)i;
     return 0;
 }
 
@@ -76,7 +83,8 @@ int names_add(names *table, const char *name, int value)
     if (memory_grow(&table->name, &table->name_capacity, table->count, sizeof *table->name)
         || memory_grow(&table->value, &table->value_capacity, table->count, sizeof *table->value))
         return -1;
-    table->slot[find_slot(table, name)] = (int)table->count;
+    uint32_t h = hash(name);
+    *find_slot(table, name, h) = (names_slot){h, (int)table->count};
     table->name[table->count] = name;
     table->value[table->count++] = value;
     return 0;

@@ -3,13 +3,19 @@
 #define LIMBECK_MODEL_NAMES_H
 
 #include <stddef.h>
+#include <stdint.h>
+
+typedef struct names_slot {
+    uint32_t hash;          /* most names that differ do so here already */
+    int entry;              /* index into the arrays of the table, -1 empty */
+} names_slot;
 
 /* Name -> number, open addressing.  Names are borrowed and must outlive the table. */
 typedef struct names {
     const char **name;      /* [count] in order of entry */
     int *value;             /* [count] */
     size_t count, name_capacity, value_capacity;
-    int *slot;              /* [slots] index into the arrays, -1 empty */
+    names_slot *slot;       /* [slots] */
     size_t slots;           /* a power of two */
 } names;
 
