@@ -40,6 +40,7 @@ static unit_system system_of(const char *concentration, const char *time)
     unit_system_init(&s);
     s.concentration = unit_of(concentration);
     s.time = unit_of(time);
+    strcpy(s.concentration_text, concentration);
     strcpy(s.factor[0].name, concentration);
     strcpy(s.time_text, time);
     return s;
@@ -207,6 +208,21 @@ START_TEST(test_units_are_written_in_the_notation_of_the_language)
     ck_assert(dimension_concentration_time(1, 1, 0, 1, &d));
     assert_text(&gas, d, "molecule/cm^3");
     assert_text(&s, dimension_none(), "");
+}
+END_TEST
+
+START_TEST(test_volumes_are_written_in_litres_where_concentrations_are_molar)
+{
+    unit_system molar = system_of("M", "s"), milli = system_of("mM", "s");
+    dimension d = dimension_none();
+    d.num[DIMENSION_LENGTH] = 3;
+    assert_text(&molar, d, "L");
+    assert_text(&milli, d, "mol/mM");
+    d.num[DIMENSION_TIME] = -1;
+    assert_text(&molar, d, "L/s");
+    d.num[DIMENSION_AMOUNT] = 1;
+    d.num[DIMENSION_LENGTH] = 0;
+    assert_text(&molar, d, "mol/s");
 }
 END_TEST
 
@@ -457,6 +473,7 @@ Suite *units_suite(void)
     tcase_add_test(t, test_energies_per_mole_stay_what_they_are);
     tcase_add_test(t, test_units_none_leaves_numbers_alone);
     tcase_add_test(t, test_units_are_written_in_the_notation_of_the_language);
+    tcase_add_test(t, test_volumes_are_written_in_litres_where_concentrations_are_molar);
     tcase_add_test(t, test_energies_are_written_per_mole);
     suite_add_tcase(s, t);
     t = tcase_create("rationals and inference");

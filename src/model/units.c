@@ -314,17 +314,28 @@ static void write_factors(const struct factors *list, buffer *out)
     }
 }
 
+/* Lengths and amounts: powers of the unit of concentration as far as the lengths
+ * go, the rest in mol.  A volume alone is in L where concentrations are in M. */
+static void add_matter(const unit_system *system, const dimension *d, struct factors *list)
+{
+    int64_t num = -(int64_t)d->num[DIMENSION_LENGTH], den = 3 * (int64_t)d->den[DIMENSION_LENGTH];
+    if (d->num[DIMENSION_AMOUNT] == 0 && strcmp(system->concentration_text, "M") == 0) {
+        add_factor(list, "L", -num, den);
+        return;
+    }
+    for (int i = 0; i < system->factor_count; i++)
+        add_factor(list, system->factor[i].name, num * system->factor[i].num, den * system->factor[i].den);
+    add_factor(list, "mol", (int64_t)d->num[DIMENSION_AMOUNT] * den - num * d->den[DIMENSION_AMOUNT],
+               den * d->den[DIMENSION_AMOUNT]);
+}
+
 void unit_write(const unit_system *system, const dimension *d, buffer *out)
 {
     if (system->none || dimension_is_none(d))
         return;
     struct factors list = {.count = 0};
-    int64_t num = -(int64_t)d->num[DIMENSION_LENGTH], den = 3 * (int64_t)d->den[DIMENSION_LENGTH];
-    for (int i = 0; i < system->factor_count; i++)
-        add_factor(&list, system->factor[i].name, num * system->factor[i].num, den * system->factor[i].den);
-    int64_t amount_num = (int64_t)d->num[DIMENSION_AMOUNT] * den - num * d->den[DIMENSION_AMOUNT];
     add_factor(&list, "J", d->num[DIMENSION_ENERGY], d->den[DIMENSION_ENERGY]);
-    add_factor(&list, "mol", amount_num, den * d->den[DIMENSION_AMOUNT]);
+    add_matter(system, d, &list);
     add_factor(&list, "K", d->num[DIMENSION_TEMPERATURE], d->den[DIMENSION_TEMPERATURE]);
     add_factor(&list, system->time_text, d->num[DIMENSION_TIME], d->den[DIMENSION_TIME]);
     write_factors(&list, out);
