@@ -55,7 +55,8 @@ static void check_example(const struct example *e)
     lb_error err = {.code = LB_OK};
     buffer got;
     buffer_init(&got);
-    lb_status status = lb_network_parse("f", buffer_get(&e->text), e->text.length, e->setting, e->settings, &net, &list, &err);
+    lb_status status =
+        lb_network_parse("f", buffer_get(&e->text), e->text.length, e->setting, e->settings, &net, &list, &err);
     bool is_file_at_fault = status == LB_OK || status == LB_E_MECHANISM;
     if (is_file_at_fault) {
         write_diagnostics(list, &got);
@@ -66,10 +67,12 @@ static void check_example(const struct example *e)
     if (strcmp(e->kind, "mech") == 0)
         ck_assert_msg(status == LB_OK, "line %d of docs/language.md:\n%s", e->line, buffer_get(&got));
     else
-        ck_assert_msg(strcmp(buffer_get(&got), buffer_get(&e->wanted)) == 0, "line %d of docs/language.md wants\n%sand limbeck says\n%s",
-                      e->line, buffer_get(&e->wanted), buffer_get(&got));
+        ck_assert_msg(strcmp(buffer_get(&got), buffer_get(&e->wanted)) == 0,
+                      "line %d of docs/language.md wants\n%sand limbeck says\n%s", e->line,
+                      buffer_get(&e->wanted), buffer_get(&got));
     lb_status wanted = strcmp(e->kind, "fault") == 0 ? LB_E_MECHANISM : LB_OK;
-    ck_assert_msg(strcmp(e->kind, "setting") == 0 ? !is_file_at_fault : status == wanted, "line %d: status %d", e->line, status);
+    ck_assert_msg(strcmp(e->kind, "setting") == 0 ? !is_file_at_fault : status == wanted, "line %d: status %d",
+                  e->line, status);
     lb_network_free(net);
     lb_diagnostics_free(list);
     buffer_clear(&got);
@@ -152,7 +155,8 @@ static int check_row(char *line, char *text, int number)
         take_text(cell[0], text);
     if (text[0] == '\0' || !strchr(cell[1], ':'))
         return 0;
-    ck_assert_msg(has_fault(text, cell[1], cell[2], cell[3]), "line %d of docs/language.md: `%s` has no such fault", number, text);
+    ck_assert_msg(has_fault(text, cell[1], cell[2], cell[3]),
+                  "line %d of docs/language.md: `%s` has no such fault", number, text);
     return 1;
 }
 

@@ -198,7 +198,8 @@ START_TEST(test_steps_are_power_laws_where_they_can_be)
     lb_network *net = support_network(everything);
     ck_assert_int_eq(lb_network_steps(net), 14);
     for (int s = 0; s < 14; s++) {
-        bool is_law = strcmp(lb_network_step_name(net, s), "R5") == 0 || strcmp(lb_network_step_name(net, s), "R11") == 0;
+        bool is_law =
+            strcmp(lb_network_step_name(net, s), "R5") == 0 || strcmp(lb_network_step_name(net, s), "R11") == 0;
         ck_assert_msg(net->steps[s].is_power_law == !is_law, "%s", net->steps[s].name);
     }
     lb_network_free(net);
@@ -272,7 +273,8 @@ END_TEST
 
 START_TEST(test_units_none_checks_no_dimension)
 {
-    lb_network *net = support_network("units none\nM = 2\ns = 3\n[A]0 = 1\nA -> B, v = M*[A] + s*[A]^2 + [A]/(1 + [A])\n");
+    lb_network *net =
+        support_network("units none\nM = 2\ns = 3\n[A]0 = 1\nA -> B, v = M*[A] + s*[A]^2 + [A]/(1 + [A])\n");
     assert_constant(net, "M", 2, "");
     double x[2] = {2, 0};
     assert_close(step_rate(net, 0, x), 4 + 12 + 2.0 / 3, 1e-15, 0);
@@ -282,7 +284,8 @@ END_TEST
 
 START_TEST(test_a_zero_fits_anywhere)
 {
-    lb_network *net = support_network("k = 0\n[A]0 = 0\nA -> B, v = k*([A] - 0) + 0\n[B]0 = 1\nB -> A, k = 0*k\n");
+    lb_network *net =
+        support_network("k = 0\n[A]0 = 0\nA -> B, v = k*([A] - 0) + 0\n[B]0 = 1\nB -> A, k = 0*k\n");
     assert_constant(net, "k", 0, "s^-1");
     lb_network_free(net);
 }
@@ -297,8 +300,9 @@ END_TEST
 
 START_TEST(test_dimensions_flow_through_derived_constants)
 {
-    assert_says("a = 2\nb = a*[E]\nc = b + 3 s^-1\n[E] = 1\nA + E -> B, k = a\nB -> A, k = c\n[A]0 = 1\nA -> B, k = a\n",
-                LB_E_MECHANISM, "8:13 `a` is used as s^-1 here and as M^-1 s^-1 in line 3\n");
+    assert_says(
+        "a = 2\nb = a*[E]\nc = b + 3 s^-1\n[E] = 1\nA + E -> B, k = a\nB -> A, k = c\n[A]0 = 1\nA -> B, k = a\n",
+        LB_E_MECHANISM, "8:13 `a` is used as s^-1 here and as M^-1 s^-1 in line 3\n");
 }
 END_TEST
 
@@ -328,21 +332,27 @@ START_TEST(test_arrhenius_has_its_three_parameters)
 {
     double x[2] = {1, 0}, T = 350, R = 8.31446261815324;
     double want = 1e13 * pow(T, 0.5) * exp(-80000 / (R * T));
-    assert_close(rate_of_first_step("temperature = 350 K\nA -> B, k = arrhenius(A = 1e13 s^-1, n = 0.5, Ea = 80 kJ/mol)\n", x),
+    assert_close(rate_of_first_step(
+                     "temperature = 350 K\nA -> B, k = arrhenius(A = 1e13 s^-1, n = 0.5, Ea = 80 kJ/mol)\n", x),
                  want, 1e-13, 0);
     want = 1e13 * exp(-80000 / (R * T)) * 60;
-    assert_close(rate_of_first_step("units M min\ntemperature = 350 K\nA -> B, k = arrhenius(A = 1e13 s^-1, Ea = 80 kJ/mol)\n", x),
-                 want, 1e-13, 0);
+    assert_close(
+        rate_of_first_step(
+            "units M min\ntemperature = 350 K\nA -> B, k = arrhenius(A = 1e13 s^-1, Ea = 80 kJ/mol)\n", x),
+        want, 1e-13, 0);
 }
 END_TEST
 
 START_TEST(test_arrhenius_ref_gives_k_at_the_reference)
 {
     double x[2] = {1, 0}, R = 8.31446261815324;
-    assert_close(rate_of_first_step("temperature = 298.15\nA -> B, k = arrhenius_ref(k = 2, Tref = 298.15, Ea = 80 kJ/mol)\n", x),
-                 2, 1e-14, 0);
+    assert_close(
+        rate_of_first_step(
+            "temperature = 298.15\nA -> B, k = arrhenius_ref(k = 2, Tref = 298.15, Ea = 80 kJ/mol)\n", x),
+        2, 1e-14, 0);
     double want = 2 * exp(-80000 / R * (1 / 350.0 - 1 / 298.15));
-    assert_close(rate_of_first_step("temperature = 350\nA -> B, k = arrhenius_ref(k = 2, Tref = 298.15, Ea = 80 kJ/mol)\n", x),
+    assert_close(rate_of_first_step(
+                     "temperature = 350\nA -> B, k = arrhenius_ref(k = 2, Tref = 298.15, Ea = 80 kJ/mol)\n", x),
                  want, 1e-12, 0);
 }
 END_TEST
@@ -352,19 +362,23 @@ START_TEST(test_eyring_takes_its_standard_concentration_from_the_order)
 {
     double x[3] = {2, 3, 0}, kTh = 1.380649e-23 * 300 / 6.62607015e-34, R = 8.31446261815324;
     double factor = kTh * exp(-20 / R) * exp(-50000 / (R * 300));
-    assert_close(rate_of_first_step("temperature = 300\nA -> B, k = eyring(dH = 50 kJ/mol, dS = -20 J/mol/K)\n", x),
-                 factor * 2, 1e-12, 0);
+    assert_close(
+        rate_of_first_step("temperature = 300\nA -> B, k = eyring(dH = 50 kJ/mol, dS = -20 J/mol/K)\n", x),
+        factor * 2, 1e-12, 0);
     /* second order in mM and min: M^-1 s^-1 is 60/1000 mM^-1 min^-1 */
-    assert_close(rate_of_first_step("units mM min\ntemperature = 300\nA + B -> C, k = eyring(dH = 50 kJ/mol, dS = -20 J/mol/K)\n", x),
-                 factor * 60 / 1000 * 6, 1e-12, 0);
+    assert_close(
+        rate_of_first_step(
+            "units mM min\ntemperature = 300\nA + B -> C, k = eyring(dH = 50 kJ/mol, dS = -20 J/mol/K)\n", x),
+        factor * 60 / 1000 * 6, 1e-12, 0);
 }
 END_TEST
 
 START_TEST(test_eyring_in_a_definition_is_first_order)
 {
-    assert_says("temperature = 300\nk = eyring(dH = 50 kJ/mol, dS = -20 J/mol/K)\n[A]0 = 1\n2 A -> B, k = k\n", LB_E_MECHANISM,
-                "4:15 the rate constant k must be in M^-1 s^-1, but this is in s^-1\n");
-    lb_network *net = support_network("temperature = 300\nk = eyring(dH = 50 kJ/mol, dS = -20 J/mol/K)/M\n2 A -> B, k = k\n");
+    assert_says("temperature = 300\nk = eyring(dH = 50 kJ/mol, dS = -20 J/mol/K)\n[A]0 = 1\n2 A -> B, k = k\n",
+                LB_E_MECHANISM, "4:15 the rate constant k must be in M^-1 s^-1, but this is in s^-1\n");
+    lb_network *net =
+        support_network("temperature = 300\nk = eyring(dH = 50 kJ/mol, dS = -20 J/mol/K)/M\n2 A -> B, k = k\n");
     ck_assert_str_eq(net->derived[0].unit, "M^-1 s^-1");
     assert_constant(net, "k.dH", 50000, "J/mol");
     assert_constant(net, "k.dS", -20, "J/mol/K");
@@ -440,7 +454,8 @@ START_TEST(test_coefficients_may_be_expressions_of_constants)
     lb_network *net = support_network("f = 0.5\n[A]0 = 1\nA -> (f/2) B + (1 - f) A, k = 1\n");
     ck_assert_int_eq(net->reaction_count, 1);
     lb_network_free(net);
-    assert_says("[A]0 = 1\nA -> ([A]/M) B, k = 1\n", LB_E_MECHANISM, "2:7 `[A]` changes with time, so it cannot stand in a coefficient\n");
+    assert_says("[A]0 = 1\nA -> ([A]/M) B, k = 1\n", LB_E_MECHANISM,
+                "2:7 `[A]` changes with time, so it cannot stand in a coefficient\n");
 }
 END_TEST
 
@@ -451,13 +466,15 @@ START_TEST(test_atoms_and_charge_are_balanced)
                                   "formula \"Mn2+\" = Mn^2+\nformula CO2 = CO2\nformula W = H2O\nformula e = e^-\n"
                                   "[\"H+\"] = 1\n";
     char text[600];
-    snprintf(text, sizeof text, "%s2 \"MnO4-\" + 5 Ox + 16 \"H+\" -> 2 \"Mn2+\" + 10 CO2 + 8 W, v = 1\n", species);
+    snprintf(text, sizeof text, "%s2 \"MnO4-\" + 5 Ox + 16 \"H+\" -> 2 \"Mn2+\" + 10 CO2 + 8 W, v = 1\n",
+             species);
     lb_network *net = NULL;
     lb_diagnostics *list = NULL;
     ck_assert_int_eq(lb_network_parse("t", text, strlen(text), NULL, 0, &net, &list, NULL), LB_OK);
     lb_network_free(net);
     lb_diagnostics_free(list);
-    snprintf(text, sizeof text, "%s0.4 \"MnO4-\" + Ox + 3 \"H+\" -> 0.4 \"Mn2+\" + 2 CO2 + 1.6 W, v = 1\n", species);
+    snprintf(text, sizeof text, "%s0.4 \"MnO4-\" + Ox + 3 \"H+\" -> 0.4 \"Mn2+\" + 2 CO2 + 1.6 W, v = 1\n",
+             species);
     assert_says(text, LB_E_MECHANISM,
                 "9:27 `R1` is not balanced in H (3 on the left, 3.2 on the right), charge (0.6 on the left, 0.8 on the right)\n");
     snprintf(text, sizeof text, "%s\"MnO4-\" + 8 \"H+\" + 5 e -> \"Mn2+\" + 4 W, v = 1\n", species);
@@ -470,10 +487,11 @@ END_TEST
 /* 0.1 + 0.2 is 0.3 in decimals, and is not in doubles. */
 START_TEST(test_the_balance_is_exact)
 {
-    assert_says("formula A = H\nformula B = H\nformula C = H\n[A]0 = 1\n[B]0 = 1\n[C]0 = 1\n0.1 A + 0.2 B -> 0.3 C, v = 0\nC -> C, k = 1\n",
-                LB_OK, "");
-    assert_says("formula A = H\nformula B = H\nformula C = H\n0.1 A + 0.2 B -> 0.300000000000001 C, v = 0\n", LB_E_MECHANISM,
-                "4:15 `R1` is not balanced in H (0.3 on the left, 0.3 on the right)\n");
+    assert_says(
+        "formula A = H\nformula B = H\nformula C = H\n[A]0 = 1\n[B]0 = 1\n[C]0 = 1\n0.1 A + 0.2 B -> 0.3 C, v = 0\nC -> C, k = 1\n",
+        LB_OK, "");
+    assert_says("formula A = H\nformula B = H\nformula C = H\n0.1 A + 0.2 B -> 0.300000000000001 C, v = 0\n",
+                LB_E_MECHANISM, "4:15 `R1` is not balanced in H (0.3 on the left, 0.3 on the right)\n");
 }
 END_TEST
 
@@ -515,7 +533,10 @@ END_TEST
 
 START_TEST(test_settings_reach_initial_concentrations)
 {
-    static const struct { const char *name; int state; } cases[] = {{"[X]0", 0}, {"[Y]0", 1}, {"[Br-]0", 8}, {"[\"Br-\"]0", 8}};
+    static const struct {
+        const char *name;
+        int state;
+    } cases[] = {{"[X]0", 0}, {"[Y]0", 1}, {"[Br-]0", 8}, {"[\"Br-\"]0", 8}};
     for (int i = 0; i < 4; i++) {
         lb_network *net = NULL;
         lb_error err = {.code = LB_OK};
@@ -605,7 +626,8 @@ START_TEST(test_one_mistake_gives_one_message)
     assert_says("a = nix\nb = a + 1\nc = b*a\n[A] = c\nA -> B, k = c\nB -> A, v = a*[B]\n", LB_E_MECHANISM,
                 "1:5 nothing is called `nix`\n");
     assert_says("min = 3\nA -> B, k = min\n", LB_E_MECHANISM, "1:1 `min` is a unit and cannot be defined\n");
-    assert_says("a = b\nb = a\nA -> B, k = a + b\n", LB_E_MECHANISM, "1:1 the definition of `a` refers to itself: a -> b -> a\n");
+    assert_says("a = b\nb = a\nA -> B, k = a + b\n", LB_E_MECHANISM,
+                "1:1 the definition of `a` refers to itself: a -> b -> a\n");
 }
 END_TEST
 
@@ -626,8 +648,8 @@ END_TEST
 
 START_TEST(test_what_can_be_made_is_not_warned_about)
 {
-    assert_says("f = 1\n[A]0 = 1\nA -> (f) B, k = 1\nB -> A, k = 1\n", LB_OK, "");              /* by an expression */
-    assert_says("residence = 2\n[A]in = 1\nA -> B, k = 1\nB -> A, k = 1\n", LB_OK, "");         /* from the feed */
+    assert_says("f = 1\n[A]0 = 1\nA -> (f) B, k = 1\nB -> A, k = 1\n", LB_OK, ""); /* by an expression */
+    assert_says("residence = 2\n[A]in = 1\nA -> B, k = 1\nB -> A, k = 1\n", LB_OK, ""); /* from the feed */
     assert_says("[B]0 = 1\nA -> B, v = ([A] - [B])/s\nC -> B, k = 1\nA -> C, k = 1\n", LB_OK, ""); /* backwards */
     assert_says("signed A\nA -> B, k = 1\nB -> A, k = 1\n", LB_OK, "");
     assert_says("[A] = 1\nA -> B, k = 1\nB + C -> 2 C, k = 1\nC -> B, k = 1\nB -> C, k = 1\n", LB_OK, "");
@@ -747,8 +769,10 @@ END_TEST
 
 START_TEST(test_every_allocation_may_fail_with_faults)
 {
-    fail_each_allocation("k1 = 1 s\na = b\nb = a\nA -> B, k = k1\nB -> C, k = kk\n[C]0 = -1\n0 C -> A, k = foo(3)\n"
-                         "formula A = Xx\nformula B = H\nformula C = He\nC -> B, k = 3 cm3\nA -> B, v = 1 + [Q]\n", NULL, 0);
+    fail_each_allocation(
+        "k1 = 1 s\na = b\nb = a\nA -> B, k = k1\nB -> C, k = kk\n[C]0 = -1\n0 C -> A, k = foo(3)\n"
+        "formula A = Xx\nformula B = H\nformula C = He\nC -> B, k = 3 cm3\nA -> B, v = 1 + [Q]\n",
+        NULL, 0);
 }
 END_TEST
 

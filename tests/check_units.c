@@ -336,7 +336,8 @@ START_TEST(test_a_contradiction_is_found)
     inference inf;
     ck_assert_int_eq(infer_init(&inf), 0);
     int a = infer_new(&inf), b = infer_new(&inf);
-    form fa = unknown_form(&inf, a), fb = unknown_form(&inf, b), first = rate_form(0, -1), second = rate_form(-1, -1);
+    form fa = unknown_form(&inf, a), fb = unknown_form(&inf, b), first = rate_form(0, -1),
+         second = rate_form(-1, -1);
     ck_assert_int_eq(infer_equal(&inf, &fa, &fb, 1), INFER_FITS);
     ck_assert_int_eq(infer_equal(&inf, &fb, &first, 2), INFER_FITS);
     ck_assert_int_eq(infer_equal(&inf, &fa, &second, 3), INFER_CONFLICT);

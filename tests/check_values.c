@@ -76,7 +76,8 @@ static const network_constant *find_constant(const lb_network *net, const char *
 
 START_TEST(test_plain_numbers_are_constants_and_others_are_not)
 {
-    static const char *const plain[] = {"3", "-3", "(3)", "3 M", "-3 M/s", "3 M^-1 s^-1", "1/s", "3*M", "3 cm^3/(molecule s)"};
+    static const char *const plain[] = {
+        "3", "-3", "(3)", "3 M", "-3 M/s", "3 M^-1 s^-1", "1/s", "3*M", "3 cm^3/(molecule s)"};
     static const char *const derived[] = {"2*3", "1 + 0", "M", "a", "2*a", "3 M*a", "10^3", "exp(1)"};
     char text[100];
     for (size_t i = 0; i < sizeof plain / sizeof *plain; i++) {
@@ -96,7 +97,8 @@ END_TEST
 
 START_TEST(test_feeds_and_held_concentrations_stand_in_expressions)
 {
-    lb_network *net = support_network("residence = 2\n[A]in = 3\n[B] = [A]in/2\nx = [A]in + [C]in + [B]\nA -> C, k = 1\n");
+    lb_network *net =
+        support_network("residence = 2\n[A]in = 3\n[B] = [A]in/2\nx = [A]in + [C]in + [B]\nA -> C, k = 1\n");
     const network_definition *x = &net->derived[net->derived_count - 1];
     ck_assert_str_eq(x->name, "x");
     assert_close(x->number, 4.5, 1e-15, 0);
@@ -108,7 +110,8 @@ END_TEST
 
 START_TEST(test_initial_concentrations_may_be_derived_or_have_a_range)
 {
-    lb_network *net = support_network("total = 10 mM\n[A]0 = total - 2 mM\n[B]0 = 2 mM in 1 .. 5\nA <-> B, kf = 1, kr = 1\n");
+    lb_network *net =
+        support_network("total = 10 mM\n[A]0 = total - 2 mM\n[B]0 = 2 mM in 1 .. 5\nA <-> B, kf = 1, kr = 1\n");
     const network_species *a = &net->species[0], *b = &net->species[1];
     assert_close(a->initial_value, 0.008, 1e-15, 0);
     ck_assert(!a->has_initial_range && b->has_initial_range);

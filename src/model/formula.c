@@ -164,9 +164,11 @@ static void read_part(struct reader *r, int64_t *counts, int depth)
     if (r->at > from)
         return;
     if (is_small(*r->at))
-        fail(r, from, from + 1, "write the symbol with a capital, such as `Br`", "an element symbol begins with a capital letter");
+        fail(r, from, from + 1, "write the symbol with a capital, such as `Br`",
+             "an element symbol begins with a capital letter");
     else
-        fail(r, from, *from ? from + 1 : from, "write it as in `CuSO4.5H2O` or `BrO3^-`", "an element symbol is missing here");
+        fail(r, from, *from ? from + 1 : from, "write it as in `CuSO4.5H2O` or `BrO3^-`",
+             "an element symbol is missing here");
 }
 
 static bool skip_dot(struct reader *r)

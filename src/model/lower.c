@@ -87,14 +87,16 @@ static lb_status read_all(lower *l, lb_error *err)
 {
     typedef void part(lower *l);
     static part *const before[] = {lower_units, lower_names, lower_plains};
-    static part *const after[] = {lower_order, lower_add_species, lower_add_constants, lower_define, lower_reactions,
-                                  make_tank, lower_ranges, lower_finish_plains, lower_finish_definitions,
-                                  lower_check_ranges, lower_formulas, lower_balance};
+    static part *const after[] = {lower_order,        lower_add_species,   lower_add_constants,
+                                  lower_define,       lower_reactions,     make_tank,
+                                  lower_ranges,       lower_finish_plains, lower_finish_definitions,
+                                  lower_check_ranges, lower_formulas,      lower_balance};
     for (size_t i = 0; i < sizeof before / sizeof *before && l->status == LB_OK; i++)
         before[i](l);
     lb_status status = l->status == LB_OK ? lower_settings(l, err) : LB_OK;
     if (lb_diagnostics_faults(l->list) > 0)
-        status = LB_OK;     /* the file's faults come first; what a setting did to a value comes before those it caused */
+        status =
+            LB_OK; /* the file's faults come first; what a setting did to a value comes before those it caused */
     for (size_t i = 0; i < sizeof after / sizeof *after && l->status == LB_OK && status == LB_OK; i++)
         after[i](l);
     if (l->status == LB_OK && status == LB_OK)
@@ -114,8 +116,8 @@ static void complete(lower *l)
         lower_start_warnings(l);
 }
 
-lb_status lower_tree(const syntax_tree *tree, lb_diagnostics *list, const lb_setting *settings, size_t setting_count,
-                     lb_network **net, lb_error *err)
+lb_status lower_tree(const syntax_tree *tree, lb_diagnostics *list, const lb_setting *settings,
+                     size_t setting_count, lb_network **net, lb_error *err)
 {
     lower l = {.tree = tree, .list = list, .settings = settings, .setting_count = setting_count};
     lb_status status = LB_E_NOMEM;

@@ -175,7 +175,8 @@ bool lower_is_function(const char *name);
 
 void lower_plains(lower *l);
 /* Is the expression a plain number? */
-bool lower_read_plain(const lower *l, const syntax_expression *node, double *number, unit *measure, bool *has_unit);
+bool lower_read_plain(const lower *l, const syntax_expression *node, double *number, unit *measure,
+                      bool *has_unit);
 int  lower_add_plain(lower *l, const char *name, network_constant_kind kind, span where);
 int  lower_find_inline(const lower *l, const syntax_expression *node);  /* plain, or -1 */
 void lower_add_constants(lower *l);                  /* to the network, file order */
@@ -227,7 +228,8 @@ bool lower_agree(lower *l, const form *a, const form *b, int line, const char **
 /* State that a finished value has a dimension; a conflict is a fault "WHAT must be in ...".
  * remedy: NULL, or what to write instead. */
 bool lower_need(lower *l, lower_value *v, const dimension *d, const char *what, const char *remedy);
-dimension lower_dimension(int concentration_num, int concentration_den, int time, int energy, int amount, int temperature);
+dimension lower_dimension(int concentration_num, int concentration_den, int time, int energy, int amount,
+                          int temperature);
 
 /* ---- lower_define.c --------------------------------------------------------------- */
 

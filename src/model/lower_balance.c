@@ -45,7 +45,8 @@ void lower_formulas(lower *l)
 
 /* ---- Sums ------------------------------------------------------------------------------------ */
 
-static void add_quantity(struct tally *t, int side, int quantity, int64_t count, const rational *exact, double coefficient)
+static void add_quantity(struct tally *t, int side, int quantity, int64_t count, const rational *exact,
+                         double coefficient)
 {
     if (exact)
         t->exact[side][quantity] += (wide)count * exact->num * (SCALE / exact->den);

@@ -51,7 +51,8 @@ static void fault_function(lower *l, const syntax_expression *node)
     for (int i = 0; i < FUNCTION_COUNT; i++)
         known[i] = functions[i].name;
     const char *near = lb_nearest(node->text, known, FUNCTION_COUNT);
-    const char *remedy = near ? lower_text(l, "did you mean `%s`?", near) : "the functions are exp, ln, log10, sqrt, arrhenius, arrhenius_ref and eyring";
+    const char *remedy = near ? lower_text(l, "did you mean `%s`?", near)
+                              : "the functions are exp, ln, log10, sqrt, arrhenius, arrhenius_ref and eyring";
     if (strcmp(node->text, "log") == 0)
         remedy = "write `ln` or `log10`";
     else if (strcmp(node->text, "pow") == 0)
@@ -72,7 +73,8 @@ static int find_argument(const struct function *f, const char *name)
 }
 
 /* One argument of a function with names: its place, or -1 and a fault. */
-static int match_argument(lower *l, const struct function *f, const syntax_argument *a, const lower_value *const *found)
+static int match_argument(lower *l, const struct function *f, const syntax_argument *a,
+                          const lower_value *const *found)
 {
     const char *remedy = lower_text(l, "write `%s`", f->shape);
     if (!a->name) {
@@ -83,7 +85,8 @@ static int match_argument(lower *l, const struct function *f, const syntax_argum
     if (i < 0)
         diagnostics_fault(l->list, a->name_where, remedy, "`%s` has no argument `%s`", f->name, a->name);
     else if (found[i])
-        diagnostics_fault(l->list, a->name_where, "leave one of the two out", "the argument `%s` stands here twice", a->name);
+        diagnostics_fault(l->list, a->name_where, "leave one of the two out",
+                          "the argument `%s` stands here twice", a->name);
     return i >= 0 && !found[i] ? i : -1;
 }
 
@@ -103,8 +106,8 @@ static bool match(lower *l, const struct function *f, const syntax_expression *n
     for (i = 0; i < f->required && is_good; i++) {
         if (found[i])
             continue;
-        diagnostics_fault(l->list, node->where, lower_text(l, "write `%s`", f->shape), "`%s` needs the argument `%s`",
-                          f->name, f->argument[i]);
+        diagnostics_fault(l->list, node->where, lower_text(l, "write `%s`", f->shape),
+                          "`%s` needs the argument `%s`", f->name, f->argument[i]);
         is_good = false;
     }
     return is_good;
@@ -122,10 +125,12 @@ static double compute(expression_kind kind, double x)
     }
 }
 
-static lower_value elementary(lower *l, const struct function *f, const syntax_expression *node, lower_value *v, int count)
+static lower_value elementary(lower *l, const struct function *f, const syntax_expression *node, lower_value *v,
+                              int count)
 {
     if (count != 1 || node->first->name) {
-        diagnostics_fault(l->list, node->where, lower_text(l, "write `%s`", f->shape), "`%s` takes one argument, without a name", f->name);
+        diagnostics_fault(l->list, node->where, lower_text(l, "write `%s`", f->shape),
+                          "`%s` takes one argument, without a name", f->name);
         return value_bad(node->where);
     }
     value_finish(l, v);

@@ -9,7 +9,8 @@
 static void fault_product(lower *l, const syntax_expression *node, const char *right)
 {
     const syntax_expression *left = node->left;
-    bool is_short = (left->kind == SYNTAX_NUMBER || left->kind == SYNTAX_NAME) && left->text && node->right->kind == SYNTAX_NAME;
+    bool is_short = (left->kind == SYNTAX_NUMBER || left->kind == SYNTAX_NAME) && left->text
+                    && node->right->kind == SYNTAX_NAME;
     diagnostics_fault(l->list, node->where,
                       is_short ? lower_text(l, "write `%s*%s`", left->text, right) : "write `*` between the two",
                       "a product needs `*`");
@@ -22,18 +23,22 @@ static void fault_juxtaposed(lower *l, const syntax_expression *node, bool is_nu
     const char *text = name->text ? name->text : "";
     unit u;
     bool is_unit = unit_find(text, &u);
-    bool is_known = names_find(&l->definition_names, text) >= 0 || strcmp(text, "T") == 0 || strcmp(text, "R") == 0;
+    bool is_known =
+        names_find(&l->definition_names, text) >= 0 || strcmp(text, "T") == 0 || strcmp(text, "R") == 0;
     if (l->net->units.none && is_unit && !is_known)
-        diagnostics_fault(l->list, node->right->where, "leave the unit out", "there are no units after `units none`");
+        diagnostics_fault(l->list, node->right->where, "leave the unit out",
+                          "there are no units after `units none`");
     else if (l->net->units.none || is_known || (!is_number && !is_unit))
         fault_product(l, node, text);
     else if (!is_unit)
         diagnostics_fault(l->list, name->where, lower_unit_remedy(l, text), "there is no unit `%s`", text);
     else if (!is_number)
-        diagnostics_fault(l->list, node->where, lower_text(l, "multiply by the unit: write `*` before `%s`", text),
+        diagnostics_fault(l->list, node->where,
+                          lower_text(l, "multiply by the unit: write `*` before `%s`", text),
                           "a unit follows a plain number");
     else
-        diagnostics_fault(l->list, node->right->where, "write it as in `M^-0.5` or `M^(-1/2)`", "the exponent of a unit is a number");
+        diagnostics_fault(l->list, node->right->where, "write it as in `M^-0.5` or `M^(-1/2)`",
+                          "the exponent of a unit is a number");
 }
 
 lower_value value_juxtaposed(lower *l, const syntax_expression *node, lower_value left)
@@ -79,7 +84,8 @@ static bool fault_open_division(lower *l, const syntax_expression *node, const l
     if (left->kind != SYNTAX_DIVIDE || left->right->kind != SYNTAX_JUXTAPOSED || right_value->kind != VALUE_UNIT)
         return false;
     const syntax_expression *quantity = left->right;
-    if (quantity->left->kind == SYNTAX_NUMBER && quantity->right->kind == SYNTAX_NAME && right->kind == SYNTAX_NAME)
+    if (quantity->left->kind == SYNTAX_NUMBER && quantity->right->kind == SYNTAX_NAME
+        && right->kind == SYNTAX_NAME)
         remedy = lower_text(l, "write `/ (%s %s/%s)`", quantity->left->text, quantity->right->text, right->text);
     diagnostics_fault(l->list, quantity->where, remedy, "it is open how much of this the `/` divides by");
     return true;
@@ -140,7 +146,8 @@ static const char *sum_remedy(lower *l, const syntax_expression *node, const cha
     if (!bare || bare->kind != SYNTAX_NUMBER || !bare->text || strcmp(wanted, "another unit") == 0)
         return NULL;
     if (bare->number == 1)
-        return lower_text(l, "write `%s %s`, or divide the other side by a quantity in %s", bare->text, wanted, wanted);
+        return lower_text(l, "write `%s %s`, or divide the other side by a quantity in %s", bare->text, wanted,
+                          wanted);
     return lower_text(l, "write `%s %s`", bare->text, wanted);
 }
 
@@ -217,7 +224,8 @@ lower_value value_binary(lower *l, const syntax_expression *node, lower_value le
     rational power;
     if (is_product && stays_plain(node, &left, &right))
         return left;
-    if (node->kind == SYNTAX_POWER && left.kind == VALUE_UNIT && is_bare(&right) && rational_near(right.raw, &power)
+    if (node->kind == SYNTAX_POWER && left.kind == VALUE_UNIT && is_bare(&right)
+        && rational_near(right.raw, &power)
         && unit_power(&left.measure, (int)power.num, (int)power.den, &left.measure))
         return left;
     lower_value v;

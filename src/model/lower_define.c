@@ -108,7 +108,7 @@ static void store_in_species(lower *l, const lower_definition *d)
         return;
     network_species *s = &l->net->species[index];
     if (d->kind == DEFINE_HELD && d->value.kind == VALUE_BAD)
-        s->held = expression_number(&l->net->graph, 1);     /* so that reactions can be read on; there is a fault */
+        s->held = expression_number(&l->net->graph, 1); /* so that reactions can be read on; there is a fault */
     if (d->value.kind == VALUE_BAD)
         return;
     if (d->kind == DEFINE_HELD)

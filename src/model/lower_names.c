@@ -33,8 +33,9 @@ int lower_add_definition(lower *l, lower_definition_kind kind, const char *name,
         lower_no_memory(l);
         return -1;
     }
-    l->definitions[l->definition_count] = (lower_definition){
-        .kind = kind, .name = name, .statement = statement, .species = species, .plain = -1, .value = {.kind = VALUE_BAD}};
+    lower_definition *d = &l->definitions[l->definition_count];
+    *d = (lower_definition){.kind = kind, .name = name, .statement = statement, .species = species, .plain = -1};
+    d->value = value_bad((span){0, 0, 0});
     return (int)l->definition_count++;
 }
 
@@ -87,8 +88,9 @@ static void define_name(lower *l, const syntax_statement *s)
     const char *meaning = reserved_meaning(l, s->text);
     if (meaning)
         diagnostics_fault(l->list, s->text_where,
-                          strcmp(s->text, "T") == 0 ? "write `temperature = ...`"
-                                                    : lower_text(l, "choose another name, such as `%s_`", s->text),
+                          strcmp(s->text, "T") == 0
+                              ? "write `temperature = ...`"
+                              : lower_text(l, "choose another name, such as `%s_`", s->text),
                           "`%s` is %s and cannot be defined", s->text, meaning);
     if (!is_free(l, s->text, s->text_where))
         return;
@@ -104,6 +106,12 @@ static void define_name(lower *l, const syntax_statement *s)
         l->residence = index;
     else if (kind == DEFINE_TEMPERATURE)
         l->temperature = index;
+}
+
+static bool is_concentration(const syntax_statement *s)
+{
+    return s->kind == SYNTAX_DEFINE_CONCENTRATION || s->kind == SYNTAX_DEFINE_INITIAL
+           || s->kind == SYNTAX_DEFINE_FEED;
 }
 
 static void define_concentration(lower *l, const syntax_statement *s)
@@ -270,7 +278,7 @@ static void enter_broken(lower *l)
         } else if (s->kind == SYNTAX_REACTION) {
             enter_terms(l, s->left, true);
             enter_terms(l, s->right, s->is_reversible);
-        } else if (s->kind == SYNTAX_DEFINE_CONCENTRATION || s->kind == SYNTAX_DEFINE_INITIAL || s->kind == SYNTAX_DEFINE_FEED) {
+        } else if (is_concentration(s)) {
             define_concentration(l, s);
         }
     }
@@ -285,7 +293,7 @@ void lower_names(lower *l)
             set_title(l, s, &title);
         else if (s->kind == SYNTAX_DEFINE_NAME)
             define_name(l, s);
-        else if (s->kind == SYNTAX_DEFINE_CONCENTRATION || s->kind == SYNTAX_DEFINE_INITIAL || s->kind == SYNTAX_DEFINE_FEED)
+        else if (is_concentration(s))
             define_concentration(l, s);
         else if (s->kind == SYNTAX_REACTION)
             enter_reaction(l, s);
@@ -303,7 +311,8 @@ void lower_names(lower *l)
     for (size_t i = 0; i < l->species_count; i++)
         check_species(l, &l->species[i]);
     if (l->reaction_count == 0 && l->status == LB_OK && is_read)
-        diagnostics_fault(l->list, end_of_file(l), "write one, such as `A -> B, k = 1 s^-1`", "the file has no reaction");
+        diagnostics_fault(l->list, end_of_file(l), "write one, such as `A -> B, k = 1 s^-1`",
+                          "the file has no reaction");
 }
 
 /* ---- To the network ----------------------------------------------------------------------- */

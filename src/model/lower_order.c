@@ -46,7 +46,8 @@ static int definition_of(const lower *l, const syntax_expression *node)
         species = lower_find_species(l, node->text);
         return species < 0 ? -1 : l->species[species].feed;
     case SYNTAX_CALL:
-        return strncmp(node->text, "arrhenius", 9) == 0 || strcmp(node->text, "eyring") == 0 ? l->temperature : -1;
+        return strncmp(node->text, "arrhenius", 9) == 0 || strcmp(node->text, "eyring") == 0 ? l->temperature
+                                                                                             : -1;
     default:
         return -1;
     }
@@ -95,10 +96,11 @@ static void fault_cycle(lower *l, const struct search *g, int from, int depth)
         buffer_append(&text, "... -> ");
     buffer_append(&text, first->name);
     if (depth == from)
-        diagnostics_fault(l->list, first->statement->text_where, NULL, "the definition of `%s` refers to itself", first->name);
+        diagnostics_fault(l->list, first->statement->text_where, NULL,
+                          "the definition of `%s` refers to itself", first->name);
     else
-        diagnostics_fault(l->list, first->statement->text_where, NULL, "the definition of `%s` refers to itself: %s",
-                          first->name, buffer_get(&text));
+        diagnostics_fault(l->list, first->statement->text_where, NULL,
+                          "the definition of `%s` refers to itself: %s", first->name, buffer_get(&text));
     if (buffer_status(&text) != LB_OK)
         lower_no_memory(l);
     buffer_clear(&text);

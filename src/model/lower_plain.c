@@ -24,7 +24,8 @@ static bool read_unit(const lower *l, const syntax_expression *node, unit *out)
         return read_unit(l, node->left, out);
     case SYNTAX_JUXTAPOSED:
     case SYNTAX_MULTIPLY:
-        return read_unit(l, node->left, &left) && read_unit(l, node->right, &right) && unit_multiply(&left, &right, out);
+        return read_unit(l, node->left, &left) && read_unit(l, node->right, &right)
+               && unit_multiply(&left, &right, out);
     case SYNTAX_DIVIDE:
         return node->right->kind != SYNTAX_JUXTAPOSED && read_unit(l, node->left, &left)
                && read_unit(l, node->right, &right) && unit_divide(&left, &right, out);
@@ -33,7 +34,8 @@ static bool read_unit(const lower *l, const syntax_expression *node, unit *out)
     }
 }
 
-bool lower_read_plain(const lower *l, const syntax_expression *node, double *number, unit *measure, bool *has_unit)
+bool lower_read_plain(const lower *l, const syntax_expression *node, double *number, unit *measure,
+                      bool *has_unit)
 {
     double sign = 1;
     *measure = unit_one();
@@ -177,7 +179,8 @@ static int make_plain(lower *l, const char *name, network_constant_kind kind, co
 static void fault_range(lower *l, const syntax_range *range)
 {
     if (range)
-        diagnostics_fault(l->list, range->where, "give the range to the constants in it", "only a plain number has a range");
+        diagnostics_fault(l->list, range->where, "give the range to the constants in it",
+                          "only a plain number has a range");
 }
 
 /* Arguments by name inside an expression, in the order of the text: prefix.NAME. */
@@ -189,7 +192,8 @@ static void enter_arguments(lower *l, const char *prefix, const syntax_expressio
     while (node && l->status == LB_OK) {
         const syntax_expression *child[2] = {node->right, node->left};
         for (const syntax_argument *a = node->kind == SYNTAX_CALL ? node->first : NULL; a; a = a->next) {
-            int plain = a->name ? make_plain(l, lower_text(l, "%s.%s", prefix, a->name), CONSTANT_INLINE, a->value, a->range)
+            int plain = a->name ? make_plain(l, lower_text(l, "%s.%s", prefix, a->name), CONSTANT_INLINE,
+                                             a->value, a->range)
                                 : -1;
             if (plain >= 0)
                 enter_inline(l, a->value, plain);
@@ -214,8 +218,9 @@ static void enter_arguments(lower *l, const char *prefix, const syntax_expressio
 static void enter_definition(lower *l, lower_definition *d)
 {
     static const network_constant_kind kinds[] = {
-        [DEFINE_CONSTANT] = CONSTANT_NAMED, [DEFINE_HELD] = CONSTANT_HELD, [DEFINE_INITIAL] = CONSTANT_NAMED,
-        [DEFINE_FEED] = CONSTANT_FEED, [DEFINE_RESIDENCE] = CONSTANT_RESIDENCE, [DEFINE_TEMPERATURE] = CONSTANT_TEMPERATURE};
+        [DEFINE_CONSTANT] = CONSTANT_NAMED,      [DEFINE_HELD] = CONSTANT_HELD,
+        [DEFINE_INITIAL] = CONSTANT_NAMED,       [DEFINE_FEED] = CONSTANT_FEED,
+        [DEFINE_RESIDENCE] = CONSTANT_RESIDENCE, [DEFINE_TEMPERATURE] = CONSTANT_TEMPERATURE};
     const syntax_statement *s = d->statement;
     if (d->is_rejected)
         return;

@@ -27,7 +27,8 @@ static bool store_end(lower *l, const lower_plain *p, const syntax_expression *n
     const char *value_text, *end_text;
     form dim = form_known(&measure->dim);
     if (own->has_unit && !lower_agree(l, &p->dim, &dim, node->where.line, &value_text, &end_text)) {
-        diagnostics_fault(l->list, node->where, NULL, "this end is in %s and the value in %s", end_text, value_text);
+        diagnostics_fault(l->list, node->where, NULL, "this end is in %s and the value in %s", end_text,
+                          value_text);
         return false;
     }
     *stored = unit_to_stored(&l->net->units, measure, own->number);
@@ -40,7 +41,8 @@ static bool read_between(lower *l, lower_plain *p)
     const syntax_range *r = p->range;
     bool is_good = read_end(l, r->low, &low);
     is_good = read_end(l, r->high, &high) && is_good;
-    return is_good && store_end(l, p, r->low, &low, &high, &p->low) && store_end(l, p, r->high, &high, &low, &p->high);
+    return is_good && store_end(l, p, r->low, &low, &high, &p->low)
+           && store_end(l, p, r->high, &high, &low, &p->high);
 }
 
 static bool read_factor(lower *l, lower_plain *p)
@@ -63,7 +65,8 @@ static bool read_factor(lower *l, lower_plain *p)
 static bool holds_value(lower *l, const lower_plain *p)
 {
     if (!isfinite(p->low) || !isfinite(p->high))
-        diagnostics_fault(l->list, p->range->where, NULL, "an end of this range is too large in the units of the file");
+        diagnostics_fault(l->list, p->range->where, NULL,
+                          "an end of this range is too large in the units of the file");
     else if (!(p->low < p->high))
         diagnostics_fault(l->list, p->range->where, "write the lower end first", "this range is empty");
     else if (p->written < p->low - 1e-14 * fabs(p->low) || p->written > p->high + 1e-14 * fabs(p->high))
@@ -112,11 +115,12 @@ void lower_check_ranges(lower *l)
         if (!p->has_range)
             continue;
         if (p->sign == SIGN_NOT_NEGATIVE && p->low < 0)
-            diagnostics_fault(l->list, p->range->where, NULL, "the %s `%s` cannot be negative, and its range goes below zero",
-                              p->sign_why, p->name);
-        else if (p->sign == SIGN_POSITIVE && !(p->low > 0))
-            diagnostics_fault(l->list, p->range->where, NULL, "the %s `%s` is positive, and its range is not", p->sign_why,
+            diagnostics_fault(l->list, p->range->where, NULL,
+                              "the %s `%s` cannot be negative, and its range goes below zero", p->sign_why,
                               p->name);
+        else if (p->sign == SIGN_POSITIVE && !(p->low > 0))
+            diagnostics_fault(l->list, p->range->where, NULL, "the %s `%s` is positive, and its range is not",
+                              p->sign_why, p->name);
         else
             store(l, p);
     }

@@ -34,10 +34,12 @@ static bool read_settings(lower *l, const syntax_statement *s, struct settings *
         if (!place) {
             const char *near = lb_nearest(a->name, known, sizeof known / sizeof *known);
             diagnostics_fault(l->list, a->name_where,
-                              near ? lower_text(l, "did you mean `%s`?", near) : "a reaction has k, or kf and kr, or kf and K, or v",
+                              near ? lower_text(l, "did you mean `%s`?", near)
+                                   : "a reaction has k, or kf and kr, or kf and K, or v",
                               "a reaction has no setting `%s`", a->name);
         } else if (*place) {
-            diagnostics_fault(l->list, a->name_where, "leave one of the two out", "`%s` stands here twice", a->name);
+            diagnostics_fault(l->list, a->name_where, "leave one of the two out", "`%s` stands here twice",
+                              a->name);
         } else {
             *place = a;
             continue;
@@ -62,9 +64,11 @@ static bool check_settings(lower *l, const syntax_statement *s, const struct set
             return fault_settings(l, other->name_where, "write `k = ...`, or `<->` for a reversible reaction",
                                   "kf, kr and K belong to a reversible reaction, and this arrow goes one way");
         if (g->k && g->v)
-            return fault_settings(l, g->v->name_where, "leave one of the two out", "a reaction has either k or v");
+            return fault_settings(l, g->v->name_where, "leave one of the two out",
+                                  "a reaction has either k or v");
         if (!g->k && !g->v)
-            return fault_settings(l, s->arrow_where, "write `, k = ...` behind it, or `, v = ...`", "this reaction has no rate");
+            return fault_settings(l, s->arrow_where, "write `, k = ...` behind it, or `, v = ...`",
+                                  "this reaction has no rate");
         return true;
     }
     if (g->v)
@@ -74,7 +78,8 @@ static bool check_settings(lower *l, const syntax_statement *s, const struct set
         return fault_settings(l, g->k->name_where, "write `kf = ..., kr = ...` or `kf = ..., K = ...`",
                               "a reversible reaction has two rate constants, and k is one");
     if (g->kf && g->kr && g->K)
-        return fault_settings(l, g->K->name_where, "leave one of the three out", "kf, kr and K are not independent: K is kf/kr");
+        return fault_settings(l, g->K->name_where, "leave one of the three out",
+                              "kf, kr and K are not independent: K is kf/kr");
     if (!g->kf)
         return fault_settings(l, s->arrow_where, "write `kf = ..., kr = ...` or `kf = ..., K = ...`",
                               "this reversible reaction has no kf");
@@ -98,8 +103,8 @@ static bool read_coefficient(lower *l, const syntax_term *term, rational *out)
     else if (outcome == RATIONAL_TOO_LONG)
         diagnostics_fault(l->list, term->coefficient_where, NULL, "a coefficient has at most 15 digits");
     else if (out->num == 0)
-        diagnostics_fault(l->list, term->coefficient_where, "leave the species out", "the coefficient of `%s` is zero",
-                          term->species.text);
+        diagnostics_fault(l->list, term->coefficient_where, "leave the species out",
+                          "the coefficient of `%s` is zero", term->species.text);
     return outcome == RATIONAL_OK && out->num != 0;
 }
 
@@ -181,7 +186,8 @@ static const char *eyring_remedy(const lower *l, const syntax_expression *node)
     int index = node->kind == SYNTAX_NAME ? names_find(&l->definition_names, node->text) : -1;
     const syntax_statement *s = index >= 0 ? l->definitions[index].statement : NULL;
     bool is_eyring = s && s->value && s->value->kind == SYNTAX_CALL && strcmp(s->value->text, "eyring") == 0;
-    return is_eyring ? "in a definition eyring(...) is in s^-1: for a second-order step write `eyring(...)/M`" : NULL;
+    return is_eyring ? "in a definition eyring(...) is in s^-1: for a second-order step write `eyring(...)/M`"
+                     : NULL;
 }
 
 /* A rate constant of a step that uses up `side`. */
@@ -221,7 +227,8 @@ static void add_reverse(lower *l, const lower_reaction *r, const struct settings
     if (K.kind == VALUE_BAD || kf.kind == VALUE_BAD)
         return;
     if (K.number > 0 && !isfinite(kf.number / K.number)) {
-        diagnostics_fault(l->list, K.where, NULL, "the reverse rate constant kf/K comes out without a finite value");
+        diagnostics_fault(l->list, K.where, NULL,
+                          "the reverse rate constant kf/K comes out without a finite value");
         return;
     }
     add_mass_action(l, r, STEP_REVERSE, expression_binary(&l->net->graph, EXPRESSION_DIVIDE, kf.e, K.e));

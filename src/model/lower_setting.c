@@ -20,10 +20,11 @@ struct given {
 static lb_status fault_value(const lb_setting *s, lb_diagnostics *list, lb_error *err)
 {
     if (lb_diagnostics_count(list) == 0)
-        return status_raise(err, LB_E_ARG, "write a number, with a unit or without", "`%s` is set to `%s`, which is no plain number",
-                            s->name, s->value);
+        return status_raise(err, LB_E_ARG, "write a number, with a unit or without",
+                            "`%s` is set to `%s`, which is no plain number", s->name, s->value);
     lb_diagnostic first = lb_diagnostics_get(list, 0);
-    return status_raise(err, LB_E_ARG, first.remedy, "`%s` cannot be set to `%s`: %s", s->name, s->value, first.message);
+    return status_raise(err, LB_E_ARG, first.remedy, "`%s` cannot be set to `%s`: %s", s->name, s->value,
+                        first.message);
 }
 
 lb_status lower_read_number(const lower *l, const char *text, double *number, unit *measure, bool *has_unit,
@@ -98,7 +99,8 @@ static const char *references(lower *l, const syntax_expression *node)
             list = lower_text(l, "%s%s`%s`", list, shown > 0 ? ", " : "", name);
             seen[shown++] = name;
         }
-        for (const syntax_argument *a = node->kind == SYNTAX_CALL ? node->first : NULL; a && count < DEEPEST; a = a->next)
+        for (const syntax_argument *a = node->kind == SYNTAX_CALL ? node->first : NULL; a && count < DEEPEST;
+             a = a->next)
             stack[count++] = a->value;
         if (node->right && count < DEEPEST)
             stack[count++] = node->right;
@@ -111,8 +113,8 @@ static const char *references(lower *l, const syntax_expression *node)
 static lb_status fault_derived(lower *l, const char *name, const syntax_expression *value, lb_error *err)
 {
     const char *list = value ? references(l, value) : "";
-    return status_raise(err, LB_E_ARG, list[0] ? "set those" : NULL, "`%s` cannot be set: the file derives it%s%s", name,
-                        list[0] ? " from " : "", list);
+    return status_raise(err, LB_E_ARG, list[0] ? "set those" : NULL,
+                        "`%s` cannot be set: the file derives it%s%s", name, list[0] ? " from " : "", list);
 }
 
 /* LABEL.SLOT where the slot has no number of its own. */
@@ -133,7 +135,8 @@ static lb_status fault_slot(lower *l, const char *name, lb_error *err)
         K = strcmp(a->name, "K") == 0 ? a->name : K;
     }
     if (kf && K && strcmp(dot + 1, "kr") == 0)
-        return status_raise(err, LB_E_ARG, "set those", "`%s` cannot be set: the file derives it from kf and K", name);
+        return status_raise(err, LB_E_ARG, "set those", "`%s` cannot be set: the file derives it from kf and K",
+                            name);
     return LB_OK;
 }
 
@@ -166,8 +169,8 @@ static int split_concentration(lower *l, const char *name, lower_definition_kind
     return lower_find_species(l, lower_text(l, "%.*s", (int)(to - from), from));
 }
 
-static lb_status add_concentration(lower *l, const char *name, int species, lower_definition_kind kind, int *plain,
-                                   lb_error *err)
+static lb_status add_concentration(lower *l, const char *name, int species, lower_definition_kind kind,
+                                   int *plain, lb_error *err)
 {
     lower_species *p = &l->species[species];
     if (p->held >= 0)
@@ -229,8 +232,9 @@ lb_status lower_settings(lower *l, lb_error *err)
         p->set_unit = given.measure.dim;
         p->set_has_unit = given.has_unit;
         if (!isfinite(p->stored))
-            return status_raise(err, LB_E_ARG, NULL, "`%s` cannot be set to `%s`: too large in the units of the file",
-                                p->name, l->settings[i].value);
+            return status_raise(err, LB_E_ARG, NULL,
+                                "`%s` cannot be set to `%s`: too large in the units of the file", p->name,
+                                l->settings[i].value);
     }
     return LB_OK;
 }
@@ -243,22 +247,27 @@ static lb_status check_dimension(lower *l, const lower_plain *p, const lb_settin
         return LB_OK;
     const char *own = lower_dimension_text(l, &d);
     if (p->set_has_unit && !dimension_equal(&d, &p->set_unit))
-        return status_raise(err, LB_E_ARG, lower_text(l, "`%s` is %s%s", p->name, dimension_is_none(&d) ? "" : "in ", own),
+        return status_raise(err, LB_E_ARG,
+                            lower_text(l, "`%s` is %s%s", p->name, dimension_is_none(&d) ? "" : "in ", own),
                             "`%s` cannot be set to `%s`: the unit does not fit", p->name, s->value);
     if (!p->set_has_unit && !dimension_equal(&d, &kelvin)
-        && (d.num[DIMENSION_ENERGY] != 0 || d.num[DIMENSION_TEMPERATURE] != 0 || !dimension_is_concentration_power(&d, &num, &den)))
-        return status_raise(err, LB_E_ARG, lower_text(l, "write a unit, such as `%s`", strcmp(own, "J/mol") == 0 ? "kJ/mol" : own),
-                            "`%s` cannot be set to `%s`: a number without a unit carries only concentration and time",
-                            p->name, s->value);
+        && (d.num[DIMENSION_ENERGY] != 0 || d.num[DIMENSION_TEMPERATURE] != 0
+            || !dimension_is_concentration_power(&d, &num, &den)))
+        return status_raise(
+            err, LB_E_ARG,
+            lower_text(l, "write a unit, such as `%s`", strcmp(own, "J/mol") == 0 ? "kJ/mol" : own),
+            "`%s` cannot be set to `%s`: a number without a unit carries only concentration and time", p->name,
+            s->value);
     return LB_OK;
 }
 
 static lb_status check_sign(const lower_plain *p, const lb_setting *s, lb_error *err)
 {
     bool is_good = p->sign == SIGN_ANY || (p->sign == SIGN_NOT_NEGATIVE ? p->stored >= 0 : p->stored > 0);
-    return is_good ? LB_OK
-                   : status_raise(err, LB_E_ARG, NULL, "`%s` cannot be set to `%s`: a %s is %s", p->name, s->value, p->sign_why,
-                                  p->sign == SIGN_POSITIVE ? "positive" : "not negative");
+    return is_good
+               ? LB_OK
+               : status_raise(err, LB_E_ARG, NULL, "`%s` cannot be set to `%s`: a %s is %s", p->name, s->value,
+                              p->sign_why, p->sign == SIGN_POSITIVE ? "positive" : "not negative");
 }
 
 lb_status lower_check_settings(lower *l, lb_error *err)

@@ -185,9 +185,10 @@ static void warn_unmade(struct reach *r)
         if (!r->is_zero[i] || r->is_made[i])
             continue;
         const lower_species *p = &r->l->species[lower_find_species(r->l, species_of(r, i)->name)];
-        diagnostics_warn(r->l->list, p->where,
-                         lower_text(r->l, "give it an initial concentration, `%s = ...`", lower_bracket(r->l, p->name, "0")),
-                         "nothing makes `%s`, and it starts at zero", p->name);
+        diagnostics_warn(
+            r->l->list, p->where,
+            lower_text(r->l, "give it an initial concentration, `%s = ...`", lower_bracket(r->l, p->name, "0")),
+            "nothing makes `%s`, and it starts at zero", p->name);
         reach_state(r, i);
     }
 }
@@ -250,9 +251,10 @@ static void warn_face(struct reach *r)
     while (!r->is_zero[first])
         first++;
     diagnostics_warn(r->l->list, place_of(r, first),
-                     count == 1 ? "give it an initial concentration" : "give one of them an initial concentration",
-                     "nothing that is there at the start can make %s, so %s zero", list_states(r, r->is_zero, count),
-                     count == 1 ? "it stays" : "they stay");
+                     count == 1 ? "give it an initial concentration"
+                                : "give one of them an initial concentration",
+                     "nothing that is there at the start can make %s, so %s zero",
+                     list_states(r, r->is_zero, count), count == 1 ? "it stays" : "they stay");
 }
 
 /* Products that go nowhere: in no rate, in no reading, on no left side. */
@@ -267,7 +269,8 @@ static void warn_unused(struct reach *r)
         count += is_unused[i];
     }
     if (count > 0)
-        diagnostics_warn(r->l->list, place_of(r, first), NULL, "nothing uses %s: %s", list_states(r, is_unused, count),
+        diagnostics_warn(r->l->list, place_of(r, first), NULL, "nothing uses %s: %s",
+                         list_states(r, is_unused, count),
                          count == 1 ? "it only accumulates" : "they only accumulate");
 }
 

@@ -135,16 +135,19 @@ static void flatten(const syntax_expression *node, int sign, bool is_juxtaposed,
     }
 }
 
-static const char remedy[] = "write for example `units M s`, `units mM min`, `units molecule/cm^3 s` or `units none`";
+static const char remedy[] =
+    "write for example `units M s`, `units mM min`, `units molecule/cm^3 s` or `units none`";
 
 static void fault_wrong(lower *l, const syntax_expression *node)
 {
     const syntax_expression *name = node->kind == SYNTAX_POWER ? node->left : node;
     unit u;
     if (name->kind == SYNTAX_NAME && !unit_find(name->text, &u))
-        diagnostics_fault(l->list, name->where, lower_unit_remedy(l, name->text), "there is no unit `%s`", name->text);
+        diagnostics_fault(l->list, name->where, lower_unit_remedy(l, name->text), "there is no unit `%s`",
+                          name->text);
     else
-        diagnostics_fault(l->list, node->where, remedy, "`units` takes a unit of concentration and a unit of time");
+        diagnostics_fault(l->list, node->where, remedy,
+                          "`units` takes a unit of concentration and a unit of time");
 }
 
 /* The unit of concentration: all factors but the last. */
@@ -154,7 +157,8 @@ static bool set_concentration(unit_system *system, const struct list *factors)
     for (int i = 0; i + 1 < factors->count; i++) {
         unit one;
         const unit_factor *f = &factors->item[i].f;
-        if (!unit_find(f->name, &one) || !unit_power(&one, f->num, f->den, &one) || !unit_multiply(&all, &one, &all))
+        if (!unit_find(f->name, &one) || !unit_power(&one, f->num, f->den, &one)
+            || !unit_multiply(&all, &one, &all))
             return false;
         system->factor[i] = *f;
     }
@@ -187,12 +191,13 @@ static void read_units(lower *l, const syntax_statement *s)
     }
     int last = factors.count - 1;
     dimension time;
-    bool is_right = last >= 1 && factors.item[last].is_juxtaposed && unit_find(factors.item[last].f.name, &system.time)
-                    && dimension_concentration_time(0, 1, 1, 1, &time) && dimension_equal(&system.time.dim, &time)
-                    && factors.item[last].f.den == 1
-                    && (factors.item[last].f.num == 1 || factors.item[last].f.num == -1);
+    bool is_right =
+        last >= 1 && factors.item[last].is_juxtaposed && unit_find(factors.item[last].f.name, &system.time)
+        && dimension_concentration_time(0, 1, 1, 1, &time) && dimension_equal(&system.time.dim, &time)
+        && factors.item[last].f.den == 1 && (factors.item[last].f.num == 1 || factors.item[last].f.num == -1);
     if (!is_right || !set_concentration(&system, &factors)) {
-        diagnostics_fault(l->list, s->value->where, remedy, "`units` takes a unit of concentration and then a unit of time");
+        diagnostics_fault(l->list, s->value->where, remedy,
+                          "`units` takes a unit of concentration and then a unit of time");
         return;
     }
     snprintf(system.time_text, sizeof system.time_text, "%s", factors.item[last].f.name);
@@ -211,12 +216,14 @@ void lower_units(lower *l)
             continue;
         }
         if (units) {
-            diagnostics_fault(l->list, s->where, "leave one of them out", "`units` stands already in line %d", units->where.line);
+            diagnostics_fault(l->list, s->where, "leave one of them out", "`units` stands already in line %d",
+                              units->where.line);
             continue;
         }
         units = s;
         if (!comes_first)
-            diagnostics_fault(l->list, s->where, "move it up", "`units` comes before all other statements but the title");
+            diagnostics_fault(l->list, s->where, "move it up",
+                              "`units` comes before all other statements but the title");
         if (s->value)
             read_units(l, s);
         else

@@ -27,10 +27,12 @@ lower_value value_bad(span where)
 
 lower_value value_general(span where, expression e, double number, form dim)
 {
-    return (lower_value){.kind = VALUE_GENERAL, .e = e, .number = number, .dim = dim, .plain = -1, .where = where};
+    return (lower_value){
+        .kind = VALUE_GENERAL, .e = e, .number = number, .dim = dim, .plain = -1, .where = where};
 }
 
-dimension lower_dimension(int concentration_num, int concentration_den, int time, int energy, int amount, int temperature)
+dimension lower_dimension(int concentration_num, int concentration_den, int time, int energy, int amount,
+                          int temperature)
 {
     dimension d = dimension_none();
     dimension_concentration_time(concentration_num, concentration_den, time, 1, &d);
@@ -94,8 +96,8 @@ bool lower_need(lower *l, lower_value *v, const dimension *d, const char *what, 
         remedy = "divide `T` by a temperature with its unit, as in `T/(300 K)`";
     const lower_plain *p = v->plain >= 0 ? &l->plains[v->plain] : NULL;
     if (p && p->unknown >= 0 && p->where.line != v->where.line)
-        diagnostics_fault(l->list, v->where, NULL, "`%s` is used as %s here and as %s in line %d", p->name, needed, is,
-                          l->inf.unknowns[p->unknown].line);
+        diagnostics_fault(l->list, v->where, NULL, "`%s` is used as %s here and as %s in line %d", p->name,
+                          needed, is, l->inf.unknowns[p->unknown].line);
     else if (dimension_is_none(d))
         diagnostics_fault(l->list, v->where, remedy ? remedy : lower_text(l, "divide by a quantity in %s", is),
                           "%s must be a pure number, but this is in %s", what, is);
@@ -158,14 +160,16 @@ void value_finish(lower *l, lower_value *v)
     }
 }
 
-static lower_value fault_state(lower *l, const syntax_expression *node, const lower_context *context, const char *name)
+static lower_value fault_state(lower *l, const syntax_expression *node, const lower_context *context,
+                               const char *name)
 {
-    diagnostics_fault(l->list, node->where, context->state_remedy, "`%s` changes with time, so it cannot stand in %s",
-                      name, context->what);
+    diagnostics_fault(l->list, node->where, context->state_remedy,
+                      "`%s` changes with time, so it cannot stand in %s", name, context->what);
     return value_bad(node->where);
 }
 
-static lower_value value_of_definition(lower *l, const syntax_expression *node, int index, const lower_context *context)
+static lower_value value_of_definition(lower *l, const syntax_expression *node, int index,
+                                       const lower_context *context)
 {
     lower_definition *d = &l->definitions[index];
     d->is_used = true;
@@ -185,7 +189,8 @@ static lower_value value_of_definition(lower *l, const syntax_expression *node, 
 lower_value value_temperature(lower *l, span where)
 {
     if (l->temperature < 0) {
-        diagnostics_fault(l->list, where, "write for example `temperature = 298.15 K`", "the file gives no temperature");
+        diagnostics_fault(l->list, where, "write for example `temperature = 298.15 K`",
+                          "the file gives no temperature");
         return value_bad(where);
     }
     syntax_expression here = {.kind = SYNTAX_NAME, .where = where};
@@ -223,7 +228,8 @@ static lower_value fault_name(lower *l, const syntax_expression *node)
     if (strcmp(name, "t") == 0)
         diagnostics_fault(l->list, node->where, NULL, "`t` is reserved for mechanisms that are driven in time");
     else if (lower_is_function(name))
-        diagnostics_fault(l->list, node->where, "give it its arguments, in parentheses", "`%s` is a function", name);
+        diagnostics_fault(l->list, node->where, "give it its arguments, in parentheses", "`%s` is a function",
+                          name);
     else
         diagnostics_fault(l->list, node->where, remedy, "nothing is called `%s`", name);
     return value_bad(node->where);
@@ -257,14 +263,16 @@ static lower_value value_of_concentration(lower *l, const syntax_expression *nod
     if (p->held >= 0)
         return value_of_definition(l, node, p->held, context);
     if (!p->in_reaction) {
-        diagnostics_fault(l->list, node->where, lower_text(l, "hold it with `%s = ...`", lower_bracket(l, node->text, "")),
+        diagnostics_fault(l->list, node->where,
+                          lower_text(l, "hold it with `%s = ...`", lower_bracket(l, node->text, "")),
                           "`%s` is in no reaction, so its concentration is not known", node->text);
         return value_bad(node->where);
     }
     if (!context->allows_state)
         return fault_state(l, node, context, lower_bracket(l, node->text, ""));
     int state = p->index >= 0 ? l->net->species[p->index].state : 0;
-    lower_value v = value_general(node->where, expression_state(&l->net->graph, state), NAN, concentration_form(l));
+    lower_value v =
+        value_general(node->where, expression_state(&l->net->graph, state), NAN, concentration_form(l));
     v.has_state = true;
     return v;
 }

@@ -23,8 +23,8 @@ static lb_status keep_text(lb_network *net, const char *file, const char *text, 
 }
 
 /* Parse and lower what the list's source holds. */
-static lb_status read_source(lb_diagnostics *list, const lb_setting *settings, size_t setting_count, lb_network **network,
-                             lb_error *err)
+static lb_status read_source(lb_diagnostics *list, const lb_setting *settings, size_t setting_count,
+                             lb_network **network, lb_error *err)
 {
     syntax_tree *tree = NULL;
     lb_status status = syntax_parse(list, &tree);
@@ -37,12 +37,14 @@ static lb_status read_source(lb_diagnostics *list, const lb_setting *settings, s
     diagnostics_sort(list);
     size_t faults = lb_diagnostics_faults(list);
     if (faults > 0)
-        return status_raise(err, LB_E_MECHANISM, NULL, "the mechanism has %zu fault%s", faults, faults == 1 ? "" : "s");
+        return status_raise(err, LB_E_MECHANISM, NULL, "the mechanism has %zu fault%s", faults,
+                            faults == 1 ? "" : "s");
     return LB_OK;
 }
 
 lb_status lb_network_parse(const char *file, const char *text, size_t length, const lb_setting *settings,
-                           size_t setting_count, lb_network **network, lb_diagnostics **diagnostics, lb_error *err)
+                           size_t setting_count, lb_network **network, lb_diagnostics **diagnostics,
+                           lb_error *err)
 {
     source *s = NULL;
     *network = NULL;
@@ -80,8 +82,8 @@ static lb_status read_all(FILE *stream, const char *path, buffer *text, lb_error
     return status == LB_OK ? LB_OK : status_raise(err, status, NULL, "%s: %s", path, lb_status_text(status));
 }
 
-lb_status lb_network_read(const char *path, const lb_setting *settings, size_t setting_count, lb_network **network,
-                          lb_diagnostics **diagnostics, lb_error *err)
+lb_status lb_network_read(const char *path, const lb_setting *settings, size_t setting_count,
+                          lb_network **network, lb_diagnostics **diagnostics, lb_error *err)
 {
     bool is_input = strcmp(path, "-") == 0;
     *network = NULL;
@@ -95,7 +97,8 @@ lb_status lb_network_read(const char *path, const lb_setting *settings, size_t s
     if (!is_input)
         fclose(stream);
     if (status == LB_OK)
-        status = lb_network_parse(path, buffer_get(&text), text.length, settings, setting_count, network, diagnostics, err);
+        status = lb_network_parse(path, buffer_get(&text), text.length, settings, setting_count, network,
+                                  diagnostics, err);
     buffer_clear(&text);
     return status;
 }
@@ -122,7 +125,8 @@ lb_status lb_network_time(const lb_network *network, const char *text, double *t
     else if (status == LB_E_NOMEM)
         status_no_memory(err);
     else if (has_unit && !dimension_equal(&measure.dim, &wanted))
-        status = status_raise(err, LB_E_ARG, "write a unit of time: s, ms, min or h", "`%s` is no time: the unit does not fit", text);
+        status = status_raise(err, LB_E_ARG, "write a unit of time: s, ms, min or h",
+                              "`%s` is no time: the unit does not fit", text);
     else
         *time = has_unit ? unit_to_stored(&network->units, &measure, number) : number;
     lb_diagnostics_free(list);

@@ -105,10 +105,12 @@ bool dimension_power(const dimension *a, int num, int den, dimension *out)
     return true;
 }
 
-bool dimension_concentration_time(int concentration_num, int concentration_den, int time_num, int time_den, dimension *out)
+bool dimension_concentration_time(int concentration_num, int concentration_den, int time_num, int time_den,
+                                  dimension *out)
 {
     dimension d = dimension_none();
-    if (!store(-3 * (int64_t)concentration_num, concentration_den, &d.num[DIMENSION_LENGTH], &d.den[DIMENSION_LENGTH])
+    if (!store(-3 * (int64_t)concentration_num, concentration_den, &d.num[DIMENSION_LENGTH],
+               &d.den[DIMENSION_LENGTH])
         || !store(concentration_num, concentration_den, &d.num[DIMENSION_AMOUNT], &d.den[DIMENSION_AMOUNT])
         || !store(time_num, time_den, &d.num[DIMENSION_TIME], &d.den[DIMENSION_TIME]))
         return false;

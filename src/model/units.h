@@ -12,7 +12,10 @@
 
 #include "base/buffer.h"
 
-enum { DIMENSION_LENGTH, DIMENSION_AMOUNT, DIMENSION_TIME, DIMENSION_ENERGY, DIMENSION_TEMPERATURE, DIMENSION_COUNT };
+enum {
+    DIMENSION_LENGTH, DIMENSION_AMOUNT, DIMENSION_TIME, DIMENSION_ENERGY, DIMENSION_TEMPERATURE,
+    DIMENSION_COUNT
+};
 
 /* Exponents as num[i]/den[i] in lowest terms, den > 0. */
 typedef struct dimension {
@@ -56,7 +59,8 @@ bool dimension_is_concentration_power(const dimension *d, int *num, int *den);
 bool dimension_multiply(const dimension *a, const dimension *b, dimension *out);
 bool dimension_divide(const dimension *a, const dimension *b, dimension *out);
 bool dimension_power(const dimension *a, int num, int den, dimension *out);
-bool dimension_concentration_time(int concentration_num, int concentration_den, int time_num, int time_den, dimension *out);
+bool dimension_concentration_time(int concentration_num, int concentration_den, int time_num, int time_den,
+                                  dimension *out);
 
 /* A unit by name (`mM`, `kJ`); false when there is none. */
 bool unit_find(const char *name, unit *out);
