@@ -307,12 +307,13 @@ START_TEST(test_stable_focus_is_rest_with_swings)
 }
 END_TEST
 
-/* x'' + 0.1 x' + x = 0: each swing is exp(-0.1 pi/omega) = 0.73 of the last, so 22 of
+/* x'' + 0.1 x' + x = 0 about (10, 10): each swing is exp(-0.1 pi/omega) = 0.73 of the last, so 22 of
  * them are above a thousandth of the first. */
 START_TEST(test_swings_are_counted_down_to_a_thousandth)
 {
     bench b;
-    find_in(&b, "units none\nsigned X, Y\n[X]0 = 1\n-> X, v = [Y]\n-> Y, v = -[X] - 0.1*[Y]\n", CYCLE_SETTLED);
+    find_in(&b, "units none\n[X]0 = 11\n[Y]0 = 10\n-> X, v = [Y] - 10\n"
+            "-> Y, v = -([X] - 10) - 0.1*([Y] - 10)\n", CYCLE_SETTLED);
     ck_assert_int_ge(b.report.swings, 21);
     ck_assert_int_le(b.report.swings, 23);
     assert_close(b.report.swing_decay, exp(-0.1 * 3.14159265358979 / sqrt(1 - 0.0025)), 1e-4, 0);
@@ -362,6 +363,17 @@ START_TEST(test_degenerate_rest_is_rest)
     find_in(&b, "units none\n[A]0 = 1\nA -> B, k = 0.04\n2 B -> B + C, k = 3e7\nB + C -> A + C, k = 1e4\n",
             CYCLE_SETTLED);
     assert_close(b.report.rest[lb_network_find_state(b.net, "C")], 1, 1e-4, 0);
+    bench_close(&b);
+}
+END_TEST
+
+/* The same where it starts at rest, and Newton's matrix is singular. */
+START_TEST(test_degenerate_start_at_rest_is_rest)
+{
+    bench b;
+    find_in(&b, "units none\n[C]0 = 1\nA -> B, k = 0.04\n2 B -> B + C, k = 3e7\nB + C -> A + C, k = 1e4\n",
+            CYCLE_SETTLED);
+    ck_assert_uint_eq(b.report.steps, 0);
     bench_close(&b);
 }
 END_TEST
@@ -604,6 +616,7 @@ Suite *cycle_suite(void)
     tcase_add_test(rest, test_slow_focus_is_rest);
     tcase_add_test(rest, test_relaxation_to_a_node_has_no_swings);
     tcase_add_test(rest, test_degenerate_rest_is_rest);
+    tcase_add_test(rest, test_degenerate_start_at_rest_is_rest);
     tcase_add_test(rest, test_transient_oscillation_of_a_closed_mechanism);
     suite_add_tcase(suite, rest);
     TCase *other = tcase_create("other motion");

@@ -7,6 +7,9 @@
 #include "analysis/space.h"
 #include "limbeck.h"
 
+#define CLOSED_GOAL 1e-8          /* residual of the shooting, in amplitudes */
+#define CLOSED_CLOSURE 1e-9       /* closure of an orbit that is reported, in amplitudes */
+
 typedef struct closed_orbit {
     space s;
     bool converged;               /* the rest has meaning only then */
@@ -30,14 +33,12 @@ lb_status closed_find(closed_orbit *c, lb_evaluator *evaluator, const double *x,
                       double tolerance, const lb_monitor *monitor, lb_error *err);
 void closed_clear(closed_orbit *c);
 
-/* Relative difference of the period found on a second path: from a state pushed off
- * the orbit, with the other method where it can go the way, else with another
- * tolerance, closed again.  NAN when that fails. */
-lb_status closed_confirm(const closed_orbit *c, const lb_monitor *monitor, double *difference, lb_error *err);
+/* A failed integration means only that there is no orbit to be had: true for the
+ * statuses that do end everything, LB_E_NOMEM and LB_E_STOPPED. */
+bool closed_is_fatal(lb_status status);
 
-/* Closed orbits on both sides of this one, held at a distance of a tenth of its
- * amplitude: it belongs to a family (a centre). */
-lb_status closed_is_family(const closed_orbit *c, const lb_monitor *monitor, bool *is_family, lb_error *err);
+/* Options to integrate along the orbit with its own method. */
+orbit_options closed_options(const closed_orbit *c, double tolerance, const lb_monitor *monitor);
 
 /* A public record of the orbit. */
 lb_status closed_record(const closed_orbit *c, double confirmed, lb_cycle **out, lb_error *err);

@@ -13,6 +13,7 @@
 #include <string.h>
 
 #include "analysis/closed.h"
+#include "analysis/confirm.h"
 #include "analysis/integrate.h"
 #include "analysis/rest.h"
 #include "analysis/section.h"
@@ -27,14 +28,10 @@ enum {
     EPOCH_RETURNS = 6,            /* an epoch with fewer was too short */
     REST_EVERY = 32,              /* steps between questions about rest */
     MOST_ATTEMPTS = 8,            /* at closing */
-    SHARPEN_AFTER = 300,          /* returns without success: integrate more closely */
-    GROWTH_STEPS = 1024,          /* first look at growth; then whenever the steps have doubled */
-    GROWTH_DOUBLINGS = 3
 };
 
 #define DEFAULT_TOLERANCE 1e-11
 #define EXPLORE 1e-7              /* tolerance of the exploring integration */
-#define EXPLORE_SHARPER 1e-9
 #define FIRST_REPEAT 1e-2         /* amplitudes; the first closing attempt */
 #define LEAST_REPEAT 1e-7
 #define PERIOD_AGREES 1e-6        /* relative, between the two paths */
@@ -46,7 +43,6 @@ enum {
 #define FAR_FUTURE 1e100
 #define RUNAWAY 1e60
 #define RUNAWAY_GROWTH 1e6        /* before the integration fails */
-#define STILL_GROWS 1.5           /* factor while the number of steps doubles, without a return */
 
 typedef struct explorer {
     space s;
@@ -63,34 +59,27 @@ typedef struct explorer {
     double *before, *after;       /* [n] rates at the ends of the last step */
     double *low, *high;           /* [n] range of the epoch */
     double *reach;                /* [n] largest magnitude so far */
-    double *scale, *x;            /* [n] scratch */
+    double *scale;                /* [n] scratch */
     size_t *turns;                /* [n] turning points when the epoch began */
     size_t epoch_end, epoch_length, epoch_returns, max_returns, max_steps;
     double repeat;                /* how close the next repeat must be */
     double first_distance;        /* from the stable steady state, when first near it; else infinite */
-    double last_largest;          /* magnitude when the steps had last doubled */
-    size_t last_returns;
-    int doublings;                /* in a row through which it grew */
     double still_since;           /* time since which it stands still; infinite when it moves */
-    double elapsed;               /* before the integrator's last start */
     int attempts;                 /* at closing, that failed */
-    bool is_sharp, is_done;
+    bool is_done;
 } explorer;
 
 /* ---- Setting up ---------------------------------------------------------------------- */
 
-static lb_status start_integrator(explorer *e, const double *x, double tolerance, lb_error *err)
+static lb_status start_integrator(explorer *e, lb_error *err)
 {
-    integrator_options how = {.tolerance = tolerance, .method = LB_METHOD_AUTO,
-                              .monitor = e->options->monitor};
-    integrator_free(e->it);
-    e->it = NULL;
+    integrator_options how = {.tolerance = EXPLORE, .method = LB_METHOD_AUTO, .monitor = e->options->monitor};
     lb_status status = integrator_new(e->s.evaluator, &how, &e->it, err);
     if (status != LB_OK)
         return status;
-    integrator_start(e->it, 0, x);
+    integrator_start(e->it, 0, e->x0);
     e->turning.it = e->it;
-    lb_rhs(e->s.evaluator, x, e->after);
+    lb_rhs(e->s.evaluator, e->x0, e->after);
     return LB_OK;
 }
 
@@ -107,7 +96,7 @@ static void start_epoch(explorer *e, const double *x)
 static lb_status take_memory(explorer *e, lb_error *err)
 {
     size_t n = (size_t)e->s.n;
-    e->block = memory_zeroed(9 * n, sizeof *e->block);
+    e->block = memory_zeroed(8 * n, sizeof *e->block);
     e->turns = memory_zeroed(n, sizeof *e->turns);
     if (!e->block || !e->turns)
         return status_no_memory(err);
@@ -117,8 +106,7 @@ static lb_status take_memory(explorer *e, lb_error *err)
     e->high = e->block + 3 * n;
     e->reach = e->block + 4 * n;
     e->scale = e->block + 5 * n;
-    e->x = e->block + 6 * n;
-    e->turning = (orbit_turning){.evaluator = e->s.evaluator, .x = e->block + 7 * n, .f = e->block + 8 * n};
+    e->turning = (orbit_turning){.evaluator = e->s.evaluator, .x = e->block + 6 * n, .f = e->block + 7 * n};
     return LB_OK;
 }
 
@@ -145,7 +133,7 @@ static lb_status explorer_init(explorer *e, lb_evaluator *evaluator, const doubl
     if (status == LB_OK)
         status = rest_init(&e->rest, &e->s, err);
     if (status == LB_OK)
-        status = start_integrator(e, x0, EXPLORE, err);
+        status = start_integrator(e, err);
     if (status == LB_OK) {
         for (int i = 0; i < e->s.n; i++)
             e->reach[i] = fabs(x0[i]);
@@ -218,7 +206,7 @@ static lb_status look_for_stillness(explorer *e, lb_error *err)
 {
     const double *x = integrator_state(e->it);
     bool is_still;
-    double rate, now = e->elapsed + integrator_time(e->it);
+    double rate, now = integrator_time(e->it);
     lb_status status = rest_is_still(&e->rest, &e->s, x, e->reach, now, STILL, &is_still, &rate, err);
     if (status != LB_OK || !is_still) {
         e->still_since = INFINITY;
@@ -273,22 +261,11 @@ static double growth(const explorer *e, double *largest)
     return start > 0 ? *largest / start : 0;
 }
 
-/* A power of time as well as an exponential: it grows whenever the number of steps
- * doubles, several times in a row, and nothing comes back. */
 static void look_for_runaway(explorer *e)
 {
     double largest;
-    size_t steps = e->report->steps;
     growth(e, &largest);
     if (largest > RUNAWAY)
-        finish(e, CYCLE_UNBOUNDED, "it grows without bound");
-    if (steps < GROWTH_STEPS || (steps & (steps - 1)) != 0)
-        return;
-    bool grew = largest > STILL_GROWS * e->last_largest && e->report->returns == e->last_returns;
-    e->doublings = steps > GROWTH_STEPS && grew ? e->doublings + 1 : 0;
-    e->last_largest = largest;
-    e->last_returns = e->report->returns;
-    if (e->doublings >= GROWTH_DOUBLINGS)
         finish(e, CYCLE_UNBOUNDED, "it grows without bound");
 }
 
@@ -342,13 +319,13 @@ static lb_status judge_orbit(explorer *e, const closed_orbit *orbit, lb_error *e
     const lb_monitor *monitor = e->options->monitor;
     if (orbit->stable == LB_YES) {
         double difference;
-        lb_status status = closed_confirm(orbit, monitor, &difference, err);
+        lb_status status = confirm_period(orbit, monitor, &difference, err);
         if (status == LB_OK && difference < PERIOD_AGREES)
             status = report_orbit(e, orbit, difference, CYCLE_CLOSED, "an attracting closed orbit", err);
         return status;
     }
     bool is_family;
-    lb_status status = closed_is_family(orbit, monitor, &is_family, err);
+    lb_status status = confirm_is_family(orbit, monitor, &is_family, err);
     return status == LB_OK && is_family ? report_centre(e, orbit, err) : status;
 }
 
@@ -367,17 +344,6 @@ static lb_status try_to_close(explorer *e, int loops, lb_error *err)
     return status;
 }
 
-/* Restart the exploring integration with a smaller tolerance: the noise of the
- * loose one may hide the repeats of a small orbit. */
-static lb_status sharpen(explorer *e, lb_error *err)
-{
-    memcpy(e->x, integrator_state(e->it), (size_t)e->s.n * sizeof *e->x);
-    e->elapsed += integrator_time(e->it);
-    e->is_sharp = true;
-    e->section.is_placed = false;
-    return start_integrator(e, e->x, EXPLORE_SHARPER, err);
-}
-
 static lb_status watch_section(explorer *e, lb_error *err)
 {
     bool returned;
@@ -390,11 +356,7 @@ static lb_status watch_section(explorer *e, lb_error *err)
     e->report->returns++;
     double distance;
     int loops = e->attempts < MOST_ATTEMPTS ? section_repeats(&e->section, &e->s, e->repeat, e->scale, &distance) : 0;
-    if (loops > 0)
-        return try_to_close(e, loops, err);
-    if (!e->is_sharp && e->report->returns >= SHARPEN_AFTER)
-        return sharpen(e, err);
-    return LB_OK;
+    return loops > 0 ? try_to_close(e, loops, err) : LB_OK;
 }
 
 /* ---- Epochs --------------------------------------------------------------------------------- */
@@ -515,7 +477,7 @@ lb_status cycle_close(lb_evaluator *evaluator, const double *x0, double period, 
     *out = NULL;
     lb_status status = closed_find(&orbit, evaluator, x0, period, tolerance, monitor, err);
     if (status == LB_OK && orbit.converged)
-        status = closed_confirm(&orbit, monitor, &confirmed, err);
+        status = confirm_period(&orbit, monitor, &confirmed, err);
     if (status == LB_OK && orbit.converged)
         status = closed_record(&orbit, confirmed, out, err);
     closed_clear(&orbit);
