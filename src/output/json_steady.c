@@ -10,6 +10,7 @@ static json_t *mode_value(json_writer *w, const lb_mode *mode)
     json_put(w, object, "grows", json_boolean(mode->eigenvalue.re > 0));
     json_put(w, object, "period", mode->period > 0 ? json_number(mode->period) : json_null());
     json_put(w, object, "damping", mode->period > 0 ? json_number(mode->damping) : json_null());
+    json_put(w, object, "error", json_number(mode->error));
     return object;
 }
 

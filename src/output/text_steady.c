@@ -52,13 +52,13 @@ static const lb_mode *leading_mode(const lb_steady_state *state)
 }
 
 /* A real part that is zero to within its error is called neutral. */
-static void rate_cell(grid *g, const lb_steady_state *state, const lb_mode *mode, const char *time_unit)
+static void rate_cell(grid *g, const lb_mode *mode, const char *time_unit)
 {
     if (!mode) {
         grid_cell(g, "%s", "");
         return;
     }
-    if (!isfinite(mode->time) || fabs(mode->eigenvalue.re) <= state->real_part_error) {
+    if (!isfinite(mode->time) || fabs(mode->eigenvalue.re) <= mode->error) {
         grid_cell(g, "neutral");
         return;
     }
@@ -90,7 +90,7 @@ static void write_block(buffer *out, const lb_layout *layout, const lb_network *
     if (with_rates) {
         grid_cell(&g, "%s", "");
         for (size_t s = first; s <= last; s++)
-            rate_cell(&g, &steady->state[s], leading_mode(&steady->state[s]), describe_time_unit(net));
+            rate_cell(&g, leading_mode(&steady->state[s]), describe_time_unit(net));
     }
     buffer_char(out, '\n');
     grid_write(&g, layout, 2, out);
@@ -120,12 +120,12 @@ void steady_write(buffer *out, const lb_layout *layout, const lb_system *system,
 }
 
 /* "relaxes in 6.7 s" and, of a pair, "swings every 6.4 s, each swing 0.39 times the last". */
-static void mode_cells(grid *g, const lb_steady_state *state, const lb_mode *mode, const char *time_unit)
+static void mode_cells(grid *g, const lb_mode *mode, const char *time_unit)
 {
     char eigenvalue[LAYOUT_COMPLEX], damping[LAYOUT_NUMBER];
     layout_complex(mode->eigenvalue, DIGITS, eigenvalue);
     grid_cell(g, "%s", eigenvalue);
-    rate_cell(g, state, mode, time_unit);
+    rate_cell(g, mode, time_unit);
     if (mode->period == 0) {
         grid_cell(g, "%s", "");
         return;
@@ -144,7 +144,7 @@ static void write_modes(buffer *out, const lb_layout *layout, const lb_network *
     grid_init(&g, "lll", false);
     int shown = state->mode_count < MODES_SHOWN ? state->mode_count : MODES_SHOWN;
     for (int i = 0; i < shown; i++)
-        mode_cells(&g, state, &state->modes[i], describe_time_unit(net));
+        mode_cells(&g, &state->modes[i], describe_time_unit(net));
     grid_write(&g, layout, 4, out);
     if (shown < state->mode_count)
         layout_printf(out, layout, 4, "and %d faster ones (--json gives them all)", state->mode_count - shown);
