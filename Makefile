@@ -16,9 +16,9 @@ WARN    = -Wall -Wextra -Wpedantic -Wshadow -Wstrict-prototypes -Werror
 CFLAGS ?= -O2 -g
 # Floating-point contraction is off: the same answer from every compiler.
 ALL_CFLAGS = -std=c11 -D_POSIX_C_SOURCE=200809L -ffp-contract=off -fPIC -pthread -Iinclude -Isrc -I$(BUILD)/grammar $(CFLAGS)
-LIBS    = -lgsl -llapacke -llapack -lblas -lflint -lmpfr -lgmp -ljansson -lm -pthread
+LIBS    = -lgsl -llapacke -llapack -lblas -lklu -lflint -lmpfr -lgmp -ljansson -lm -pthread
 
-PACKAGES = gcc make pkg-config flex bison libgsl-dev liblapacke-dev liblapack-dev libblas-dev \
+PACKAGES = gcc make pkg-config flex bison libgsl-dev liblapacke-dev liblapack-dev libblas-dev libsuitesparse-dev \
            libflint-dev libgmp-dev libmpfr-dev libjansson-dev check
 
 # `make V=1` shows the commands.
@@ -29,6 +29,7 @@ LIBRARY_SOURCES = $(sort $(wildcard src/base/*.c src/text/*.c src/model/*.c src/
                     src/system/*.c src/emit/*.c src/analysis/*.c src/output/*.c))
 CLI_SOURCES     = $(sort $(wildcard src/cli/*.c))
 TEST_SOURCES    = $(sort $(wildcard tests/*.c))
+BENCHES         = $(patsubst %.c,$(BUILD)/%,$(sort $(wildcard tests/bench/bench*.c)))
 SUITES          = $(patsubst tests/check_%.c,%,$(sort $(wildcard tests/check_*.c)))
 
 GENERATED       = $(BUILD)/grammar/parser.o $(BUILD)/grammar/lexer.o
@@ -136,10 +137,10 @@ coverage: deps
 	sh tests/coverage.sh $(BUILD)-coverage
 
 bench: deps
-	@$(MAKE) --no-print-directory all $(BUILD)/tests/bench/bench
-	$(BUILD)/tests/bench/bench $(BUILD)
+	@$(MAKE) --no-print-directory all $(BENCHES)
+	@for b in $(BENCHES); do $$b $(BUILD) || exit 1; done
 
-$(BUILD)/tests/bench/bench: $(BUILD)/tests/bench/bench.o $(BUILD)/liblimbeck.a
+$(BENCHES): %: %.o $(BUILD)/liblimbeck.a
 	$(call say,link,$@)
 	$(Q)$(CC) $(ALL_CFLAGS) $(LDFLAGS) -o $@ $^ $(LIBS) -ldl
 

@@ -180,6 +180,27 @@ void lb_jacobian_sparse(lb_evaluator *evaluator, const double x[], double values
 void lb_dfdk(lb_evaluator *evaluator, const double x[], double D[]);        /* [n*m] */
 void lb_readings(lb_evaluator *evaluator, const double x[], double values[]);
 
+/* Eight bindings and eight states at once, for whatever sweeps: each lane gives the very
+ * numbers that an evaluator gives, at a fraction of the time.  Every array holds the lanes of
+ * one quantity side by side: number i of lane l stands at i*LB_LANES + l.  One thread at a
+ * time; the system must live longer. */
+#define LB_LANES 8
+typedef struct lb_batch lb_batch;
+lb_status lb_batch_new(const lb_system *system, lb_batch **batch, lb_error *err); /* bound to the file's constants */
+void lb_batch_free(lb_batch *batch);
+
+/* Bind constants k [m*LB_LANES] (NULL: the file's in every lane).  A lane whose rate constant
+ * comes out negative or not finite keeps what was bound before: its bit is set in *refused
+ * (which may be NULL), the call returns LB_E_ARG with the reason of the first such lane, and
+ * the other lanes are bound. */
+lb_status lb_batch_bind(lb_batch *batch, const double *k, unsigned *refused, lb_error *err);
+
+/* As with an evaluator; these do not allocate or fail. */
+void lb_batch_initial(lb_batch *batch, double x[]);                       /* [n*LB_LANES] */
+void lb_batch_rates(lb_batch *batch, const double x[], double v[]);       /* [r*LB_LANES] */
+void lb_batch_rhs(lb_batch *batch, const double x[], double dxdt[]);      /* [n*LB_LANES] */
+void lb_batch_jacobian_sparse(lb_batch *batch, const double x[], double values[]); /* [z*LB_LANES] */
+
 /* ---- Emitted C ----------------------------------------------------------- */
 
 typedef struct lb_emit_options {

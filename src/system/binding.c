@@ -13,7 +13,7 @@ void lb_evaluator_free(lb_evaluator *ev)
 {
     if (!ev)
         return;
-    double *blocks[] = {ev->k, ev->values, ev->spare, ev->factor, ev->coefficient, ev->row_coefficient,
+    double *blocks[] = {ev->k, ev->k_spare, ev->values, ev->spare, ev->factor, ev->coefficient, ev->row_coefficient,
                         ev->term_coefficient, ev->x, ev->v, ev->unit, ev->slot, ev->sparse};
     for (size_t i = 0; i < sizeof blocks / sizeof *blocks; i++)
         memory_free(blocks[i]);
@@ -30,7 +30,7 @@ static lb_evaluator *allocate(const lb_system *system)
     ev->table = t;
     size_t steps = (size_t)t->steps, entries = (size_t)t->entry_start[t->steps];
     struct { double **block; size_t size; } blocks[] = {
-        {&ev->k, (size_t)system->m}, {&ev->values, t->graph.count}, {&ev->spare, t->graph.count},
+        {&ev->k, (size_t)system->m}, {&ev->k_spare, (size_t)system->m}, {&ev->values, t->graph.count}, {&ev->spare, t->graph.count},
         {&ev->factor, steps}, {&ev->coefficient, entries}, {&ev->row_coefficient, entries},
         {&ev->term_coefficient, t->terms}, {&ev->x, (size_t)t->n + 1}, {&ev->v, steps}, {&ev->unit, steps},
         {&ev->slot, (size_t)t->slot_start[t->steps]}, {&ev->sparse, (size_t)t->nonzeros},
@@ -43,6 +43,8 @@ static lb_evaluator *allocate(const lb_system *system)
         }
     }
     ev->x[t->n] = 1;
+    evaluator_fill_numbers(t, ev->values);
+    evaluator_fill_numbers(t, ev->spare);
     return ev;
 }
 
@@ -115,9 +117,25 @@ static lb_status check_concentration(const network_species *species, expression 
                         "the %s concentration %s comes out as %g", what, species->bracket, value);
 }
 
-static lb_status check_values(const lb_network *net, const table *t, const double *values, lb_error *err)
+static bool is_in_bound(table_bound bound, double value)
+{
+    return isfinite(value) && (bound == BOUND_FINITE || (bound == BOUND_POSITIVE ? value > 0 : value >= 0));
+}
+
+static bool is_within(const table *t, const double *values)
+{
+    for (size_t i = 0; i < t->check_count; i++)
+        if (!is_in_bound(t->checks[i].bound, values[t->checks[i].node]))
+            return false;
+    return true;
+}
+
+/* The list of checks answers quickly; what is wrong is found again with its name. */
+lb_status evaluator_check(const lb_network *net, const table *t, const double *values, lb_error *err)
 {
     lb_status status = LB_OK;
+    if (is_within(t, values))
+        return LB_OK;
     if (net->residence != EXPRESSION_NONE) {
         double residence = values[t->node_of[net->residence]];
         if (!isfinite(residence) || residence <= 0)
@@ -142,9 +160,8 @@ static lb_status check_values(const lb_network *net, const table *t, const doubl
 static void bind_numbers(lb_evaluator *ev)
 {
     const table *t = ev->table;
-    const lb_network *net = ev->system->network;
     for (int s = 0; s < t->steps; s++)
-        ev->factor[s] = net->steps[s].is_power_law ? ev->values[t->node_of[net->steps[s].factor]] : 0;
+        ev->factor[s] = t->factor_node[s] == EXPRESSION_NONE ? 0 : ev->values[t->factor_node[s]];
     int entries = t->entry_start[t->steps];
     for (int e = 0; e < entries; e++)
         ev->coefficient[e] = t->entry_node[e] == EXPRESSION_NONE ? t->entry_value[e] : ev->values[t->entry_node[e]];
@@ -154,25 +171,28 @@ static void bind_numbers(lb_evaluator *ev)
         ev->term_coefficient[i] = ev->coefficient[t->term_entry[i]];
 }
 
+void evaluator_fill_numbers(const table *t, double *values)
+{
+    for (size_t e = 0; e < t->graph.count; e++)
+        if (t->graph.nodes[e].kind == EXPRESSION_NUMBER)
+            values[e] = t->graph.nodes[e].value;
+}
+
 lb_status lb_evaluator_bind(lb_evaluator *ev, const double *k, lb_error *err)
 {
     const table *t = ev->table;
     const lb_network *net = ev->system->network;
-    for (size_t e = 0; e < t->graph.count; e++) {
-        const expression_node *node = &t->graph.nodes[e];
-        if (node->kind == EXPRESSION_CONSTANT)
-            ev->spare[e] = k ? k[node->left] : net->constants[node->left].value;
-        else if (!node->has_state)
-            expression_evaluate(&t->graph, (int)e, (int)e, NULL, NULL, NULL, ev->spare);
-    }
-    lb_status status = check_values(net, t, ev->spare, err);
+    for (int j = 0; j < ev->system->m; j++)
+        ev->k_spare[j] = k ? k[j] : net->constants[j].value;
+    program_run(&t->constant_program, ev->k_spare, ev->spare);
+    lb_status status = evaluator_check(net, t, ev->spare, err);
     if (status != LB_OK)
         return status;
-    double *old = ev->values;
+    double *old = ev->values, *old_k = ev->k;
     ev->values = ev->spare;
     ev->spare = old;
-    for (int j = 0; j < ev->system->m; j++)
-        ev->k[j] = k ? k[j] : net->constants[j].value;
+    ev->k = ev->k_spare;
+    ev->k_spare = old_k;
     bind_numbers(ev);
     return LB_OK;
 }

@@ -120,7 +120,13 @@ void lb_jacobian_sparse(lb_evaluator *ev, const double x[], double values[])
     const table *t = ev->table;
     load_state(ev, x);
     all_slopes(ev);
-    for (int z = 0; z < t->nonzeros; z++) {
+    for (int s = 0; s < t->single_terms; s++) {
+        int z = t->nonzero_order[s];
+        size_t i = t->term_start[z];
+        values[z] = 0 + ev->term_coefficient[i] * ev->slot[t->term_slot[i]];
+    }
+    for (int s = t->single_terms; s < t->nonzeros; s++) {
+        int z = t->nonzero_order[s];
         double sum = 0;
         for (size_t i = t->term_start[z]; i < t->term_start[z + 1]; i++)
             sum += ev->term_coefficient[i] * ev->slot[t->term_slot[i]];

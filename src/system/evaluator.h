@@ -10,6 +10,7 @@ struct lb_evaluator {
     const table *table;
     /* bound with the constants */
     double *k;                  /* [m] */
+    double *k_spare;            /* [m] */
     double *values;             /* [nodes] those of constants alone; the others are workspace */
     double *spare;              /* [nodes] where a new binding is tried */
     double *factor;             /* [steps] of power laws */
@@ -23,5 +24,11 @@ struct lb_evaluator {
     double *slot;               /* [slots] */
     double *sparse;             /* [nonzeros] */
 };
+
+/* Put the numbers of the graph, which no binding changes, into values [nodes]. */
+void evaluator_fill_numbers(const table *t, double *values);
+
+/* LB_OK, or LB_E_ARG that names the first of values [nodes] that is out of bounds. */
+lb_status evaluator_check(const lb_network *net, const table *t, const double *values, lb_error *err);
 
 #endif

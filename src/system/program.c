@@ -1,7 +1,7 @@
 /* Straight-line programs over the nodes of an expression graph.
  *
  * A node's number is its register.  Registers of constants alone are filled once
- * when constants are bound (expression_evaluate); a program holds only what
+ * when constants are bound, by a program of their own; the others hold only what
  * changes with the state, so that one evaluation is one pass over the code. */
 #include "system/program.h"
 
@@ -32,13 +32,24 @@ lb_status program_compile(const expression_graph *g, const expression *roots, si
     return out->code ? LB_OK : LB_E_NOMEM;
 }
 
+lb_status program_compile_constants(const expression_graph *g, program *out)
+{
+    *out = (program){.code = memory_array(g->count, sizeof *out->code)};
+    for (size_t e = 0; out->code && e < g->count; e++) {
+        const expression_node *node = &g->nodes[e];
+        if (!node->has_state && node->kind != EXPRESSION_NUMBER)
+            out->code[out->count++] = (instruction){node->kind, (int)e, node->left, node->right};
+    }
+    return out->code ? LB_OK : LB_E_NOMEM;
+}
+
 void program_clear(program *p)
 {
     memory_free(p->code);
     *p = (program){0};
 }
 
-void program_run(const program *p, const double *x, double *values)
+void program_run(const program *p, const double *leaves, double *values)
 {
     for (size_t i = 0; i < p->count; i++) {
         const instruction *code = &p->code[i];
@@ -46,9 +57,9 @@ void program_run(const program *p, const double *x, double *values)
         double *out = &values[code->out];
         switch (code->kind) {
         case EXPRESSION_NUMBER:
-        case EXPRESSION_CONSTANT:
         case EXPRESSION_SQRT:      break; /* never in a program */
-        case EXPRESSION_STATE:     *out = x[left]; break;
+        case EXPRESSION_CONSTANT:
+        case EXPRESSION_STATE:     *out = leaves[left]; break;
         case EXPRESSION_ADD:       *out = values[left] + values[code->right]; break;
         case EXPRESSION_SUBTRACT:  *out = values[left] - values[code->right]; break;
         case EXPRESSION_MULTIPLY:  *out = values[left] * values[code->right]; break;

@@ -20,7 +20,10 @@ typedef struct program {
 lb_status program_compile(const expression_graph *g, const expression *roots, size_t count, program *out);
 void program_clear(program *p);
 
-/* Run at the state x; values [g->count]. */
-void program_run(const program *p, const double *x, double *values);
+/* All nodes of constants alone except the numbers.  LB_OK or LB_E_NOMEM. */
+lb_status program_compile_constants(const expression_graph *g, program *out);
+
+/* Run at the state x, or at the constants k for a program of those alone; values [g->count]. */
+void program_run(const program *p, const double *leaves, double *values);
 
 #endif

@@ -17,12 +17,13 @@ void table_free(table *t)
     if (!t)
         return;
     void *blocks[] = {t->entry_start, t->entry_state, t->entry_value, t->entry_node, t->slot_start, t->slot_state,
-                      t->row_start, t->row_entry, t->row_step, t->term_start, t->term_slot, t->term_entry,
+                      t->row_start, t->row_entry, t->row_step, t->term_start, t->term_slot, t->term_entry, t->nonzero_order,
                       t->rates, t->slopes, t->rate_chains.chain, t->rate_chains.link, t->slope_chains.chain,
                       t->slope_chains.link, t->rate_laws, t->slope_laws, t->factors.list, t->laws.list,
-                      t->coefficients.list, t->node_of, t->ones};
+                      t->coefficients.list, t->factor_node, t->checks, t->node_of, t->ones};
     for (size_t i = 0; i < sizeof blocks / sizeof *blocks; i++)
         memory_free(blocks[i]);
+    program_clear(&t->constant_program);
     program_clear(&t->rate_program);
     program_clear(&t->slope_program);
     program_clear(&t->law_program);
@@ -151,6 +152,22 @@ static void walk_terms(table *t, const int *column_start, const int *row, size_t
     }
 }
 
+/* Most sums of a sparse Jacobian are one term: these need no loop of their own. */
+static lb_status order_nonzeros(table *t)
+{
+    t->nonzero_order = memory_array((size_t)t->nonzeros, sizeof *t->nonzero_order);
+    if (!t->nonzero_order)
+        return LB_E_NOMEM;
+    int last = t->nonzeros;
+    for (int z = 0; z < t->nonzeros; z++)
+        if (t->term_start[z + 1] - t->term_start[z] == 1)
+            t->nonzero_order[t->single_terms++] = z;
+    for (int z = t->nonzeros - 1; z >= 0; z--)
+        if (t->term_start[z + 1] - t->term_start[z] != 1)
+            t->nonzero_order[--last] = z;
+    return LB_OK;
+}
+
 static lb_status fill_terms(table *t, const int *column_start, const int *row)
 {
     lb_status status = LB_E_NOMEM;
@@ -169,7 +186,7 @@ static lb_status fill_terms(table *t, const int *column_start, const int *row)
     if (!t->term_slot || !t->term_entry)
         goto done;
     walk_terms(t, column_start, row, next);
-    status = LB_OK;
+    status = order_nonzeros(t);
 done:
     memory_free(next);
     return status;
@@ -246,6 +263,8 @@ lb_status table_new(const lb_network *net, const int *column_start, const int *r
         status = table_fill_products(t, net);
     if (status == LB_OK)
         status = table_fill_laws(t, net);
+    if (status == LB_OK)
+        status = table_fill_binding(t, net);
     if (status != LB_OK) {
         table_free(t);
         return status;

@@ -67,6 +67,14 @@ typedef struct table_parameters {
     size_t count, capacity;
 } table_parameters;
 
+/* What a value computed from the constants must be. */
+typedef enum table_bound { BOUND_FINITE, BOUND_NOT_NEGATIVE, BOUND_POSITIVE } table_bound;
+
+typedef struct table_check {
+    expression node;
+    table_bound bound;
+} table_check;
+
 typedef struct table {
     int n, steps, nonzeros;
 
@@ -84,6 +92,8 @@ typedef struct table {
     size_t *term_start;         /* [nonzeros+1] sums of the Jacobian's entries, network order */
     int *term_slot, *term_entry; /* [terms] */
     size_t terms;
+    int *nonzero_order;         /* [nonzeros] those that are one term alone, then the others */
+    int single_terms;           /* how many are one term alone */
 
     table_rate *rates;   size_t rate_count;
     table_slope *slopes; size_t slope_count;
@@ -92,8 +102,13 @@ typedef struct table {
     table_law *slope_laws; size_t slope_law_count;
     table_parameters factors, laws, coefficients; /* of df/dk */
 
+    expression *factor_node;    /* [steps] factor of a power law, else EXPRESSION_NONE */
+    bool has_varied_coefficient; /* some entry has a node */
+    table_check *checks; size_t check_count, check_capacity; /* of a binding */
+
     expression_graph graph;
     expression *node_of;        /* [network's nodes] their number in the graph, or EXPRESSION_NONE */
+    program constant_program;   /* what is of constants alone, but for the numbers */
     program rate_program, slope_program, law_program, reading_program;
     double *ones;               /* [steps] */
 } table;
@@ -106,5 +121,6 @@ void table_free(table *t);
 /* Parts of table_new. */
 lb_status table_fill_products(table *t, const lb_network *net);
 lb_status table_fill_laws(table *t, const lb_network *net);
+lb_status table_fill_binding(table *t, const lb_network *net);
 
 #endif
