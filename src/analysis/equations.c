@@ -60,20 +60,26 @@ static double law_value(const equations *eq, int l)
     return (sum - eq->laws->total[eq->law[l]]) / eq->law_size[l];
 }
 
-static double balance_value(const equations *eq, int i, bool is_plain)
+/* In the form of the ratio? */
+static bool is_ratio(const equations *eq, int i)
 {
-    double gain, loss;
-    if (eq->start[i] == eq->start[i + 1] || (is_plain && i >= eq->count))
-        return 0;
-    gain_and_loss(eq, i, &gain, &loss);
-    return eq->is_ratio[i] && !is_plain ? log(gain / loss) : (gain - loss) / eq->size[i];
+    return eq->is_ratio[i] && (i >= eq->count || !eq->is_plain);
 }
 
-static bool fill_values(equations *eq, bool is_plain, double *F)
+static double balance_value(const equations *eq, int i)
+{
+    double gain, loss;
+    if (eq->start[i] == eq->start[i + 1])
+        return 0;
+    gain_and_loss(eq, i, &gain, &loss);
+    return is_ratio(eq, i) ? log(gain / loss) : (gain - loss) / eq->size[i];
+}
+
+static bool fill_values(equations *eq, double *F)
 {
     double sum = 0;
     for (int i = 0; i < eq->balances; i++)
-        F[i] = balance_value(eq, i, is_plain);
+        F[i] = balance_value(eq, i);
     for (int l = 0; l < eq->law_count; l++)
         F[eq->balances + l] = law_value(eq, l);
     for (int row = 0; row < eq->rows; row++)
@@ -85,7 +91,7 @@ bool equations_values(equations *eq, const double *u, double *F)
 {
     equations_place(eq, u);
     evaluator_step_rates(eq->evaluator, eq->x, eq->rate);
-    return fill_values(eq, false, F);
+    return fill_values(eq, F);
 }
 
 /* ---- Derivatives ---------------------------------------------------------------------- */
@@ -114,12 +120,12 @@ static void ratio_row(const equations *eq, int i, double *A)
 }
 
 /* Plain balances: unscaled rows of the Jacobian in u. */
-static void plain_rows(const equations *eq, bool is_all, double *A)
+static void plain_rows(const equations *eq, double *A)
 {
     for (int j = 0; j < eq->count; j++)
         for (int p = eq->system->column_start[eq->state[j]]; p < eq->system->column_start[eq->state[j] + 1]; p++) {
             int i = eq->unknown[eq->system->row[p]];
-            if (i >= 0 && (is_all || !eq->is_ratio[i]))
+            if (i >= 0 && !is_ratio(eq, i))
                 A[i + (size_t)j * (size_t)eq->rows] = eq->jacobian[p] * slope_of(eq, j);
         }
 }
@@ -145,15 +151,13 @@ static void add_reaches(equations *eq)
     }
 }
 
-static void scale_plain_rows(equations *eq, double inertia, double *A)
+static void scale_plain_rows(equations *eq, double *A)
 {
     for (int i = 0; i < eq->count; i++) {
-        if (eq->is_ratio[i] && inertia <= 0)
+        if (is_ratio(eq, i))
             continue;
         if (!(eq->size[i] > 0))
             eq->size[i] = 1;
-        if (inertia > 0)
-            A[i + (size_t)i * (size_t)eq->rows] -= inertia * slope_of(eq, i);
         for (int j = 0; j < eq->count; j++)
             A[i + (size_t)j * (size_t)eq->rows] /= eq->size[i];
     }
@@ -170,25 +174,36 @@ static void law_row(equations *eq, int l, double *A)
         A[eq->balances + l + (size_t)j * (size_t)eq->rows] = law_entry(eq, law, j) * slope_of(eq, j) / scale;
 }
 
-bool equations_matrix(equations *eq, const double *u, double inertia, double *F, double *A)
+bool equations_matrix(equations *eq, const double *u, double *F, double *A)
 {
-    bool is_plain = inertia > 0;
     equations_place(eq, u);
     evaluator_step_rates(eq->evaluator, eq->x, eq->rate);
     memset(A, 0, (size_t)eq->rows * (size_t)eq->count * sizeof *A);
     start_sizes(eq);
-    if (eq->is_general || is_plain) {
+    if (eq->is_general || eq->is_plain) {
         lb_jacobian_sparse(eq->evaluator, eq->x, eq->jacobian);
         add_reaches(eq);
-        plain_rows(eq, is_plain, A);
+        plain_rows(eq, A);
     }
-    for (int i = 0; i < eq->balances && !is_plain; i++)
-        if (eq->is_ratio[i])
+    for (int i = 0; i < eq->balances; i++)
+        if (is_ratio(eq, i))
             ratio_row(eq, i, A);
-    scale_plain_rows(eq, inertia, A);
+    scale_plain_rows(eq, A);
     for (int l = 0; l < eq->law_count; l++)
         law_row(eq, l, A);
-    return fill_values(eq, is_plain, F);
+    return fill_values(eq, F);
+}
+
+/* The pools' balances follow from the species' in a steady state, not on the way. */
+void equations_add_inertia(const equations *eq, double inertia, double *F, double *A)
+{
+    for (int i = 0; i < eq->count; i++)
+        A[i + (size_t)i * (size_t)eq->rows] -= inertia * slope_of(eq, i) / eq->size[i];
+    for (int i = eq->count; i < eq->balances; i++) {
+        F[i] = 0;
+        for (int j = 0; j < eq->count; j++)
+            A[i + (size_t)j * (size_t)eq->rows] = 0;
+    }
 }
 
 double equations_residual(const equations *eq, const double *F)
@@ -201,14 +216,16 @@ double equations_residual(const equations *eq, const double *F)
 
 double equations_balance_error(equations *eq, const double *u)
 {
-    double error = 0;
+    double error = 0, gain, loss;
     equations_place(eq, u);
     evaluator_step_rates(eq->evaluator, eq->x, eq->rate);
     lb_jacobian_sparse(eq->evaluator, eq->x, eq->jacobian);
     start_sizes(eq);
     add_reaches(eq);
-    for (int i = 0; i < eq->count; i++)
+    for (int i = 0; i < eq->count; i++) {
+        gain_and_loss(eq, i, &gain, &loss);
         if (eq->size[i] > 0)
-            error = fmax(error, fabs(balance_value(eq, i, true)));
+            error = fmax(error, fabs(gain - loss) / eq->size[i]);
+    }
     return error;
 }

@@ -56,6 +56,7 @@ typedef struct equations {
     equations_term *term;
     size_t term_capacity;
     bool *is_ratio;                 /* [balances] balance of power laws: ln(gain/loss), else (gain - loss)/size */
+    bool is_plain;                  /* set by who asks: no ratios but in the balances of pools */
     bool is_general;                /* some balance is not of that form: the Jacobian is needed */
     bool is_inconsistent;           /* a total cannot be met on this face */
     double *size;                   /* [count] scale of each plain balance, of the last equations_matrix */
@@ -93,10 +94,12 @@ void equations_place(equations *eq, const double *u);
  * equations_matrix.  False when something is not finite. */
 bool equations_values(equations *eq, const double *u, double *F);
 
-/* Residuals and their derivatives A [rows*count], column-major, with fresh
- * sizes.  inertia > 0: one implicit Euler step of 1/inertia instead, the balances
- * of species plain and those of pools left out (zero). */
-bool equations_matrix(equations *eq, const double *u, double inertia, double *F, double *A);
+/* Residuals and their derivatives A [rows*count], column-major, with fresh sizes. */
+bool equations_matrix(equations *eq, const double *u, double *F, double *A);
+
+/* Turns F and A of the plain form into one implicit Euler step of 1/inertia: with
+ * A du = -F, the balances of pools left out (zero). */
+void equations_add_inertia(const equations *eq, double inertia, double *F, double *A);
 
 /* The largest of |F| [rows]. */
 double equations_residual(const equations *eq, const double *F);

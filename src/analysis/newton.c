@@ -263,7 +263,7 @@ static lb_status polish(newton *w, double *u, newton_report *report, lb_error *e
     memcpy(best, u, (size_t)count * sizeof *u);
     report->step = INFINITY;
     for (int i = 0; i < MOST_POLISHING; i++) {
-        if (!equations_matrix(w->eq, u, 0, w->F, w->A))
+        if (!equations_matrix(w->eq, u, w->F, w->A))
             break;
         int rank;
         lb_status status = solve_all(w, RANK_TOLERANCE, &rank, err);
@@ -290,7 +290,7 @@ lb_status newton_solve(newton *w, double *u, double *const *known, int known_cou
     *report = (newton_report){.residual = INFINITY, .step = INFINITY};
     for (int i = 0; i < MOST_ITERATIONS; i++) {
         report->iterations = i + 1;
-        if (!equations_matrix(eq, u, 0, w->F, w->A))
+        if (!equations_matrix(eq, u, w->F, w->A))
             return LB_OK;
         lb_status status = solve(w, err);
         if (status != LB_OK)
@@ -299,6 +299,7 @@ lb_status newton_solve(newton *w, double *u, double *const *known, int known_cou
         report->step = largest(eq->count, w->step);
         if (report->residual <= RESIDUAL_TOLERANCE && report->step <= STEP_TOLERANCE) {
             report->converged = true;
+            eq->is_plain = false;
             return polish(w, u, report, err);
         }
         double factor = deflated_factor(w, u, known, known_count);
@@ -333,28 +334,37 @@ static double farthest_move(const newton *w, const double *u)
 }
 
 /* A step that moves an unknown too far is taken again with a shorter time. */
-lb_status newton_relax(newton *w, double *u, bool *is_near, lb_error *err)
+static lb_status relax(newton *w, double *u, bool *is_near, lb_error *err)
 {
-    int count = w->eq->count;
-    *is_near = false;
-    if (!equations_matrix(w->eq, u, 1, w->F, w->A))
-        return LB_OK;
-    double inertia = first_inertia(w);
-    for (int i = 0; i < MOST_RELAXATIONS && inertia > 0; i++) {
-        if (!equations_matrix(w->eq, u, inertia, w->F, w->A))
+    double inertia = 0;
+    for (int i = 0; i < MOST_RELAXATIONS; i++) {
+        if (!equations_matrix(w->eq, u, w->F, w->A))
             return LB_OK;
+        if (i == 0)
+            inertia = first_inertia(w);
         *is_near = equations_residual(w->eq, w->F) < 1e-6;
-        if (*is_near)
+        if (*is_near || !(inertia > 0))
             return LB_OK;
+        equations_add_inertia(w->eq, inertia, w->F, w->A);
         lb_status status = solve(w, err);
         if (status != LB_OK)
             return status == LB_E_NUMERIC ? LB_OK : status;
         double moved = farthest_move(w, u);
         inertia *= moved > 1 ? 4 : moved < 0.3 ? 0.25 : 0.6;
-        for (int j = 0; j < count && moved <= 1; j++)
+        for (int j = 0; j < w->eq->count && moved <= 1; j++)
             u[j] += w->step[j];
     }
     return LB_OK;
+}
+
+lb_status newton_relax(newton *w, double *u, bool *is_near, lb_error *err)
+{
+    bool was_plain = w->eq->is_plain;
+    *is_near = false;
+    w->eq->is_plain = true;
+    lb_status status = relax(w, u, is_near, err);
+    w->eq->is_plain = was_plain;
+    return status;
 }
 
 /* ---- Null directions ---------------------------------------------------------------------------- */
@@ -364,7 +374,7 @@ lb_status newton_relax(newton *w, double *u, bool *is_near, lb_error *err)
 lb_status newton_null_direction(newton *w, const double *u, double *direction, lb_error *err)
 {
     int rank, count = w->eq->count, rows = w->eq->rows;
-    if (!equations_matrix(w->eq, u, 0, w->F, w->A))
+    if (!equations_matrix(w->eq, u, w->F, w->A))
         return status_raise(err, LB_E_FINITE, NULL, "the derivatives at a steady state are not finite");
     for (int j = 0; j < count; j++)
         direction[j] = 1 + 0.1 * sin(1 + 2.3 * j);

@@ -1,9 +1,9 @@
 /* Multistart search for the roots of the steady-state equations.
  *
  * Newton's method from low-discrepancy starts, then from more starts with the
- * roots found so far divided out, which reaches roots with small basins.  Starts
- * that fail are relaxed by pseudo-transient continuation, the first few of them.
- * A root is new when it is further from each known one than their errors.
+ * roots found so far divided out, which reaches roots with small basins.  The first
+ * few starts are relaxed by pseudo-transient continuation as well.  A root is new
+ * when it is further from each known one than their errors.
  *
  * A root with singular derivatives may be isolated (a fold) or one point of a
  * continuum.  That is decided by going along the null direction and solving
@@ -30,7 +30,6 @@ struct search {
     const roots_options *options;
     roots *out;
     double *u, *walked;     /* [count] */
-    int relaxed;
     lb_error *err;
 };
 
@@ -139,27 +138,42 @@ static void set_start(struct search *s, uint64_t i)
         starts_point(&s->starts, i, s->u);
 }
 
-/* Starts that may be relaxed: fewer where a step costs more. */
-static int most_relaxed(const equations *eq)
+/* Starts that are relaxed as well: fewer where a step costs more. */
+static uint64_t most_relaxed(const struct search *s)
 {
-    return eq->count <= 60 ? 8 : 1 + 28800 / (eq->count * eq->count);
+    uint64_t n = (uint64_t)s->eq->count, some = 1 + s->options->starts / 4;
+    uint64_t most = n <= 60 ? 12 : 1 + 40000 / (n * n);
+    return some < most ? some : most;
 }
 
-static lb_status try_start(struct search *s, uint64_t i, bool is_deflated)
+static lb_status solve_start(struct search *s, int known)
 {
     newton_report report;
+    lb_status status = newton_solve(&s->newton, s->u, s->out->u, known, &report, s->err);
+    return status == LB_OK && report.converged ? take_root(s, s->u, &report) : status;
+}
+
+/* Newton's method jumps, and prefers some roots; the relaxation of the same start
+ * goes where the reaction goes. */
+static lb_status relax_start(struct search *s, uint64_t i)
+{
+    bool is_near = false;
+    set_start(s, i);
+    lb_status status = newton_relax(&s->newton, s->u, &is_near, s->err);
+    return status == LB_OK && is_near ? solve_start(s, 0) : status;
+}
+
+/* Two starts in three in ratios, one with plain balances: their basins differ. */
+static lb_status try_start(struct search *s, uint64_t i, bool is_deflated)
+{
     set_start(s, i);
     s->out->starts++;
-    lb_status status = newton_solve(&s->newton, s->u, s->out->u, is_deflated ? s->out->count : 0, &report, s->err);
-    if (status == LB_OK && !report.converged && !is_deflated && s->relaxed < most_relaxed(s->eq)) {
-        bool is_near = false;
-        s->relaxed++;
-        set_start(s, i);
-        status = newton_relax(&s->newton, s->u, &is_near, s->err);
-        if (status == LB_OK && is_near)
-            status = newton_solve(&s->newton, s->u, NULL, 0, &report, s->err);
-    }
-    return status == LB_OK && report.converged ? take_root(s, s->u, &report) : status;
+    s->eq->is_plain = i % 3 == 2;
+    lb_status status = solve_start(s, is_deflated ? s->out->count : 0);
+    s->eq->is_plain = false;
+    if (status == LB_OK && i < most_relaxed(s))
+        status = relax_start(s, i);
+    return status;
 }
 
 static bool must_stop(struct search *s, size_t done, size_t all)

@@ -114,7 +114,7 @@ static size_t starts_for(const struct search *s, int unknowns, bool is_first)
 {
     size_t count = s->options->starts, n = (size_t)unknowns;
     if (count == 0)
-        count = n <= 15 ? 40 + 16 * n : n <= 100 ? 2400 / n : n <= 240 ? 240000 / (n * n) : 4;
+        count = n <= 15 ? 40 + 20 * n : n <= 60 ? 5100 / n : n <= 270 ? 300000 / (n * n) : 4;
     return is_first || count <= 6 ? count : count / 4 > 6 ? count / 4 : 6;
 }
 
