@@ -404,6 +404,7 @@ START_TEST(test_lotka_volterra_is_a_centre_with_the_period_of_its_start)
     assert_close(cycle->high[Y], 2, 1e-8, 0);
     assert_close(cycle->multipliers[0].re, 1, 1e-6, 0);
     ck_assert_int_eq(cycle->stable, LB_NO);
+    ck_assert(cycle->confirmed < 1e-7);
     bench_close(&b);
 }
 END_TEST

@@ -7,6 +7,7 @@
 #include "analysis/space.h"
 #include "limbeck.h"
 
+#define CLOSED_LIMIT 1000         /* states; the tangents are a square of them, and more are not carried */
 #define CLOSED_GOAL 1e-8          /* residual of the shooting, in amplitudes */
 #define CLOSED_CLOSURE 1e-9       /* closure of an orbit that is reported, in amplitudes */
 

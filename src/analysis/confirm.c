@@ -109,7 +109,8 @@ static lb_status second_path(const closed_orbit *c, double *x, double *weight, c
     return closed_is_fatal(status) ? status : LB_OK;
 }
 
-lb_status confirm_period(const closed_orbit *c, const lb_monitor *monitor, double *difference, lb_error *err)
+lb_status confirm_period(const closed_orbit *c, bool is_family, const lb_monitor *monitor, double *difference,
+                         lb_error *err)
 {
     double *x = memory_array((size_t)(2 * c->s.n + c->s.rank), sizeof *x), period;
     *difference = NAN;
@@ -117,7 +118,10 @@ lb_status confirm_period(const closed_orbit *c, const lb_monitor *monitor, doubl
         return status_no_memory(err);
     orbit_options options = {.tolerance = OTHER_TOLERANCE * c->tolerance, .method = LB_METHOD_STIFF,
                              .monitor = monitor};
-    push(c, x + 2 * c->s.n, x);
+    if (is_family)
+        memcpy(x, c->x, (size_t)c->s.n * sizeof *x);
+    else
+        push(c, x + 2 * c->s.n, x);
     lb_status status = second_path(c, x, x + c->s.n, &options, &period, err);
     if (status == LB_OK)
         *difference = fabs(period - c->period) / c->period;

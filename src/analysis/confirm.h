@@ -6,8 +6,10 @@
 
 /* Relative difference of the period found on a second path: from a state pushed off
  * the orbit, with the stiff method at another tolerance (which is another method,
- * unless the orbit was closed with the stiff one).  NAN when that fails. */
-lb_status confirm_period(const closed_orbit *c, const lb_monitor *monitor, double *difference, lb_error *err);
+ * unless the orbit was closed with the stiff one).  An orbit of a family is not pushed:
+ * it would be another one.  NAN when that fails. */
+lb_status confirm_period(const closed_orbit *c, bool is_family, const lb_monitor *monitor, double *difference,
+                         lb_error *err);
 
 /* Closed orbits on both sides of this one, held at a distance of a tenth of its
  * amplitude: it belongs to a family (a centre). */

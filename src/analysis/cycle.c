@@ -59,6 +59,7 @@ typedef struct explorer {
     double *before, *after;       /* [n] rates at the ends of the last step */
     double *low, *high;           /* [n] range of the epoch */
     double *reach;                /* [n] largest magnitude so far */
+    double *asked;                /* [n] state when rest was last asked for */
     double *scale;                /* [n] scratch */
     size_t *turns;                /* [n] turning points when the epoch began */
     size_t epoch_end, epoch_length, epoch_returns, max_returns, max_steps;
@@ -96,7 +97,7 @@ static void start_epoch(explorer *e, const double *x)
 static lb_status take_memory(explorer *e, lb_error *err)
 {
     size_t n = (size_t)e->s.n;
-    e->block = memory_zeroed(8 * n, sizeof *e->block);
+    e->block = memory_zeroed(9 * n, sizeof *e->block);
     e->turns = memory_zeroed(n, sizeof *e->turns);
     if (!e->block || !e->turns)
         return status_no_memory(err);
@@ -106,6 +107,7 @@ static lb_status take_memory(explorer *e, lb_error *err)
     e->high = e->block + 3 * n;
     e->reach = e->block + 4 * n;
     e->scale = e->block + 5 * n;
+    e->asked = e->block + 8 * n;
     e->turning = (orbit_turning){.evaluator = e->s.evaluator, .x = e->block + 6 * n, .f = e->block + 7 * n};
     return LB_OK;
 }
@@ -220,10 +222,29 @@ static lb_status look_for_stillness(explorer *e, lb_error *err)
     return LB_OK;
 }
 
+/* Near a steady state a trajectory cannot have come far since it was last asked: a
+ * cheap question before the dear one. */
+static bool has_moved_far(const explorer *e, const double *x)
+{
+    for (int k = 0; k < e->s.core; k++) {
+        int i = e->s.system->core_state[k];
+        if (fabs(x[i] - e->asked[i]) > 5 * NEAR_REST * fmax(fabs(x[i]), 1e-3 * e->reach[i]))
+            return true;
+    }
+    return false;
+}
+
 static lb_status look_for_rest(explorer *e, lb_error *err)
 {
     const double *x = integrator_state(e->it);
     rest *r = &e->rest;
+    bool moves = has_moved_far(e, x);
+    memcpy(e->asked, x, (size_t)e->s.n * sizeof *x);
+    if (moves) {
+        e->first_distance = e->still_since = INFINITY;
+        r->found = false;
+        return LB_OK;
+    }
     lb_status status = rest_near(r, &e->s, x, e->reach, NEAR_REST, err);
     if (status != LB_OK)
         return status;
@@ -293,9 +314,12 @@ static lb_status give_up(explorer *e, lb_error *err)
     const rest *r = &e->rest;
     if (r->found && r->stable == LB_YES && r->distance < 0.5 * e->first_distance)
         return settle(e, r->x, "it approaches a stable steady state, slowly", err);
-    finish(e, CYCLE_UNDECIDED, e->report->returns > SECTION_LOOPS
-               ? "it keeps moving and recurs without closing"
-               : "it neither rests nor recurs within the effort");
+    if (e->report->returns <= SECTION_LOOPS)
+        finish(e, CYCLE_UNDECIDED, "it neither rests nor recurs within the effort");
+    else if (e->s.n > CLOSED_LIMIT)
+        finish(e, CYCLE_UNDECIDED, "it recurs, and there are too many species to close an orbit");
+    else
+        finish(e, CYCLE_UNDECIDED, "it keeps moving and recurs without closing");
     return LB_OK;
 }
 
@@ -305,11 +329,15 @@ static lb_status give_up(explorer *e, lb_error *err)
 static lb_status report_centre(explorer *e, const closed_orbit *orbit, lb_error *err)
 {
     const char *why = "closed orbits of several amplitudes: a centre";
+    const lb_monitor *monitor = e->options->monitor;
+    double difference;
     closed_orbit own;
-    lb_status status = closed_find(&own, e->s.evaluator, e->x0, orbit->period, e->closing_tolerance,
-                                   e->options->monitor, err);
+    lb_status status = closed_find(&own, e->s.evaluator, e->x0, orbit->period, e->closing_tolerance, monitor, err);
+    const closed_orbit *best = own.converged ? &own : orbit;
     if (status == LB_OK)
-        status = report_orbit(e, own.converged ? &own : orbit, NAN, CYCLE_CENTRE, why, err);
+        status = confirm_period(best, true, monitor, &difference, err);
+    if (status == LB_OK)
+        status = report_orbit(e, best, difference, CYCLE_CENTRE, why, err);
     closed_clear(&own);
     return status;
 }
@@ -319,7 +347,7 @@ static lb_status judge_orbit(explorer *e, const closed_orbit *orbit, lb_error *e
     const lb_monitor *monitor = e->options->monitor;
     if (orbit->stable == LB_YES) {
         double difference;
-        lb_status status = confirm_period(orbit, monitor, &difference, err);
+        lb_status status = confirm_period(orbit, false, monitor, &difference, err);
         if (status == LB_OK && difference < PERIOD_AGREES)
             status = report_orbit(e, orbit, difference, CYCLE_CLOSED, "an attracting closed orbit", err);
         return status;
@@ -354,8 +382,9 @@ static lb_status watch_section(explorer *e, lb_error *err)
         return status;
     e->epoch_returns++;
     e->report->returns++;
-    double distance;
-    int loops = e->attempts < MOST_ATTEMPTS ? section_repeats(&e->section, &e->s, e->repeat, e->scale, &distance) : 0;
+    if (e->attempts >= MOST_ATTEMPTS || e->s.n > CLOSED_LIMIT)
+        return LB_OK;
+    int loops = section_repeats(&e->section, &e->s, e->repeat, e->scale);
     return loops > 0 ? try_to_close(e, loops, err) : LB_OK;
 }
 
@@ -477,7 +506,7 @@ lb_status cycle_close(lb_evaluator *evaluator, const double *x0, double period, 
     *out = NULL;
     lb_status status = closed_find(&orbit, evaluator, x0, period, tolerance, monitor, err);
     if (status == LB_OK && orbit.converged)
-        status = confirm_period(&orbit, monitor, &confirmed, err);
+        status = confirm_period(&orbit, orbit.stable == LB_UNDECIDED, monitor, &confirmed, err);
     if (status == LB_OK && orbit.converged)
         status = closed_record(&orbit, confirmed, out, err);
     closed_clear(&orbit);

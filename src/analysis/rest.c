@@ -23,12 +23,19 @@ enum { NEWTON_ITERATIONS = 25 };
 #define REACH_FRACTION 1e-3
 #define BALANCED 1e-14             /* of the sum of the terms' magnitudes: rounding */
 
+/* Room for the Jacobian and the reduced one, at the start of the scratch. */
+static size_t matrices(const space *s)
+{
+    size_t n = (size_t)s->n, rank = (size_t)s->rank;
+    return s->rank <= REST_LIMIT ? n * n + rank * rank : 0;
+}
+
 lb_status rest_init(rest *r, const space *s, lb_error *err)
 {
     size_t n = (size_t)s->n, rank = (size_t)s->rank;
     memset(r, 0, sizeof *r);
     r->x = memory_array(n, sizeof *r->x);
-    r->work = memory_array(n * n + rank * rank + 2 * n + 2 * rank, sizeof *r->work);
+    r->work = memory_array(matrices(s) + 2 * n + 2 * rank, sizeof *r->work);
     r->pivot = memory_array(rank, sizeof *r->pivot);
     return r->x && r->work && r->pivot ? LB_OK : status_no_memory(err);
 }
@@ -60,8 +67,7 @@ static double rest_length(const double *x, const double *reach, int state)
 /* Newton from r->x, in place; false when it does not converge. */
 static bool newton(rest *r, const space *s, const double *reach)
 {
-    size_t n = (size_t)s->n, rank = (size_t)s->rank;
-    double *f = r->work + n * n + rank * rank, *y = f + n, *step = y + rank;
+    double *f = r->work + matrices(s), *y = f + s->n, *step = y + s->rank;
     for (int k = 0; k < NEWTON_ITERATIONS; k++) {
         lb_rhs(s->evaluator, r->x, f);
         double *reduced = reduced_jacobian(r, s, r->x);
@@ -102,7 +108,7 @@ lb_status rest_near(rest *r, const space *s, const double *x, const double *reac
     memcpy(r->x, x, (size_t)s->n * sizeof *x);
     r->stable = LB_UNDECIDED;
     r->distance = INFINITY;
-    r->found = newton(r, s, reach);
+    r->found = s->rank <= REST_LIMIT && newton(r, s, reach);
     if (!r->found)
         return LB_OK;
     r->distance = 0;
@@ -115,8 +121,7 @@ lb_status rest_near(rest *r, const space *s, const double *x, const double *reac
 
 bool rest_is_balanced(rest *r, const space *s, const double *x)
 {
-    size_t n = (size_t)s->n, rank = (size_t)s->rank;
-    double *f = r->work + n * n + rank * rank, *magnitude = r->work;
+    double *f = r->work + matrices(s), *magnitude = f + s->n;
     evaluator_rhs_scaled(s->evaluator, x, f, magnitude);
     for (int k = 0; k < s->core; k++) {
         int i = s->system->core_state[k];
@@ -139,11 +144,30 @@ static void stay_on_face(const space *s, const double *x, const double *f, doubl
     }
 }
 
+/* Largest real part of the eigenvalues at x. */
+static lb_status growth_rate(rest *r, const space *s, const double *x, const double *f, double *rate, lb_error *err)
+{
+    double *J = r->work, *reduced = J + (size_t)s->n * (size_t)s->n;
+    *rate = 0;
+    if (s->rank == 0 || s->rank > REST_LIMIT)
+        return LB_OK;
+    lb_complex *values = memory_array((size_t)s->rank, sizeof *values);
+    if (!values)
+        return status_no_memory(err);
+    lb_jacobian(s->evaluator, x, J);
+    stay_on_face(s, x, f, J);
+    system_reduce(s->system, J, reduced);
+    lb_status status = linalg_eigenvalues(s->rank, reduced, values, NULL, err);
+    if (status == LB_OK)
+        *rate = values[0].re;
+    memory_free(values);
+    return status;
+}
+
 lb_status rest_is_still(rest *r, const space *s, const double *x, const double *reach, double elapsed,
                         double fraction, bool *is_still, double *rate, lb_error *err)
 {
-    size_t n = (size_t)s->n, rank = (size_t)s->rank;
-    double *f = r->work + n * n + rank * rank;
+    double *f = r->work + matrices(s);
     *is_still = false;
     lb_rhs(s->evaluator, x, f);
     for (int k = 0; k < s->core; k++) {
@@ -151,16 +175,6 @@ lb_status rest_is_still(rest *r, const space *s, const double *x, const double *
         if (!(fabs(f[i]) * elapsed <= fraction * reach[i]))
             return LB_OK;
     }
-    lb_complex *values = memory_array(rank, sizeof *values);
-    if (!values)
-        return status_no_memory(err);
-    double *J = r->work, *reduced = J + n * n;
-    lb_jacobian(s->evaluator, x, J);
-    stay_on_face(s, x, f, J);
-    system_reduce(s->system, J, reduced);
-    lb_status status = linalg_eigenvalues(s->rank, reduced, values, NULL, err);
-    *is_still = status == LB_OK;
-    *rate = status == LB_OK && s->rank > 0 ? values[0].re : 0;
-    memory_free(values);
-    return status;
+    *is_still = true;
+    return growth_rate(r, s, x, f, rate, err);
 }

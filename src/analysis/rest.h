@@ -5,6 +5,10 @@
 #include "analysis/space.h"
 #include "limbeck.h"
 
+/* Dimension of the reaction space above which no dense matrix is made: rest is then
+ * known by standing still alone. */
+#define REST_LIMIT 1500
+
 typedef struct rest {
     bool found;                   /* Newton from the state led to a steady state */
     lb_answer stable;             /* of that state */
@@ -17,7 +21,7 @@ typedef struct rest {
 lb_status rest_init(rest *r, const space *s, lb_error *err);
 void rest_clear(rest *r);
 
-/* Newton in the reaction space from x [n].  The distance is measured in each
+/* Newton in the reaction space from x [n]; not found above REST_LIMIT.  The distance is measured in each
  * species' steady value or a thousandth of reach [n] (its largest magnitude so
  * far), whichever is larger.  Stability is asked only where the distance is
  * below `close`; it is undecided otherwise. */
@@ -28,7 +32,8 @@ bool rest_is_balanced(rest *r, const space *s, const double *x);
 
 /* is_still: as much time again as `elapsed` would move no core species by more than
  * `fraction` of its reach.  rate: the largest real part of the eigenvalues at x (on
- * the face of the species that were zero from the start), filled where is_still. */
+ * the face of the species that were zero from the start), filled where is_still; zero
+ * above REST_LIMIT. */
 lb_status rest_is_still(rest *r, const space *s, const double *x, const double *reach, double elapsed,
                         double fraction, bool *is_still, double *rate, lb_error *err);
 

@@ -93,7 +93,7 @@ const section_return *section_back(const section *c, size_t back)
     return &c->ring[(c->returns - 1 - back) % (SECTION_LOOPS + 1)];
 }
 
-int section_repeats(section *c, const space *s, double threshold, double *scale, double *distance)
+int section_repeats(section *c, const space *s, double threshold, double *scale)
 {
     size_t known = c->returns < SECTION_LOOPS + 1 ? c->returns : SECTION_LOOPS + 1;
     for (int i = 0; i < c->n; i++) {
@@ -107,8 +107,7 @@ int section_repeats(section *c, const space *s, double threshold, double *scale,
             c->loops_high[i] = fmax(c->loops_high[i], last->high[i]);
         }
         orbit_scale(s, c->loops_low, c->loops_high, scale);
-        *distance = space_distance(s, section_back(c, 0)->x, section_back(c, loops)->x, scale);
-        if (*distance < threshold)
+        if (space_distance(s, section_back(c, 0)->x, section_back(c, loops)->x, scale) < threshold)
             return (int)loops;
     }
     return 0;

@@ -39,9 +39,8 @@ void section_place(section *c, int state, double low, double high);
 lb_status section_watch(section *c, integrator *it, bool *returned, lb_error *err);
 
 /* The least number of loops after which the newest return repeats an older one
- * within `threshold` amplitudes; 0 when none does.  Fills the scale [n] of these
- * loops (orbit_scale) and the distance. */
-int section_repeats(section *c, const space *s, double threshold, double *scale, double *distance);
+ * within `threshold` amplitudes; 0 when none does.  scale [n] is scratch. */
+int section_repeats(section *c, const space *s, double threshold, double *scale);
 
 /* The return `back` loops before the newest (0: the newest itself). */
 const section_return *section_back(const section *c, size_t back);
