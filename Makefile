@@ -18,7 +18,7 @@ CFLAGS ?= -O2 -g
 ALL_CFLAGS = -std=c11 -D_POSIX_C_SOURCE=200809L -ffp-contract=off -fPIC -pthread -Iinclude -Isrc -I$(BUILD)/grammar $(CFLAGS)
 LIBS    = -lgsl -llapacke -llapack -lblas -lklu -lflint -lmpfr -lgmp -ljansson -lm -pthread
 
-PACKAGES = gcc make pkg-config flex bison libgsl-dev liblapacke-dev liblapack-dev libblas-dev libsuitesparse-dev \
+PACKAGES = gcc libc6-dev make pkg-config flex bison libgsl-dev liblapacke-dev liblapack-dev libblas-dev libsuitesparse-dev \
            libflint-dev libgmp-dev libmpfr-dev libjansson-dev check
 
 # `make V=1` shows the commands.
@@ -94,7 +94,7 @@ deps:
 	@missing=$$(for p in $(PACKAGES); do \
 	    dpkg-query -W -f '$${Status}' $$p 2>/dev/null | grep -q 'install ok installed' || echo $$p; done); \
 	if [ -n "$$missing" ]; then \
-	    echo "installing: $$missing"; \
+	    echo installing: $$missing; \
 	    if [ $$(id -u) -eq 0 ]; then run=; else run=sudo; fi; \
 	    $$run apt-get update -qq && \
 	    DEBIAN_FRONTEND=noninteractive $$run apt-get install -y -qq --no-install-recommends $$missing >/dev/null; \
