@@ -11,6 +11,7 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "analysis/integrate.h"
 #include "base/memory.h"
 #include "support.h"
 
@@ -128,6 +129,11 @@ static const reference references[] = {
     {"cubic autocatalysis in a tank",
      "units none\nresidence = 164\n[a]in = 1\n[a]0 = 0.2\n[b]0 = 0.16\na + 2 b -> 3 b, k = 1\nb ->, k = 0.025\n",
      275.24743043709157, {0.9307046607032835}, 1e-8,
+     {{"a", 0.12037276247938956, 0.29922369364120954}, {"b", 0.11085802503521162, 0.22628683798804497}}},
+    /* The product flows out with the rest: one more multiplier, exp(-period/residence). */
+    {"cubic autocatalysis in a tank, with its product",
+     "units none\nresidence = 164\n[a]in = 1\n[a]0 = 0.2\n[b]0 = 0.16\na + 2 b -> 3 b, k = 1\nb -> c, k = 0.025\n",
+     275.24743043709157, {0.9307046607032835, 0.18668398893}, 1e-8,
      {{"a", 0.12037276247938956, 0.29922369364120954}, {"b", 0.11085802503521162, 0.22628683798804497}}},
     {"Roessler, c = 2.5", ROESSLER("2.5"), 5.748991183278001, {-0.7696936417339536, -5.1743043250339254e-06}, 1e-8,
      {{NULL, 0, 0}}},
@@ -248,6 +254,46 @@ START_TEST(test_products_have_no_extrema)
     ck_assert(isnan(b.report.cycle->low[lb_network_find_state(b.net, "D")]));
     ck_assert(isnan(b.report.cycle->high[lb_network_find_state(b.net, "E")]));
     ck_assert(isfinite(b.report.cycle->x[lb_network_find_state(b.net, "D")]));
+    bench_close(&b);
+}
+END_TEST
+
+/* Liouville: the product of all multipliers is exp of the integral of the trace of the
+ * Jacobian over one period.  The trapezoidal rule on a periodic function converges
+ * faster than any power. */
+static double trace_integral(const bench *b)
+{
+    enum { POINTS = 2000 };
+    const lb_cycle *cycle = b->report.cycle;
+    int n = cycle->states;
+    double J[16], sum = 0;
+    integrator *it = NULL;
+    integrator_options how = {.tolerance = 1e-12, .allow_negative = true};
+    ck_assert_int_le(n, 4);
+    ck_assert_int_eq(integrator_new(b->ev, &how, &it, NULL), LB_OK);
+    integrator_start(it, 0, cycle->x);
+    for (int k = 0; k < POINTS; k++) {
+        lb_jacobian(b->ev, integrator_state(it), J);
+        for (int i = 0; i < n; i++)
+            sum += isnan(cycle->low[i]) ? 0 : J[i + i * n];
+        ck_assert_int_eq(integrator_to(it, (k + 1) * cycle->period / POINTS, NULL), LB_OK);
+    }
+    integrator_free(it);
+    return sum * cycle->period / POINTS;
+}
+
+START_TEST(test_multipliers_multiply_to_the_integral_of_the_trace)
+{
+    static const char *const texts[] = {
+        BRUSSELATOR("3"), VAN_DER_POL("1"), ROESSLER("2.5"),
+        "units none\n[X]0 = 0.5\n[Y]0 = 0.5\n[Z]0 = 1\n-> X, v = 10/(1 + [Z]^10)\nX ->, k = 1\n-> Y, v = [X]\n"
+        "Y ->, k = 1\n-> Z, v = [Y]\nZ ->, k = 1\n"};
+    bench b;
+    find_in(&b, texts[_i], CYCLE_CLOSED);
+    double product = 1;
+    for (int i = 0; i < b.report.cycle->multiplier_count; i++)
+        product *= b.report.cycle->multipliers[i].re;
+    assert_close(product, exp(trace_integral(&b)), 1e-6, 0);
     bench_close(&b);
 }
 END_TEST
@@ -537,6 +583,20 @@ START_TEST(test_lone_neutral_orbit_is_no_centre)
 }
 END_TEST
 
+/* Without `signed` the same orbit would need negative concentrations. */
+START_TEST(test_orbit_outside_the_orthant_is_none)
+{
+    bench b;
+    lb_cycle *cycle = NULL;
+    bench_open(&b, "units none\n[X]0 = 2\n-> X, v = [Y]\n-> Y, v = (1 - [X]^2)*[Y] - [X]\n");
+    ck_assert_int_eq(cycle_close(b.ev, b.x, 6.66, NULL, &cycle, NULL), LB_OK);
+    ck_assert_ptr_null(cycle);
+    bench_find(&b, NULL);
+    assert_outcome(&b, CYCLE_UNDECIDED);
+    bench_close(&b);
+}
+END_TEST
+
 START_TEST(test_steady_state_is_no_orbit)
 {
     bench b;
@@ -605,6 +665,7 @@ Suite *cycle_suite(void)
                         (int)(sizeof references / sizeof *references));
     tcase_add_loop_test(close, test_brusselator_cycle_is_the_same_from_three_starts, 0, 3);
     tcase_add_test(close, test_products_have_no_extrema);
+    tcase_add_loop_test(close, test_multipliers_multiply_to_the_integral_of_the_trace, 0, 4);
     tcase_add_test(close, test_slow_attraction_is_no_centre);
     tcase_add_test(close, test_slower_attraction_is_no_centre);
     tcase_add_loop_test(close, test_relaxation_oscillations_of_large_ratios, 0, 3);
@@ -637,6 +698,7 @@ Suite *cycle_suite(void)
     tcase_add_test(demand, test_close_finds_the_least_period);
     tcase_add_test(demand, test_repelling_cycle_is_closed_but_not_stable);
     tcase_add_test(demand, test_steady_state_is_no_orbit);
+    tcase_add_test(demand, test_orbit_outside_the_orthant_is_none);
     tcase_add_test(demand, test_close_far_from_any_orbit_finds_nothing);
     tcase_add_test(demand, test_a_stop_is_heeded);
     tcase_add_test(demand, test_every_failed_allocation_is_reported);

@@ -102,8 +102,20 @@ static bool is_flat(const closed_orbit *c)
     return true;
 }
 
+/* No unsigned species falls below zero by more than the closure. */
+static bool stays_inside(const closed_orbit *c)
+{
+    const lb_network *net = c->s.system->network;
+    for (int k = 0; k < c->s.core; k++) {
+        int i = c->s.system->core_state[k];
+        if (c->low[i] < -CLOSED_CLOSURE * c->scale[i] && !net->species[net->state_species[i]].is_signed)
+            return false;
+    }
+    return true;
+}
+
 /* Extrema and closure of the orbit found; false into converged when it has shrunk to
- * a point or does not close. */
+ * a point, leaves the orthant or does not close. */
 static lb_status measure(closed_orbit *c, const lb_monitor *monitor, lb_error *err)
 {
     double *end = memory_array((size_t)c->s.n, sizeof *end);
@@ -114,7 +126,7 @@ static lb_status measure(closed_orbit *c, const lb_monitor *monitor, lb_error *e
     if (status == LB_OK) {
         orbit_scale(&c->s, c->low, c->high, c->scale);
         c->closure = space_distance(&c->s, end, c->x, c->scale);
-        c->converged = !is_flat(c) && c->closure < CLOSED_CLOSURE;
+        c->converged = !is_flat(c) && stays_inside(c) && c->closure < CLOSED_CLOSURE;
     }
     memory_free(end);
     return status;
