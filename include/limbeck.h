@@ -160,6 +160,26 @@ const int *lb_system_rows(const lb_system *system);           /* [z], ascending 
 int lb_system_laws(const lb_system *system);
 const int64_t *lb_system_law(const lb_system *system, int law);  /* [n] coefficients */
 
+/* Two engines evaluate a system: tables, which are always there, and native code, the C of
+ * lb_emit compiled by the system's compiler and loaded; they agree to rounding.  Native code
+ * pays where a small network is evaluated very often (design: below some 300 reactions). */
+typedef struct lb_native_options {
+    const char *cache;         /* folder for compiled models; NULL: $XDG_CACHE_HOME/limbeck or ~/.cache/limbeck */
+    const char *compiler;      /* a name on PATH or a path; NULL: cc */
+    const lb_monitor *monitor; /* a stop ends the compiler */
+} lb_native_options;
+
+/* Let the system use native code from now on; before it is shared and before evaluators are
+ * made.  options may be NULL.  The cache folder must be the user's own with mode 0700; a
+ * compiled model is found there again by a digest of its text, the compiler and the flags.  No
+ * shell is involved.
+ *
+ * Returns LB_E_IO with the reason when there is no native code to be had (no compiler, no safe
+ * folder), LB_E_STOPPED, LB_E_NOMEM: tables are used as before, and lb_system_engine_note says why. */
+lb_status lb_system_use_native(lb_system *system, const lb_native_options *options, lb_error *err);
+const char *lb_system_engine(const lb_system *system);       /* "tables" or "native" */
+const char *lb_system_engine_note(const lb_system *system);  /* why tables, where native code was asked for; "" */
+
 /* A system with its constants bound, and the workspace of one thread. */
 typedef struct lb_evaluator lb_evaluator;
 lb_status lb_evaluator_new(const lb_system *system, lb_evaluator **evaluator, lb_error *err);
@@ -203,8 +223,13 @@ void lb_batch_jacobian_sparse(lb_batch *batch, const double x[], double values[]
 
 /* ---- Emitted C ----------------------------------------------------------- */
 
+/* Whom the emitted C is also for: glue to that library and an example program. */
+typedef enum lb_solver { LB_SOLVER_NONE, LB_SOLVER_GSL, LB_SOLVER_CVODES } lb_solver;
+
 typedef struct lb_emit_options {
     const char *name;        /* a C identifier: prefix of all names and the files' stem */
+    lb_solver solver;
+    size_t lines;            /* a function of more terms than this runs over tables; 0: chosen (docs/emitted-code.md) */
 } lb_emit_options;
 
 /* A valid C identifier from a file's path ("bath 2.mech" gives "bath_2"); NULL

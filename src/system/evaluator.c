@@ -1,4 +1,5 @@
-/* Evaluation by tables: rates, right-hand side, Jacobian, constant derivatives.
+/* Evaluation by tables: rates, right-hand side, Jacobian, constant derivatives; where
+ * the system has native code, the public calls go there.
  *
  * Rates of power laws are products of looked-up factors, those of general laws
  * come from a program; dx/dt, J and df/dk are compressed sums over them in
@@ -7,6 +8,8 @@
 
 #include <math.h>
 #include <string.h>
+
+#include "system/native.h"
 
 /* ---- Rates ---------------------------------------------------------------------- */
 
@@ -62,6 +65,10 @@ void evaluator_step_rates(lb_evaluator *ev, const double *x, double *v)
 
 void lb_rates(lb_evaluator *ev, const double x[], double v[])
 {
+    if (ev->system->native) {
+        ev->system->native->rates(0, x, ev->k, v);
+        return;
+    }
     load_state(ev, x);
     all_rates(ev);
     memcpy(v, ev->v, (size_t)ev->system->r * sizeof *v);
@@ -72,6 +79,10 @@ void lb_rates(lb_evaluator *ev, const double x[], double v[])
 void lb_rhs(lb_evaluator *ev, const double x[], double dxdt[])
 {
     const table *t = ev->table;
+    if (ev->system->native) {
+        ev->system->native->rhs(0, x, ev->k, dxdt);
+        return;
+    }
     load_state(ev, x);
     all_rates(ev);
     for (int i = 0; i < t->n; i++) {
@@ -86,6 +97,10 @@ void evaluator_rhs_scaled(lb_evaluator *ev, const double *x, double *dxdt, doubl
 {
     const table *t = ev->table;
     lb_rhs(ev, x, dxdt);
+    if (magnitude && ev->system->native) {
+        load_state(ev, x);
+        all_rates(ev);
+    }
     for (int i = 0; magnitude && i < t->n; i++) {
         double sum = 0;
         for (int e = t->row_start[i]; e < t->row_start[i + 1]; e++)
@@ -118,6 +133,10 @@ static void all_slopes(lb_evaluator *ev)
 void lb_jacobian_sparse(lb_evaluator *ev, const double x[], double values[])
 {
     const table *t = ev->table;
+    if (ev->system->native) {
+        ev->system->native->jacobian_sparse(0, x, ev->k, values);
+        return;
+    }
     load_state(ev, x);
     all_slopes(ev);
     for (int s = 0; s < t->single_terms; s++) {
@@ -161,6 +180,10 @@ static void add_step_column(const lb_evaluator *ev, int step, int constant, doub
 void lb_dfdk(lb_evaluator *ev, const double x[], double D[])
 {
     const table *t = ev->table;
+    if (ev->system->native) {
+        ev->system->native->dfdk(0, x, ev->k, D);
+        return;
+    }
     load_state(ev, x);
     all_rates(ev);
     power_law_rates(t, ev->x, t->ones, ev->unit);

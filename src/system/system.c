@@ -1,9 +1,12 @@
 /* The system: pattern, tables, core and laws of one network, put together. */
 #include "system/system.h"
 
+#include <stdio.h>
+
 #include "base/memory.h"
 #include "base/status.h"
 #include "system/core.h"
+#include "system/native.h"
 #include "system/table.h"
 
 void lb_system_free(lb_system *system)
@@ -11,6 +14,7 @@ void lb_system_free(lb_system *system)
     if (!system)
         return;
     table_free(system->table);
+    native_free(system->native);
     conservation_clear(&system->laws);
     conservation_clear(&system->core_laws);
     void *blocks[] = {system->column_start, system->row, system->core_state, system->core_index, system->core_step,
@@ -104,6 +108,28 @@ lb_status system_require_laws(const lb_system *system, lb_error *err)
         return LB_OK;
     return status_raise(err, LB_E_LIMIT, "a time course can still be run",
                         "the conservation laws of this network are beyond what is supported");
+}
+
+lb_status lb_system_use_native(lb_system *system, const lb_native_options *options, lb_error *err)
+{
+    lb_error reason = {.code = LB_OK};
+    if (system->native)
+        return LB_OK;
+    lb_status status = native_load(system->network, system->column_start, system->row, options, &system->native, &reason);
+    snprintf(system->engine_note, sizeof system->engine_note, "%s", status == LB_OK ? "" : reason.message);
+    if (status != LB_OK && err)
+        *err = reason;
+    return status;
+}
+
+const char *lb_system_engine(const lb_system *system)
+{
+    return system->native ? "native" : "tables";
+}
+
+const char *lb_system_engine_note(const lb_system *system)
+{
+    return system->engine_note;
 }
 
 int lb_system_nonzeros(const lb_system *system)

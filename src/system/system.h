@@ -43,6 +43,8 @@ struct lb_system {
     double *fixed_weight;           /* [fixed_count*n] row w of each: w x is conserved, w has 1 at the species
                                      * and 0 at all others set aside */
     struct table *table;            /* system/table.h */
+    struct native *native;          /* system/native.h; NULL: tables are used */
+    char engine_note[sizeof ((lb_error *)0)->message]; /* why native code is not, though asked for; "" */
 };
 
 /* LB_OK, or LB_E_LIMIT with a message when the laws are not known: the first question of
