@@ -208,6 +208,7 @@ static bool apply(options *o, const option_spec *spec, const char *value)
             return false;
         o->samples = (size_t)number;
         return true;
+    case OPTION_NATIVE: o->native = true; return true;
     case OPTION_SECONDS: return read_positive(o, spec, value, most_seconds, &o->seconds);
     }
     return false;

@@ -13,7 +13,7 @@ typedef struct command command;
 typedef enum option_id {
     OPTION_JSON, OPTION_SET, OPTION_SEED, OPTION_QUIET, OPTION_HELP, OPTION_VERSION,
     OPTION_UNTIL, OPTION_EVERY, OPTION_TOLERANCE, OPTION_OUTPUT, OPTION_NAME,
-    OPTION_SCOPE, OPTION_SAMPLES, OPTION_SECONDS
+    OPTION_SCOPE, OPTION_SAMPLES, OPTION_SECONDS, OPTION_NATIVE
 } option_id;
 
 typedef struct option_spec {
@@ -38,8 +38,13 @@ typedef struct options {
     bool given, ranges;                 /* scopes; both when nothing was said */
     size_t samples;                     /* 0: not given */
     double seconds;                     /* 0: not given */
+    bool native;                        /* compile the model and load it */
     lb_error problem;                   /* what is wrong with the command line */
 } options;
+
+/* --native, of the commands that evaluate the system. */
+#define OPTION_NATIVE_SPEC \
+    {OPTION_NATIVE, "--native", 0, NULL, "compile the model with cc, for long work; without a compiler, tables as ever"}
 
 /* Options that every command takes. */
 const option_spec *options_common(size_t *count);

@@ -94,6 +94,7 @@ static const option_spec own[] = {
     {OPTION_SAMPLES, "--samples", 0, "N", "how many sets of constants to try in the ranges"},
     {OPTION_SECONDS, "--seconds", 0, "X", "stop the search after so long"},
     {OPTION_OUTPUT, "--output", 'o', "FILE", "write the witness, a mechanism that oscillates, to FILE"},
+    OPTION_NATIVE_SPEC,
 };
 
 const command command_oscillate = {

@@ -119,6 +119,8 @@ static int run(const options *given)
     return result;
 }
 
+static const option_spec own[] = {OPTION_NATIVE_SPEC};
+
 const command command_page = {
     .name = "",
     .usage = "FILE [options]",
@@ -130,5 +132,7 @@ const command command_page = {
                 "  limbeck bath.mech --set '[B]=1.7'\n"
                 "  limbeck bath.mech --json\n"
                 "  limbeck - < bath.mech\n",
+    .own = own,
+    .own_count = sizeof own / sizeof *own,
     .run = run,
 };

@@ -133,6 +133,7 @@ static const option_spec own[] = {
     {OPTION_EVERY, "--every", 0, "TIME", "time between rows (a 200th of the whole)"},
     {OPTION_TOLERANCE, "--tolerance", 0, "X", "relative tolerance of the integration (1e-8)"},
     {OPTION_OUTPUT, "--output", 'o', "FILE", "write the CSV to FILE instead of standard output"},
+    OPTION_NATIVE_SPEC,
 };
 
 const command command_run = {

@@ -110,6 +110,23 @@ int session_open(session *s, const options *given)
     }
 }
 
+/* The model compiled, if it can be; if not, the tables answer, and a note says why. */
+static int use_native(session *s)
+{
+    lb_error error = {.code = LB_OK};
+    lb_native_options native_options = {.monitor = &s->monitor};
+    lb_status status = lb_system_use_native(s->system, &native_options, &error);
+    terminal_done(&s->progress);
+    if (status == LB_E_STOPPED || status == LB_E_NOMEM)
+        return session_fail(s, &error);
+    if (status != LB_OK) {
+        session_note(s, "the model is not compiled, its tables are used: %s", error.message);
+        if (*error.remedy)
+            session_note(s, "%s", error.remedy);
+    }
+    return EXIT_ANSWERED;
+}
+
 int session_open_system(session *s, const options *given)
 {
     int result = session_open(s, given);
@@ -118,7 +135,7 @@ int session_open_system(session *s, const options *given)
     lb_error error;
     if (lb_system_new(s->network, &s->system, &error) != LB_OK)
         return session_fail(s, &error);
-    return EXIT_ANSWERED;
+    return given->native ? use_native(s) : EXIT_ANSWERED;
 }
 
 void session_close(session *s)

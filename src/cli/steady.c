@@ -33,6 +33,8 @@ static int run(const options *given)
     return result;
 }
 
+static const option_spec own[] = {OPTION_NATIVE_SPEC};
+
 const command command_steady = {
     .name = "steady",
     .usage = "steady FILE [options]",
@@ -43,5 +45,7 @@ const command command_steady = {
     .examples = "  limbeck steady bath.mech\n"
                 "  limbeck steady bath.mech --set '[B]=1.7'\n"
                 "  limbeck steady bath.mech --json\n",
+    .own = own,
+    .own_count = sizeof own / sizeof *own,
     .run = run,
 };

@@ -188,3 +188,9 @@ lb_status lb_json_error(const char *command, const char *file, const lb_error *e
     json_put_error(&w, error, diagnostics);
     return json_finish(&w, out);
 }
+
+void json_put_engine(json_writer *w, const lb_system *system)
+{
+    json_put(w, w->root, "engine", json_text(lb_system_engine(system)));
+    json_put(w, w->root, "engine_note", json_text(lb_system_engine_note(system)));
+}

@@ -40,6 +40,9 @@ json_t *json_flagged(json_writer *w, const lb_network *net, const bool *flag);
 /* The keys of `error`, also beside what a failed command has to show. */
 void json_put_error(json_writer *w, const lb_error *error, const lb_diagnostics *diagnostics);
 
+/* The keys of the engine that evaluated the system. */
+void json_put_engine(json_writer *w, const lb_system *system);
+
 /* The keys of each command, put into the root object. */
 void json_put_check(json_writer *w, const lb_network *net);
 void json_put_steady(json_writer *w, const lb_system *system, const lb_steady *steady);

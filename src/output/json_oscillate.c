@@ -96,6 +96,7 @@ lb_status lb_json_oscillate(const lb_system *system, const lb_diagnostics *diagn
     json_writer w;
     json_begin(&w, "oscillate", system->network->file, diagnostics);
     json_put_oscillate(&w, system, oscillate);
+    json_put_engine(&w, system);
     return json_finish(&w, out);
 }
 
@@ -108,5 +109,6 @@ lb_status lb_json_page(const lb_system *system, const lb_diagnostics *diagnostic
     if (oscillate->steady)
         json_put_steady(&w, system, oscillate->steady);
     json_put_oscillate(&w, system, oscillate);
+    json_put_engine(&w, system);
     return json_finish(&w, out);
 }

@@ -32,6 +32,7 @@ lb_status lb_json_run(const lb_system *system, const lb_diagnostics *diagnostics
     json_put(&w, w.root, "steps", json_count(run->steps));
     json_put(&w, w.root, "rejected", json_count(run->rejected));
     json_put(&w, w.root, "interrupted", json_boolean(run->interrupted));
+    json_put_engine(&w, system);
     if (error)
         json_put_error(&w, error, NULL);
     return json_finish(&w, out);

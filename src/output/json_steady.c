@@ -75,5 +75,6 @@ lb_status lb_json_steady(const lb_system *system, const lb_diagnostics *diagnost
     json_writer w;
     json_begin(&w, "steady", system->network->file, diagnostics);
     json_put_steady(&w, system, steady);
+    json_put_engine(&w, system);
     return json_finish(&w, out);
 }
