@@ -130,17 +130,12 @@ static void write_confirmation(buffer *out, const lb_layout *layout, const lb_cy
     char closure[LAYOUT_NUMBER], confirmed[LAYOUT_NUMBER];
     layout_number(cycle->closure, 2, closure);
     layout_number(cycle->confirmed, 2, confirmed);
-    buffer text;
-    buffer_init(&text);
-    buffer_printf(&text, "The orbit closes to %s of its swing", closure);
     if (isnan(cycle->confirmed))
-        buffer_append(&text, "; it was not confirmed on a second path.");
+        layout_printf(out, layout, 2, "Closed to %s of its swing; not confirmed on a second path.", closure);
     else
-        buffer_printf(&text, ", and a second path gives the same period to %s.", confirmed);
+        layout_printf(out, layout, 2, "Closed to %s of its swing; same period on a second path to %s.", closure, confirmed);
     if (cycle->method && *cycle->method)
-        buffer_printf(&text, " Method: %s.", cycle->method);
-    layout_printf(out, layout, 2, "%s", buffer_get(&text));
-    layout_end(&text, out);
+        layout_printf(out, layout, 2, "Method: %s.", cycle->method);
 }
 
 /* The constants that a search may turn: the witness's, the file's, the range. */

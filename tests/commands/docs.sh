@@ -4,7 +4,7 @@ source=$PWD
 ln -s "$source/networks" "$source/tests" "$SCRATCH"
 cd "$SCRATCH"
 mkdir build
-mask() { sed -E 's/[0-9]+ starts, [0-9]+ conv/# starts, # conv/; s/(closes to|balanced to|period to) [0-9][-0-9.e]*[0-9]/\1 #/; s/(\.[0-9]{6})[0-9]+/\1/g'; }
+mask() { sed -E 's/[0-9]+ starts, [0-9]+ conv/# starts, # conv/; s/(Closed to|balanced to|path to) [0-9]+([.][0-9]+)?(e-?[0-9]+)?/\1 #/g; s/(\.[0-9]{6})[0-9]+/\1/g'; }
 run_example() {
     COLUMNS=80 eval "limbeck $1" >out 2>err </dev/null
     mask <err >shown

@@ -1,4 +1,4 @@
-mask() { sed -E 's/[0-9]+ starts, [0-9]+ conv/# starts, # conv/; s/(closes to|balanced to|period to) [0-9][-0-9.e]*[0-9]/\1 #/'; }
+mask() { sed -E 's/[0-9]+ starts, [0-9]+ conv/# starts, # conv/; s/(Closed to|balanced to|path to) [0-9]+([.][0-9]+)?(e-?[0-9]+)?/\1 #/g'; }
 try oscillate --quiet networks/brusselator.mech --scope given | mask
 try oscillate --quiet networks/brusselator.mech --set '[B]=1.7' -o "$SCRATCH/witness.mech" | mask
 grep -c . "$SCRATCH/witness.mech"

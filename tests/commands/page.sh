@@ -1,5 +1,5 @@
 # The page; figures that are rounding noise are masked.
-mask() { sed -E 's/[0-9]+ starts, [0-9]+ conv/# starts, # conv/; s/(closes to|balanced to|period to) [0-9][-0-9.e]*[0-9]/\1 #/'; }
+mask() { sed -E 's/[0-9]+ starts, [0-9]+ conv/# starts, # conv/; s/(Closed to|balanced to|path to) [0-9]+([.][0-9]+)?(e-?[0-9]+)?/\1 #/g'; }
 page() { try "$@" --quiet | mask; }
 page networks/demo.mech
 page networks/brusselator.mech --set '[B]=1.7'
