@@ -415,7 +415,7 @@ lb_status lb_text_steady(const lb_system *system, const lb_steady *steady, const
 lb_status lb_text_oscillate(const lb_system *system, const lb_oscillate *oscillate, const lb_layout *layout, lb_text *out);
 /* The one-page answer: what the mechanism is, what it conserves, where it rests, whether it oscillates. */
 lb_status lb_text_page(const lb_system *system, const lb_oscillate *oscillate, const lb_layout *layout, lb_text *out);
-/* CSV with units in the header, 17 significant digits. */
+/* CSV with units in the header, numbers in the shortest form that reads back to the same bits. */
 lb_status lb_csv_run(const lb_system *system, const lb_run *run, lb_text *out);
 
 /* One JSON object (docs/json.md), ending in a newline. */

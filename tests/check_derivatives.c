@@ -316,24 +316,24 @@ static void check_outside(bench *b, const emitted_model *model, int network)
 
 /* ---- Tests ------------------------------------------------------------------------------- */
 
-static void load_batch(emitted_folder *folder, int first)
+/* lines: 1 has every function run over tables. */
+static void load_batch(emitted_folder *folder, int first, size_t lines)
 {
     for (int i = first; i < first + BATCH; i++) {
         char name[32];
         snprintf(name, sizeof name, "m%d", i);
         lb_network *net = random_network((uint64_t)i);
         ck_assert(net != NULL);
-        emitted_write(folder, net, name);
+        emitted_write_as(folder, net, &(lb_emit_options){.name = name, .lines = lines});
         lb_network_free(net);
     }
     emitted_load(folder, "-O0");
 }
 
-START_TEST(test_tables_and_emitted_c_agree_with_complex_steps)
+static void compare_batch(int first, size_t lines)
 {
     emitted_folder folder = emitted_begin();
-    int first = _i * BATCH;
-    load_batch(&folder, first);
+    load_batch(&folder, first, lines);
     for (int i = first; i < first + BATCH; i++) {
         char name[32];
         snprintf(name, sizeof name, "m%d", i);
@@ -345,6 +345,17 @@ START_TEST(test_tables_and_emitted_c_agree_with_complex_steps)
     }
     emitted_end(&folder);
 }
+
+START_TEST(test_tables_and_emitted_c_agree_with_complex_steps)
+{
+    compare_batch(_i * BATCH, 0);
+}
+END_TEST
+
+START_TEST(test_emitted_loops_agree_with_complex_steps)
+{
+    compare_batch(_i * BATCH, 1);
+}
 END_TEST
 
 /* More steps than one function holds, at every level of grouping. */
@@ -352,7 +363,7 @@ START_TEST(test_large_emitted_networks_agree_with_tables)
 {
     emitted_folder folder = emitted_begin();
     lb_network *net = random_mass_action(7, 700, 1500);
-    emitted_write(&folder, net, "large");
+    emitted_write_as(&folder, net, &(lb_emit_options){.name = "large", .lines = _i ? 0 : 1000000});
     emitted_load(&folder, "-O0");
     emitted_model model = emitted_find(&folder, "large");
     bench b = bench_new(net);
@@ -405,7 +416,8 @@ Suite *derivatives_suite(void)
     tcase_set_timeout(tcase, 300);
     tcase_add_test(tcase, test_random_networks_have_every_kind_of_rate);
     tcase_add_loop_test(tcase, test_tables_and_emitted_c_agree_with_complex_steps, 0, NETWORKS / BATCH);
-    tcase_add_test(tcase, test_large_emitted_networks_agree_with_tables);
+    tcase_add_loop_test(tcase, test_emitted_loops_agree_with_complex_steps, 0, NETWORKS / BATCH);
+    tcase_add_loop_test(tcase, test_large_emitted_networks_agree_with_tables, 0, 2);
     suite_add_tcase(suite, tcase);
     return suite;
 }

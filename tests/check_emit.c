@@ -43,7 +43,7 @@ static void emit_texts(const lb_network *net, const char *name, lb_text **header
     lb_error err = {.code = LB_OK};
     *header = lb_text_new();
     *source = lb_text_new();
-    ck_assert_msg(lb_emit(net, &(lb_emit_options){name}, *header, *source, &err) == LB_OK, "%s", err.message);
+    ck_assert_msg(lb_emit(net, &(lb_emit_options){.name = name}, *header, *source, &err) == LB_OK, "%s", err.message);
 }
 
 static int compile(const emitted_folder *folder, const char *compiler, const char *file, char **output)
@@ -217,13 +217,35 @@ START_TEST(test_no_function_is_longer_than_some_fifty_statements)
 }
 END_TEST
 
-/* A function of 3000 reactions as one piece takes compilers a minute. */
-START_TEST(test_three_thousand_reactions_compile_in_seconds)
+static void emit_lines(const lb_network *net, size_t lines, lb_text **header, lb_text **source)
 {
-    emitted_folder folder = emitted_begin();
+    lb_error err = {.code = LB_OK};
+    lb_emit_options options = {.name = "large", .lines = lines};
+    *header = lb_text_new();
+    *source = lb_text_new();
+    ck_assert_msg(lb_emit(net, &options, *header, *source, &err) == LB_OK, "%s", err.message);
+}
+
+/* A function of 3000 reactions as one piece takes compilers a minute. */
+START_TEST(test_three_thousand_reactions_in_lines_are_cut)
+{
     lb_network *net = random_mass_action(1, 1000, 3000);
     lb_text *header, *source;
-    emit_texts(net, "large", &header, &source);
+    emit_lines(net, SIZE_MAX, &header, &source);
+    ck_assert_int_le(longest_function(lb_text_get(source, NULL)), 60);
+    lb_text_free(header);
+    lb_text_free(source);
+    lb_network_free(net);
+}
+END_TEST
+
+/* In lines they take minutes, however they are cut. */
+START_TEST(test_thirty_thousand_reactions_compile_in_seconds)
+{
+    emitted_folder folder = emitted_begin();
+    lb_network *net = random_mass_action(1, 10000, 30000);
+    lb_text *header, *source;
+    emit_lines(net, 0, &header, &source);
     ck_assert_int_le(longest_function(lb_text_get(source, NULL)), 60);
     emitted_write_file(&folder, "large.h", lb_text_get(header, NULL));
     emitted_write_file(&folder, "large.c", lb_text_get(source, NULL));
@@ -492,7 +514,7 @@ START_TEST(test_names_that_are_no_identifiers_are_refused)
     for (size_t i = 0; i < sizeof wrong / sizeof *wrong; i++) {
         lb_text *header = lb_text_new(), *source = lb_text_new();
         lb_error err = {.code = LB_OK};
-        ck_assert_int_eq(lb_emit(net, &(lb_emit_options){wrong[i]}, header, source, &err), LB_E_ARG);
+        ck_assert_int_eq(lb_emit(net, &(lb_emit_options){.name = wrong[i]}, header, source, &err), LB_E_ARG);
         ck_assert_str_ne(err.message, "");
         ck_assert_str_ne(err.remedy, "");
         ck_assert_str_eq(lb_text_get(source, NULL), "");
@@ -513,7 +535,7 @@ START_TEST(test_every_failing_allocation_is_reported)
         lb_text *header = lb_text_new(), *source = lb_text_new();
         lb_error err = {.code = LB_OK};
         memory_fail_after(k);
-        lb_status status = lb_emit(net, &(lb_emit_options){"m"}, header, source, &err);
+        lb_status status = lb_emit(net, &(lb_emit_options){.name = "m", .lines = _i ? 1 : 0}, header, source, &err);
         memory_fail_after(-1);
         finished = status == LB_OK;
         ck_assert(finished || (status == LB_E_NOMEM && err.code == LB_E_NOMEM));
@@ -585,7 +607,8 @@ Suite *emit_suite(void)
     tcase_add_test(compiling, test_networks_without_constants_or_derivatives_are_valid_c);
     tcase_add_test(compiling, test_cplusplus_programs_link_with_the_model);
     tcase_add_test(compiling, test_no_function_is_longer_than_some_fifty_statements);
-    tcase_add_test(compiling, test_three_thousand_reactions_compile_in_seconds);
+    tcase_add_test(compiling, test_three_thousand_reactions_in_lines_are_cut);
+    tcase_add_test(compiling, test_thirty_thousand_reactions_compile_in_seconds);
     tcase_add_loop_test(compiling, test_deep_rate_laws_compile, 0, 2);
     TCase *names = new_case(suite, "names");
     tcase_add_test(names, test_hostile_names_stay_in_strings_and_comments);
@@ -594,7 +617,7 @@ Suite *emit_suite(void)
     tcase_add_test(names, test_file_names_become_identifiers);
     tcase_add_test(names, test_names_that_are_no_identifiers_are_refused);
     TCase *other = new_case(suite, "memory and documentation");
-    tcase_add_test(other, test_every_failing_allocation_is_reported);
+    tcase_add_loop_test(other, test_every_failing_allocation_is_reported, 0, 2);
     tcase_add_test(other, test_example_of_the_documentation_prints_what_it_says);
     return suite;
 }

@@ -57,14 +57,18 @@ void emitted_write_file(const emitted_folder *folder, const char *file, const ch
 
 void emitted_write(const emitted_folder *folder, const lb_network *net, const char *name)
 {
+    emitted_write_as(folder, net, &(lb_emit_options){.name = name});
+}
+
+void emitted_write_as(const emitted_folder *folder, const lb_network *net, const lb_emit_options *options)
+{
     lb_text *header = lb_text_new(), *source = lb_text_new();
     lb_error err = {.code = LB_OK};
-    lb_emit_options options = {.name = name};
-    ck_assert_msg(lb_emit(net, &options, header, source, &err) == LB_OK, "%s", err.message);
+    ck_assert_msg(lb_emit(net, options, header, source, &err) == LB_OK, "%s", err.message);
     char file[FILE_NAME];
-    snprintf(file, sizeof file, "%s.h", name);
+    snprintf(file, sizeof file, "%s.h", options->name);
     emitted_write_file(folder, file, lb_text_get(header, NULL));
-    snprintf(file, sizeof file, "%s.c", name);
+    snprintf(file, sizeof file, "%s.c", options->name);
     emitted_write_file(folder, file, lb_text_get(source, NULL));
     lb_text_free(header);
     lb_text_free(source);

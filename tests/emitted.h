@@ -26,6 +26,7 @@ void emitted_end(emitted_folder *folder);
 
 /* Write NAME.h and NAME.c of the network, or any other text. */
 void emitted_write(const emitted_folder *folder, const lb_network *net, const char *name);
+void emitted_write_as(const emitted_folder *folder, const lb_network *net, const lb_emit_options *options);
 void emitted_write_file(const emitted_folder *folder, const char *file, const char *text);
 
 /* Run a program in the folder, by its name and NULL-terminated arguments; its exit

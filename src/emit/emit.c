@@ -428,6 +428,7 @@ lb_status lb_emit(const lb_network *network, const lb_emit_options *options, lb_
                             "`%.100s` cannot be the name of C functions", name);
     function_file file;
     lb_status status = file_init(&file, network, name);
+    file.lines = options->lines > 0 ? options->lines : FUNCTION_LINES;
     if (status == LB_OK)
         status = function_rates(&file);
     if (status == LB_OK)

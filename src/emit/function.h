@@ -6,10 +6,14 @@
 #include "emit/sums.h"
 #include "emit/write.h"
 
+/* Unless told otherwise, a function whose sums have more terms than this runs over tables. */
+enum { FUNCTION_LINES = 2000 };
+
 /* What the functions of one file have in common. */
 typedef struct function_file {
     const lb_network *net;
     const char *name;                    /* prefix */
+    size_t lines;                        /* terms of a function without tables */
     expression_graph graph;              /* the network's and the derivatives */
     sums_pattern pattern;
     char **definition_name;              /* local names of derived constants, then of readings */

@@ -357,7 +357,16 @@ static lb_status number_locals(plan *p)
     return LB_OK;
 }
 
-lb_status plan_make(const expression_graph *graph, const sums *s, const unsigned char *is_defined, plan *p)
+/* All locals into the array. */
+static void share_locals(plan *p, const int *uses)
+{
+    for (size_t e = 0; e < p->nodes; e++)
+        if (p->is_local[e] && uses[e] > 0)
+            p->home[e] = PLAN_SHARED;
+}
+
+lb_status plan_make(const expression_graph *graph, const sums *s, const unsigned char *is_defined, bool is_table,
+                    plan *p)
 {
     struct work w = {.graph = graph, .is_defined = is_defined};
     memset(p, 0, sizeof *p);
@@ -371,7 +380,10 @@ lb_status plan_make(const expression_graph *graph, const sums *s, const unsigned
     }
     if (status == LB_OK) {
         cut_blocks(p, &w);
-        find_homes(p, graph);
+        if (is_table)
+            share_locals(p, w.uses);
+        else
+            find_homes(p, graph);
         status = list_locals(p);
     }
     if (status == LB_OK)

@@ -29,8 +29,10 @@ typedef struct plan {
 } plan;
 
 /* is_defined [nodes]: the node is a definition of the file, which always has its
- * own name.  LB_OK or LB_E_NOMEM; plan_clear after both. */
-lb_status plan_make(const expression_graph *graph, const sums *s, const unsigned char *is_defined, plan *p);
+ * own name.  is_table: the items of s (without terms) are what tables need, each
+ * defined, and every local is shared.  LB_OK or LB_E_NOMEM; plan_clear after both. */
+lb_status plan_make(const expression_graph *graph, const sums *s, const unsigned char *is_defined, bool is_table,
+                    plan *p);
 void plan_clear(plan *p);
 
 #endif

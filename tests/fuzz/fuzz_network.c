@@ -38,7 +38,7 @@ static void evaluate(const lb_network *network)
 static void write_all(const lb_network *network, const lb_diagnostics *list)
 {
     lb_layout layout = {80, false};
-    lb_emit_options options = {"fuzz"};
+    lb_emit_options options = {.name = "fuzz"};
     lb_error error;
     lb_text *page = lb_text_new(), *json = lb_text_new(), *header = lb_text_new(), *code = lb_text_new();
     if (!page || !json || !header || !code)
