@@ -60,7 +60,7 @@ static int solve(session *s)
     if (!given->given && !session_has_range(s)) {
         error = (lb_error){.code = LB_E_ARG,
                            .message = "no constant of this mechanism has a range to search",
-                           .remedy = "give some one: k2 = 1 s^-1 in 0.1 .. 10"};
+                           .remedy = "give a constant one: `k2 = 1 s^-1 in 0.1 .. 10`"};
         return session_fail_usage(s, &error);
     }
     lb_oscillate_options oscillate_options = {

@@ -266,8 +266,8 @@ static lb_status check_sign(const lower_plain *p, const lb_setting *s, lb_error 
     bool is_good = p->sign == SIGN_ANY || (p->sign == SIGN_NOT_NEGATIVE ? p->stored >= 0 : p->stored > 0);
     return is_good
                ? LB_OK
-               : status_raise(err, LB_E_ARG, NULL, "`%s` cannot be set to `%s`: a %s is %s", p->name, s->value,
-                              p->sign_why, p->sign == SIGN_POSITIVE ? "positive" : "not negative");
+               : status_raise(err, LB_E_ARG, NULL, "`%s` cannot be set to `%s`: a%s %s is %s", p->name, s->value,
+                              strchr("aeiou", p->sign_why[0]) ? "n" : "", p->sign_why, p->sign == SIGN_POSITIVE ? "positive" : "not negative");
 }
 
 lb_status lower_check_settings(lower *l, lb_error *err)

@@ -1,11 +1,12 @@
 /* Time courses as comma-separated values (RFC 4180, with plain line feeds): a
- * heading with units, then one row per time with 17 significant digits, so that
- * reading the numbers back gives the same bits. */
+ * heading with units, then one row per time, each number in the shortest form
+ * that gives the same bits when it is read back. */
 #include <math.h>
 #include <string.h>
 
 #include "base/buffer.h"
 #include "limbeck.h"
+#include "model/expression.h"
 #include "output/describe.h"
 #include "output/layout.h"
 #include "system/system.h"
@@ -43,7 +44,7 @@ static void append_value(buffer *out, double value)
 {
     buffer_char(out, ',');
     if (isfinite(value))
-        buffer_printf(out, "%.17g", value);
+        expression_write_number(value, out);
 }
 
 static void append_headings(buffer *out, const lb_network *net)
@@ -65,7 +66,7 @@ lb_status lb_csv_run(const lb_system *system, const lb_run *run, lb_text *out)
 {
     append_headings(out, system->network);
     for (size_t row = 0; row < run->rows; row++) {
-        buffer_printf(out, "%.17g", run->t[row]);
+        expression_write_number(run->t[row], out);
         for (int i = 0; i < run->states; i++)
             append_value(out, run->x[row * (size_t)run->states + (size_t)i]);
         for (int i = 0; i < run->readings; i++)
