@@ -15,6 +15,7 @@
 
 #define LOOSE 1e-7                /* tolerance of the loops that only show the way */
 #define FLAT 1e-8                 /* largest relative swing below which there is only noise */
+#define LOOSE_GOAL 1e-5           /* residual of the shooting with that tolerance */
 #define STIFF_RATIO 12            /* the stiff method does this many times the work of a step */
 
 static lb_status prepare(closed_orbit *c, lb_evaluator *evaluator, const double *x, lb_error *err)
@@ -65,18 +66,29 @@ static lb_status survey(closed_orbit *c, const lb_monitor *monitor, lb_error *er
     orbit_scale(&c->s, c->low, c->high, c->scale);
     options.method = LB_METHOD_EXPLICIT;
     options.max_steps = STIFF_RATIO * steps;
-    status = orbit_measure(&c->s, c->x, c->period, &options, c->low, c->high, NULL, NULL, err);
+    status = orbit_follow(&c->s, c->x, c->period, &options, err);
     c->method = status == LB_OK ? LB_METHOD_EXPLICIT : LB_METHOD_STIFF;
     return closed_is_fatal(status) ? status : LB_OK;
 }
 
-static lb_status shoot(closed_orbit *c, const lb_monitor *monitor, lb_error *err)
+static lb_status shoot_with(closed_orbit *c, double tolerance, double goal, const lb_monitor *monitor, lb_error *err)
 {
-    orbit_options options = closed_options(c, c->tolerance, monitor);
+    orbit_options options = closed_options(c, tolerance, monitor);
     shooting_clear(&c->shot);
-    lb_status status = shooting_close(&c->s, c->x, &c->period, c->scale, NULL, CLOSED_GOAL, &options, &c->shot, err);
+    lb_status status = shooting_close(&c->s, c->x, &c->period, c->scale, NULL, goal, &options, &c->shot, err);
     c->converged = status == LB_OK && c->shot.converged;
     return status;
+}
+
+/* Most of the way with a loose tolerance, at a fraction of the cost, then the rest;
+ * but an orbit through a given point of a family would slide off it. */
+static lb_status shoot(closed_orbit *c, bool keeps_start, const lb_monitor *monitor, lb_error *err)
+{
+    lb_status status = LB_OK;
+    c->converged = true;
+    if (!keeps_start)
+        status = shoot_with(c, fmax(LOOSE, c->tolerance), LOOSE_GOAL, monitor, err);
+    return c->converged ? shoot_with(c, c->tolerance, CLOSED_GOAL, monitor, err) : status;
 }
 
 /* Replace the period by the least one. */
@@ -88,7 +100,7 @@ static lb_status reduce_period(closed_orbit *c, const lb_monitor *monitor, lb_er
     if (status != LB_OK || divisor == 1)
         return status;
     c->period /= divisor;
-    return shoot(c, monitor, err);
+    return shoot(c, true, monitor, err);
 }
 
 /* No species moves by more than noise: the orbit has shrunk to a steady state. */
@@ -150,7 +162,7 @@ static lb_status judge(closed_orbit *c, lb_error *err)
     return LB_OK;
 }
 
-static lb_status close_and_judge(closed_orbit *c, const lb_monitor *monitor, lb_error *err)
+static lb_status close_and_judge(closed_orbit *c, bool keeps_start, const lb_monitor *monitor, lb_error *err)
 {
     lb_status status = survey(c, monitor, err);
     if (status == LB_OK) {
@@ -158,7 +170,7 @@ static lb_status close_and_judge(closed_orbit *c, const lb_monitor *monitor, lb_
         status = orbit_phase(&c->s, c->x, c->period, c->scale, &options, err);
     }
     if (status == LB_OK)
-        status = shoot(c, monitor, err);
+        status = shoot(c, keeps_start, monitor, err);
     if (status == LB_OK && c->converged)
         status = reduce_period(c, monitor, err);
     if (status == LB_OK && c->converged)
@@ -169,7 +181,7 @@ static lb_status close_and_judge(closed_orbit *c, const lb_monitor *monitor, lb_
 }
 
 lb_status closed_find(closed_orbit *c, lb_evaluator *evaluator, const double *x, double period,
-                      double tolerance, const lb_monitor *monitor, lb_error *err)
+                      bool keeps_start, double tolerance, const lb_monitor *monitor, lb_error *err)
 {
     lb_status status = prepare(c, evaluator, x, err);
     if (status != LB_OK)
@@ -178,7 +190,7 @@ lb_status closed_find(closed_orbit *c, lb_evaluator *evaluator, const double *x,
     c->tolerance = tolerance;
     if (c->s.rank < 2)
         return LB_OK;
-    status = close_and_judge(c, monitor, err);
+    status = close_and_judge(c, keeps_start, monitor, err);
     if (status != LB_OK)
         c->converged = false;
     return closed_is_fatal(status) ? status : LB_OK;

@@ -27,11 +27,12 @@ typedef struct closed_orbit {
     lb_answer stable;
 } closed_orbit;
 
-/* Close the orbit near x [n] with a period near `period`.  An orbit that shrinks to
+/* Close the orbit near x [n] with a period near `period`; keeps_start: of a family, the
+ * one through x.  An orbit that shrinks to
  * a point, or another one far away, is not converged.  closed_clear also after an
  * error (LB_E_NOMEM, LB_E_STOPPED). */
 lb_status closed_find(closed_orbit *c, lb_evaluator *evaluator, const double *x, double period,
-                      double tolerance, const lb_monitor *monitor, lb_error *err);
+                      bool keeps_start, double tolerance, const lb_monitor *monitor, lb_error *err);
 void closed_clear(closed_orbit *c);
 
 /* A failed integration means only that there is no orbit to be had: true for the

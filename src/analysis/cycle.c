@@ -332,7 +332,8 @@ static lb_status report_centre(explorer *e, const closed_orbit *orbit, lb_error 
     const lb_monitor *monitor = e->options->monitor;
     double difference;
     closed_orbit own;
-    lb_status status = closed_find(&own, e->s.evaluator, e->x0, orbit->period, e->closing_tolerance, monitor, err);
+    lb_status status = closed_find(&own, e->s.evaluator, e->x0, orbit->period, true, e->closing_tolerance, monitor,
+                                   err);
     const closed_orbit *best = own.converged ? &own : orbit;
     if (status == LB_OK)
         status = confirm_period(best, true, monitor, &difference, err);
@@ -362,7 +363,7 @@ static lb_status try_to_close(explorer *e, int loops, lb_error *err)
     const section_return *newest = section_back(&e->section, 0);
     double period = newest->t - section_back(&e->section, (size_t)loops)->t;
     closed_orbit orbit;
-    lb_status status = closed_find(&orbit, e->s.evaluator, newest->x, period, e->closing_tolerance,
+    lb_status status = closed_find(&orbit, e->s.evaluator, newest->x, period, false, e->closing_tolerance,
                                    e->options->monitor, err);
     if (status == LB_OK && orbit.converged)
         status = judge_orbit(e, &orbit, err);
@@ -504,7 +505,7 @@ lb_status cycle_close(lb_evaluator *evaluator, const double *x0, double period, 
     double confirmed = NAN;
     closed_orbit orbit;
     *out = NULL;
-    lb_status status = closed_find(&orbit, evaluator, x0, period, tolerance, monitor, err);
+    lb_status status = closed_find(&orbit, evaluator, x0, period, true, tolerance, monitor, err);
     if (status == LB_OK && orbit.converged)
         status = confirm_period(&orbit, orbit.stable == LB_UNDECIDED, monitor, &confirmed, err);
     if (status == LB_OK && orbit.converged)

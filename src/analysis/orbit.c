@@ -157,6 +157,16 @@ lb_status orbit_measure(const space *s, const double *x, double period, const or
     return status;
 }
 
+lb_status orbit_follow(const space *s, const double *x, double period, const orbit_options *options, lb_error *err)
+{
+    loop l;
+    lb_status status = loop_start(&l, s, x, options, err);
+    if (status == LB_OK)
+        status = integrator_to(l.turning.it, period, err);
+    loop_clear(&l);
+    return status;
+}
+
 void orbit_scale(const space *s, const double *low, const double *high, double *scale)
 {
     double relative = 0;

@@ -31,6 +31,10 @@ lb_status orbit_turn(const orbit_turning *turning, int i, double ta, double fa, 
 lb_status orbit_measure(const space *s, const double *x, double period, const orbit_options *options,
                         double *low, double *high, double *end, size_t *steps, lb_error *err);
 
+/* Follow the flow from x [n] for one period and nothing else; LB_E_STEP when that takes
+ * more than options->max_steps. */
+lb_status orbit_follow(const space *s, const double *x, double period, const orbit_options *options, lb_error *err);
+
 /* Lengths [n] to measure distances on an orbit with: the swing of each species,
  * but at least a hundredth of the largest relative swing times its magnitude, so
  * that a species that hardly moves is not judged by its noise.  1 for species
