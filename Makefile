@@ -37,7 +37,7 @@ LIBRARY_OBJECTS = $(LIBRARY_SOURCES:%.c=$(BUILD)/%.o) $(GENERATED)
 CLI_OBJECTS     = $(CLI_SOURCES:%.c=$(BUILD)/%.o)
 TEST_OBJECTS    = $(TEST_SOURCES:%.c=$(BUILD)/%.o)
 
-.PHONY: all deps demo demo-run test test-run test-sanitized test-long valgrind coverage bench fuzz install clean
+.PHONY: all libs deps demo demo-run test test-run test-sanitized test-long valgrind coverage bench fuzz install clean
 all: $(BUILD)/limbeck $(BUILD)/liblimbeck.so
 
 $(BUILD)/limbeck: $(CLI_OBJECTS) $(BUILD)/liblimbeck.a
@@ -144,7 +144,13 @@ $(BENCHES): %: %.o $(BUILD)/liblimbeck.a
 	$(call say,link,$@)
 	$(Q)$(CC) $(ALL_CFLAGS) $(LDFLAGS) -o $@ $^ $(LIBS) -ldl
 
+# What a program links besides the library, for the scripts of tests/.
+libs:
+	@echo $(LIBS)
+
 SECONDS ?= 600
+FUZZ_PACKAGES = clang libclang-rt-14-dev
+fuzz: PACKAGES += $(FUZZ_PACKAGES)
 fuzz: deps
 	sh tests/fuzz/run.sh $(SECONDS)
 

@@ -11,6 +11,7 @@ seconds=${1:-600}
 targets=${*:-parse network}
 cd "$(dirname "$0")/../.."
 work=build-fuzz
+libs=$(make --no-print-directory libs)
 
 if ! echo 'int LLVMFuzzerTestOneInput(void) { return 0; }' |
         clang -fsanitize=fuzzer -x c - -o /dev/null 2>/dev/null; then
@@ -25,7 +26,7 @@ share=$((seconds / $(echo $targets | wc -w)))
 for target in $targets; do
     clang -std=c11 -D_POSIX_C_SOURCE=200809L -O1 -g -Iinclude -Isrc -fsanitize=fuzzer,address,undefined \
         -fno-sanitize-recover=undefined -o $work/fuzz_$target tests/fuzz/fuzz_$target.c $work/liblimbeck.a \
-        -lgsl -llapacke -llapack -lblas -lflint -lmpfr -lgmp -ljansson -lm -pthread
+        $libs
     mkdir -p $work/corpus-$target
     cp networks/*.mech $work/corpus-$target/
     [ -d tests/faults ] && find tests/faults -name '*.mech' -size -8k -exec cp {} $work/corpus-$target/ \;
