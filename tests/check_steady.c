@@ -333,19 +333,19 @@ START_TEST(test_no_start_is_spent_where_rates_cannot_balance)
 }
 END_TEST
 
-/* Five independent copies of Schloegl's second model: 3^5 states, each X 1, 2 or 3. */
+/* Four independent copies of Schloegl's second model: 3^4 states, each X 1, 2 or 3. */
 START_TEST(test_independent_switches_come_in_all_combinations)
 {
     static char buffer[20000];
     struct text t = {buffer, sizeof buffer};
     put(&t, "units none\n");
-    for (int i = 0; i < 5; i++)
+    for (int i = 0; i < 4; i++)
         put(&t, "[X%d]0 = 1\n2 X%d -> 3 X%d, k = 6\n3 X%d -> 2 X%d, k = 1\nX%d ->, k = 11\n-> X%d, k = 6\n", i, i, i,
             i, i, i, i);
     struct answer a = ask(buffer);
-    ck_assert_uint_eq(a.steady->count, 243);
+    ck_assert_uint_eq(a.steady->count, 81);
     for (size_t s = 0; s < a.steady->count; s++)
-        for (int i = 0; i < 5; i++)
+        for (int i = 0; i < 4; i++)
             assert_close(a.steady->state[s].x[i], round(a.steady->state[s].x[i]), 1e-11, 0);
     answer_clear(&a);
 }

@@ -22,7 +22,7 @@
 #include "base/memory.h"
 #include "base/status.h"
 
-enum { MOST_ITERATIONS = 40, MOST_HALVINGS = 6, MOST_POLISHING = 30, MOST_RELAXATIONS = 250, ALL_ROWS_LIMIT = 120 };
+enum { MOST_ITERATIONS = 40, MOST_HALVINGS = 6, MOST_POLISHING = 30, ALL_ROWS_LIMIT = 120 };
 
 static const double STEP_LIMIT = 5;             /* e^5: two decades */
 static const double RESIDUAL_TOLERANCE = 1e-11; /* a root, before polishing */
@@ -32,41 +32,40 @@ static const double FAR = 100;                  /* e^-100 = 4e-44: on the way to
 
 /* ---- Workspace -------------------------------------------------------------------- */
 
-/* The balance of a pool takes the place of that of one of its species. */
-static void place_pools(newton *w)
-{
-    const equations *eq = w->eq;
-    for (int p = 0; p < eq->pool_count; p++) {
-        const double *weight = eq->laws->pool + (size_t)eq->pool[p] * (size_t)eq->laws->width;
-        int i = 0;
-        while (i < eq->count && (w->row[i] != i || weight[eq->system->core_index[eq->state[i]]] == 0))
-            i++;
-        if (i < eq->count)
-            w->row[i] = eq->count + p;
-    }
-}
-
-/* Which rows make the square form: the balances, or the independent ones and the
- * laws when the equations are those of the whole core. */
+/* The balances of all species, or of the independent ones and the laws when the
+ * equations are those of the whole core. */
 static bool choose_rows(newton *w)
 {
     const equations *eq = w->eq;
     const lb_system *system = eq->system;
-    if (eq->rows > eq->count && eq->count <= ALL_ROWS_LIMIT)
-        return false;
     if (eq->law_count == 0) {
         for (int i = 0; i < eq->count; i++)
-            w->row[i] = i;
-        place_pools(w);
+            w->relaxed_row[i] = i;
         return true;
     }
     if (eq->count != system->core || system->rank + eq->law_count != system->core)
         return false;
     for (int i = 0; i < system->rank; i++)
-        w->row[i] = eq->unknown[system->core_state[system->independent[i]]];
+        w->relaxed_row[i] = eq->unknown[system->core_state[system->independent[i]]];
     for (int l = 0; l < eq->law_count; l++)
-        w->row[system->rank + l] = eq->balances + l;
+        w->relaxed_row[system->rank + l] = eq->balances + l;
     return true;
+}
+
+/* The balance of a pool takes the place of that of one of its species. */
+static void place_pools(newton *w)
+{
+    const equations *eq = w->eq;
+    memcpy(w->row, w->relaxed_row, (size_t)eq->count * sizeof *w->row);
+    for (int p = 0; p < eq->pool_count; p++) {
+        const double *weight = eq->laws->pool + (size_t)eq->pool[p] * (size_t)eq->laws->width;
+        int i = 0;
+        while (i < eq->count &&
+               (w->row[i] >= eq->count || weight[eq->system->core_index[eq->state[w->row[i]]]] == 0))
+            i++;
+        if (i < eq->count)
+            w->row[i] = eq->count + p;
+    }
 }
 
 lb_status newton_init(newton *w, equations *eq, lb_error *err)
@@ -74,6 +73,7 @@ lb_status newton_init(newton *w, equations *eq, lb_error *err)
     size_t count = (size_t)eq->count, rows = (size_t)eq->rows;
     memset(w, 0, sizeof *w);
     w->eq = eq;
+    w->relaxed_row = memory_array(count, sizeof *w->relaxed_row);
     w->row = memory_array(count, sizeof *w->row);
     w->F = memory_array(rows, sizeof *w->F);
     w->trial_F = memory_array(rows, sizeof *w->trial_F);
@@ -83,16 +83,19 @@ lb_status newton_init(newton *w, equations *eq, lb_error *err)
     w->step = memory_array(count, sizeof *w->step);
     w->trial = memory_array(count, sizeof *w->trial);
     w->pivot = memory_array(count, sizeof *w->pivot);
-    if (!w->row || !w->F || !w->trial_F || !w->A || !w->work || !w->right || !w->step || !w->trial || !w->pivot) {
+    if (!w->relaxed_row || !w->row || !w->F || !w->trial_F || !w->A || !w->work || !w->right || !w->step || !w->trial || !w->pivot) {
         newton_clear(w);
         return status_no_memory(err);
     }
-    w->is_square = choose_rows(w);
+    w->is_square = (eq->rows == eq->count || eq->count > ALL_ROWS_LIMIT) && choose_rows(w);
+    if (w->is_square)
+        place_pools(w);
     return LB_OK;
 }
 
 void newton_clear(newton *w)
 {
+    memory_free(w->relaxed_row);
     memory_free(w->row);
     memory_free(w->F);
     memory_free(w->trial_F);
@@ -123,15 +126,15 @@ static double norm2(int count, const double *a)
     return sqrt(sum);
 }
 
-/* Solve with the rows of the square form; false when they are near singular. */
-static bool solve_square(newton *w)
+/* Solve with the rows of a square form; false when they are near singular. */
+static bool solve_square(newton *w, const int *row)
 {
     int count = w->eq->count, rows = w->eq->rows;
     for (int j = 0; j < count; j++)
         for (int i = 0; i < count; i++)
-            w->work[i + (size_t)j * (size_t)count] = w->A[w->row[i] + (size_t)j * (size_t)rows];
+            w->work[i + (size_t)j * (size_t)count] = w->A[row[i] + (size_t)j * (size_t)rows];
     for (int i = 0; i < count; i++)
-        w->step[i] = -w->F[w->row[i]];
+        w->step[i] = -w->F[row[i]];
     double norm = linalg_norm1(count, w->work);
     if (!linalg_factor(count, w->work, w->pivot) || linalg_rcond(count, w->work, w->pivot, norm) < 1e-14)
         return false;
@@ -159,10 +162,11 @@ static lb_status solve_all(newton *w, double rcond, int *rank, lb_error *err)
     return status;
 }
 
-static lb_status solve(newton *w, lb_error *err)
+/* row NULL: by least squares over all rows. */
+static lb_status solve(newton *w, const int *row, lb_error *err)
 {
     int rank;
-    if (w->is_square && solve_square(w))
+    if (row && solve_square(w, row))
         return LB_OK;
     return solve_all(w, 1e-12, &rank, err);
 }
@@ -292,14 +296,13 @@ lb_status newton_solve(newton *w, double *u, double *const *known, int known_cou
         report->iterations = i + 1;
         if (!equations_matrix(eq, u, w->F, w->A))
             return LB_OK;
-        lb_status status = solve(w, err);
+        lb_status status = solve(w, w->is_square ? w->row : NULL, err);
         if (status != LB_OK)
             return status == LB_E_NUMERIC ? LB_OK : status;
         report->residual = equations_residual(eq, w->F);
         report->step = largest(eq->count, w->step);
         if (report->residual <= RESIDUAL_TOLERANCE && report->step <= STEP_TOLERANCE) {
             report->converged = true;
-            eq->is_plain = false;
             return polish(w, u, report, err);
         }
         double factor = deflated_factor(w, u, known, known_count);
@@ -333,20 +336,22 @@ static double farthest_move(const newton *w, const double *u)
     return moved;
 }
 
-/* A step that moves an unknown too far is taken again with a shorter time. */
-static lb_status relax(newton *w, double *u, bool *is_near, lb_error *err)
+/* A step that moves an unknown too far is taken again with a shorter time.  With
+ * laws least squares is the better way here: a scarce species follows from a law
+ * only with a large error in its logarithm. */
+static lb_status relax(newton *w, double *u, int steps, lb_error *err)
 {
+    const int *row = w->is_square ? w->relaxed_row : NULL;
     double inertia = 0;
-    for (int i = 0; i < MOST_RELAXATIONS; i++) {
+    for (int i = 0; i < steps; i++) {
         if (!equations_matrix(w->eq, u, w->F, w->A))
             return LB_OK;
         if (i == 0)
             inertia = first_inertia(w);
-        *is_near = equations_residual(w->eq, w->F) < 1e-6;
-        if (*is_near || !(inertia > 0))
+        if (equations_residual(w->eq, w->F) < 1e-6 || !(inertia > 0))
             return LB_OK;
         equations_add_inertia(w->eq, inertia, w->F, w->A);
-        lb_status status = solve(w, err);
+        lb_status status = solve(w, row, err);
         if (status != LB_OK)
             return status == LB_E_NUMERIC ? LB_OK : status;
         double moved = farthest_move(w, u);
@@ -357,13 +362,11 @@ static lb_status relax(newton *w, double *u, bool *is_near, lb_error *err)
     return LB_OK;
 }
 
-lb_status newton_relax(newton *w, double *u, bool *is_near, lb_error *err)
+lb_status newton_relax(newton *w, double *u, int steps, lb_error *err)
 {
-    bool was_plain = w->eq->is_plain;
-    *is_near = false;
     w->eq->is_plain = true;
-    lb_status status = relax(w, u, is_near, err);
-    w->eq->is_plain = was_plain;
+    lb_status status = relax(w, u, steps, err);
+    w->eq->is_plain = false;
     return status;
 }
 

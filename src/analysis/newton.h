@@ -10,8 +10,9 @@
 
 typedef struct newton {
     equations *eq;          /* borrowed */
-    bool is_square;         /* no laws, or too many unknowns to solve with all the balances */
-    int *row;               /* [count] rows of the square form */
+    bool is_square;         /* steps use as many rows as unknowns: there are no others, or too many for least squares */
+    int *relaxed_row;       /* [count] these rows: of all species, or of some and the laws */
+    int *row;               /* [count] the same with balances of pools in place of some */
     double *F, *trial_F;    /* [rows] */
     double *A;              /* [rows*count] */
     double *work, *right;   /* [(rows+1)*(count+1)], [rows+1] */
@@ -35,9 +36,10 @@ void newton_clear(newton *w);
 lb_status newton_solve(newton *w, double *u, double *const *known, int known_count, newton_report *report,
                        lb_error *err);
 
-/* Implicit Euler steps of growing length (pseudo-transient continuation): goes
- * where the reaction goes, when Newton's method stalls.  False when it failed. */
-lb_status newton_relax(newton *w, double *u, bool *is_near, lb_error *err);
+/* At most `steps` implicit Euler steps of growing length (pseudo-transient
+ * continuation): a part of the way that the reaction goes, which settles what is
+ * fast; all of it, to rest, when there are enough.  u is moved in any case. */
+lb_status newton_relax(newton *w, double *u, int steps, lb_error *err);
 
 /* A unit vector of the null space of the derivatives at a root (the direction of
  * a continuum); rank below count. */

@@ -1,9 +1,9 @@
 /* Multistart search for the roots of the steady-state equations.
  *
  * Newton's method from low-discrepancy starts, then from more starts with the
- * roots found so far divided out, which reaches roots with small basins.  The first
- * few starts are relaxed by pseudo-transient continuation as well.  A root is new
- * when it is further from each known one than their errors.
+ * roots found so far divided out, which reaches roots with small basins.  Three
+ * starts in four are relaxed a little or a lot before.  A root is new when it is
+ * further from each known one than their errors.
  *
  * A root with singular derivatives may be isolated (a fold) or one point of a
  * continuum.  That is decided by going along the null direction and solving
@@ -130,50 +130,38 @@ static lb_status take_root(struct search *s, const double *u, const newton_repor
 /* ---- Starts --------------------------------------------------------------------------- */
 
 /* Every other start combines the roots that are known, once there are two. */
+static bool is_combination(const struct search *s, uint64_t i)
+{
+    return i % 2 == 1 && s->out->count > 1;
+}
+
 static void set_start(struct search *s, uint64_t i)
 {
-    if (i % 2 == 1 && s->out->count > 1)
+    if (is_combination(s, i))
         starts_combine(&s->starts, i, s->out->u, s->out->count, s->u);
     else
         starts_point(&s->starts, i, s->u);
 }
 
-/* Starts that are relaxed as well: fewer where a step costs more. */
-static uint64_t most_relaxed(const struct search *s)
+/* How far start i is relaxed first: to rest, not at all, until most species have
+ * settled, until the fastest have.  Newton's method then succeeds more often, and
+ * reaches other roots: at once it prefers saddles, from rest it never finds any.
+ * Combinations of roots are near others as they are, half of them. */
+static int relaxation_of(const struct search *s, uint64_t i)
 {
-    uint64_t n = (uint64_t)s->eq->count, some = 1 + s->options->starts / 4;
-    uint64_t most = n <= 60 ? 12 : 1 + 40000 / (n * n);
-    return some < most ? some : most;
+    static const int steps[] = {250, 0, 30, 10}, of_combination[] = {0, 30, 0, 10};
+    return is_combination(s, i) ? of_combination[i / 2 % 4] : steps[(i + i / 4) % 4];
 }
 
-static lb_status solve_start(struct search *s, int known)
-{
-    newton_report report;
-    lb_status status = newton_solve(&s->newton, s->u, s->out->u, known, &report, s->err);
-    return status == LB_OK && report.converged ? take_root(s, s->u, &report) : status;
-}
-
-/* Newton's method jumps, and prefers some roots; the relaxation of the same start
- * goes where the reaction goes. */
-static lb_status relax_start(struct search *s, uint64_t i)
-{
-    bool is_near = false;
-    set_start(s, i);
-    lb_status status = newton_relax(&s->newton, s->u, &is_near, s->err);
-    return status == LB_OK && is_near ? solve_start(s, 0) : status;
-}
-
-/* Two starts in three in ratios, one with plain balances: their basins differ. */
 static lb_status try_start(struct search *s, uint64_t i, bool is_deflated)
 {
+    newton_report report;
     set_start(s, i);
     s->out->starts++;
-    s->eq->is_plain = i % 3 == 2;
-    lb_status status = solve_start(s, is_deflated ? s->out->count : 0);
-    s->eq->is_plain = false;
-    if (status == LB_OK && i < most_relaxed(s))
-        status = relax_start(s, i);
-    return status;
+    lb_status status = newton_relax(&s->newton, s->u, relaxation_of(s, i), s->err);
+    if (status == LB_OK)
+        status = newton_solve(&s->newton, s->u, s->out->u, is_deflated ? s->out->count : 0, &report, s->err);
+    return status == LB_OK && report.converged ? take_root(s, s->u, &report) : status;
 }
 
 static bool must_stop(struct search *s, size_t done, size_t all)
@@ -187,7 +175,7 @@ static bool must_stop(struct search *s, size_t done, size_t all)
 }
 
 /* Plain starts, and more of them as long as one in `starts` finds a new root, or one
- * in twice as many as there are roots, since each of many is rarely hit; then
+ * in eight times as many as there are roots, since each of many is rarely hit; then
  * deflated ones. */
 static lb_status run_starts(struct search *s)
 {
@@ -197,7 +185,7 @@ static lb_status run_starts(struct search *s)
         int before = s->out->count;
         status = try_start(s, i, false);
         if (s->out->count > before && !s->options->is_fixed) {
-            size_t gap = 2 * (size_t)s->out->count > wanted ? 2 * (size_t)s->out->count : wanted;
+            size_t gap = 8 * (size_t)s->out->count > wanted ? 8 * (size_t)s->out->count : wanted;
             end = i + 1 + gap < MOST_ROUNDS * wanted ? i + 1 + gap : MOST_ROUNDS * wanted;
         }
     }
