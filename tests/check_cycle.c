@@ -31,6 +31,10 @@
     "A + Y -> X, k = 1.34\nX + Y -> P, k = 1.6e9\nB + X -> 2 X + Z, k = 8000\n"                   \
     "2 X -> Q, k = 4e7\nZ -> Y, k = 1\n"
 
+#define GOODWIN                                                                                   \
+    "units none\n[X]0 = 0.5\n[Y]0 = 0.5\n[Z]0 = 1\n-> X, v = 10/(1 + [Z]^10)\nX ->, k = 1\n"     \
+    "-> Y, v = [X]\nY ->, k = 1\n-> Z, v = [Y]\nZ ->, k = 1\n"
+
 #define LOTKA_VOLTERRA                                                                            \
     "units none\n[A] = 1\n[X]0 = 2\n[Y]0 = 1\n"                                                   \
     "A + X -> 2 X, k = 1\nX + Y -> 2 Y, k = 1\nY -> P, k = 1\n"
@@ -106,9 +110,7 @@ static const reference references[] = {
       {"P1", 0.3042507278655952, 1.039703312941618},
       {"P2", 0.22118486866705994, 0.9761918118922989},
       {"PN", 0.33447317119372, 1.4144441670747963}}},
-    {"Goodwin, n = 10",
-     "units none\nk = 10\nb = 1\nn = 10\n[X]0 = 0.5\n[Y]0 = 0.5\n[Z]0 = 1\n-> X, v = k/(1 + [Z]^n)\nX ->, k = b\n"
-     "-> Y, v = [X]\nY ->, k = b\n-> Z, v = [Y]\nZ ->, k = b\n",
+    {"Goodwin, n = 10", GOODWIN,
      3.6968082427785114, {0.8027014090422553, 1.9007968920353208e-05}, 1e-8,
      {{"X", 0.6555232455221616, 2.067277564274439},
       {"Y", 0.9160526172849055, 1.616335183499414},
@@ -284,10 +286,7 @@ static double trace_integral(const bench *b)
 
 START_TEST(test_multipliers_multiply_to_the_integral_of_the_trace)
 {
-    static const char *const texts[] = {
-        BRUSSELATOR("3"), VAN_DER_POL("1"), ROESSLER("2.5"),
-        "units none\n[X]0 = 0.5\n[Y]0 = 0.5\n[Z]0 = 1\n-> X, v = 10/(1 + [Z]^10)\nX ->, k = 1\n-> Y, v = [X]\n"
-        "Y ->, k = 1\n-> Z, v = [Y]\nZ ->, k = 1\n"};
+    static const char *const texts[] = {BRUSSELATOR("3"), VAN_DER_POL("1"), ROESSLER("2.5"), GOODWIN};
     bench b;
     find_in(&b, texts[_i], CYCLE_CLOSED);
     double product = 1;

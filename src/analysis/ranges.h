@@ -9,9 +9,8 @@
 bool ranges_exist(const lb_network *net);
 
 /* Fill the answer of the scope: samples of the box in a fixed order, the first that
- * has an attracting cycle wins.  Sample 0 is the file's own constants.  deadline:
- * value of lb_system-independent monotonic seconds at which no new sample is
- * begun; 0: none. */
+ * has an attracting cycle wins.  Sample 0 is the file's own constants.  No new sample
+ * is begun once ranges_clock has passed the deadline (0: none). */
 lb_status ranges_search(hunt *h, const lb_oscillate_options *options, double deadline, lb_error *err);
 
 /* Monotonic seconds. */
