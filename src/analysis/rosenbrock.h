@@ -6,7 +6,6 @@
 
 #define ROSENBROCK_STAGES 8
 #define ROSENBROCK_ERROR_ORDER 5    /* the estimated error falls as h^5 */
-#define ROSENBROCK_LIMIT 4000       /* species: 128 MB of dense matrix */
 
 typedef struct rosenbrock_table {
     double gamma;
@@ -18,14 +17,21 @@ extern const rosenbrock_table rosenbrock_rodas5p;
 
 typedef struct rosenbrock rosenbrock;
 
-/* Borrows the evaluator for its life.  LB_E_LIMIT beyond ROSENBROCK_LIMIT
- * species, LB_E_NOMEM. */
+/* Borrows the evaluator for its life.  LB_E_NOMEM. */
 lb_status rosenbrock_new(lb_evaluator *evaluator, bool tangents, rosenbrock **out, lb_error *err);
 void rosenbrock_free(rosenbrock *method);
 
+/* What follows depends on no earlier step. */
+void rosenbrock_forget(rosenbrock *method);
+
 /* Evaluate the Jacobian at the start x [n] of the steps that follow; size [n] > 0:
- * magnitudes of the states, for the linear algebra.  False when it is not finite. */
-bool rosenbrock_prepare(rosenbrock *method, const double *x, const double *size);
+ * magnitudes of the states, for the linear algebra.  LB_OK; LB_E_FINITE when it is not
+ * finite, LB_E_NOMEM, LB_E_LIMIT when its factors are too large (without a message). */
+lb_status rosenbrock_prepare(rosenbrock *method, const double *x, const double *size);
+/* After a prepare: floating-point operations of the factorisation in a step; and
+ * whether it is a sparse one. */
+double rosenbrock_work(const rosenbrock *method);
+bool rosenbrock_is_sparse(const rosenbrock *method);
 const double *rosenbrock_jacobian(const rosenbrock *method);   /* [nonzeros] of the last prepare */
 
 /* A step from the x that was prepared. */

@@ -11,7 +11,8 @@
 typedef enum stepper_outcome {
     STEPPER_DONE,
     STEPPER_NOT_FINITE,         /* the right-hand side or the Jacobian was not finite on the way */
-    STEPPER_SINGULAR            /* the stiff method's matrix was singular */
+    STEPPER_SINGULAR,           /* the stiff method's matrix was singular */
+    STEPPER_NO_MEMORY           /* for its factors */
 } stepper_outcome;
 
 /* One step of x' = f(x), and of the variational equations P' = J(x) P when
