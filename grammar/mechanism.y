@@ -59,7 +59,7 @@ static void yyerror(const span *where, struct lexical *l, const char *message);
     syntax_range *range;
     syntax_argument *argument;
     syntax_arguments arguments;
-    syntax_name *species;
+    syntax_name species;
     syntax_names names;
     syntax_term *term;
     syntax_terms terms;
@@ -112,7 +112,7 @@ statement
     | FEED EQUALS expression range              { $$ = syntax_define(B, SYNTAX_DEFINE_FEED, $1, @1, $3, $4, @$); }
     | RETAINED names                            { $$ = syntax_list(B, SYNTAX_RETAINED, $2, @$); }
     | SIGNED names                              { $$ = syntax_list(B, SYNTAX_SIGNED, $2, @$); }
-    | FORMULA species EQUALS FORMULA_TEXT       { $$ = syntax_formula(B, $2, $4, @4, @$); }
+    | FORMULA species EQUALS FORMULA_TEXT       { $$ = syntax_formula(B, &$2, $4, @4, @$); }
     | reaction
     | LABEL reaction                            { $$ = syntax_labelled($2, $1, @1, @$); }
     ;
@@ -136,8 +136,8 @@ broken_reaction
     ;
 
 names
-    : species                                   { $$ = syntax_names_add((syntax_names){NULL, NULL}, $1); }
-    | names COMMA species                       { $$ = syntax_names_add($1, $3); }
+    : species                                   { $$ = syntax_names_add(B, (syntax_names){NULL, NULL}, &$1); }
+    | names COMMA species                       { $$ = syntax_names_add(B, $1, &$3); }
     ;
 
 /* ---- Reactions ---- */
@@ -164,14 +164,14 @@ terms
     ;
 
 term
-    : species                                   { $$ = syntax_term_new(B, $1); }
-    | NUMBER species                            { $$ = syntax_term_count(B, $1, @1, $2); }
-    | OPEN expression CLOSE species             { $$ = syntax_term_expression(B, $2, span_join(@1, @3), $4); }
+    : species                                   { $$ = syntax_term_new(B, &$1); }
+    | NUMBER species                            { $$ = syntax_term_count(B, $1, @1, &$2); }
+    | OPEN expression CLOSE species             { $$ = syntax_term_expression(B, $2, span_join(@1, @3), &$4); }
     ;
 
 species
-    : NAME                                      { $$ = syntax_name_new(B, $1, false, @1); }
-    | QUOTED                                    { $$ = syntax_name_new(B, $1, true, @1); }
+    : NAME                                      { $$ = (syntax_name){.text = $1, .where = @1}; }
+    | QUOTED                                    { $$ = (syntax_name){.text = $1, .is_quoted = true, .where = @1}; }
     ;
 
 settings

@@ -109,7 +109,9 @@ char *buffer_take(buffer *b)
         buffer_clear(b);
         return NULL;
     }
-    char *text = b->data ? b->data : memory_text("");
+    char *text = b->data ? memory_resize(b->data, b->length + 1, 1) : memory_text("");
+    if (!text)
+        text = b->data;
     buffer_init(b);
     return text;
 }

@@ -32,6 +32,6 @@ void        buffer_printf(buffer *b, const char *format, ...) __attribute__((for
 void        buffer_vprintf(buffer *b, const char *format, va_list list);
 const char *buffer_get(const buffer *b);                   /* "" when empty */
 lb_status   buffer_status(const buffer *b);
-char       *buffer_take(buffer *b);                        /* hands the text over; NULL after a failure */
+char       *buffer_take(buffer *b);                        /* hands the text over, without the room to grow; NULL after a failure */
 
 #endif

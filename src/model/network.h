@@ -68,15 +68,15 @@ typedef struct network_definition {
 /* One entry of a side of a reaction, as written (held species included). */
 typedef struct network_term {
     int species;
-    int64_t num, den;           /* exact coefficient when expression is EXPRESSION_NONE; den > 0 */
     expression expression;      /* product coefficients only */
+    int64_t num, den;           /* exact coefficient when expression is EXPRESSION_NONE; den > 0 */
 } network_term;
 
 /* Entry of the net stoichiometry: product minus reactant. */
 typedef struct network_entry {
     int state;
-    int64_t num, den;           /* exact, when expression is EXPRESSION_NONE */
     expression expression;      /* net coefficient of constants, else EXPRESSION_NONE */
+    int64_t num, den;           /* exact, when expression is EXPRESSION_NONE */
 } network_entry;
 
 typedef enum network_direction { STEP_FORWARD, STEP_REVERSE, STEP_INFLOW, STEP_OUTFLOW } network_direction;

@@ -18,6 +18,8 @@ typedef struct builder {
     bool            has_bad_side; /* of the reaction being read: a fault was reported for a side */
     syntax_tree    *tree;
     syntax_expression *value;    /* of syntax_parse_value */
+    const char    **texts;       /* [text_slots] open-addressing table of the texts there are, NULL empty */
+    size_t          text_count, text_slots;
 } builder;
 
 /* Lists under construction. */
@@ -31,7 +33,9 @@ typedef struct syntax_text { const char *text; bool is_quoted; } syntax_text;
 void builder_fault(builder *b, span where, const char *remedy, const char *format, ...)
     __attribute__((format(printf, 4, 5)));
 void *builder_alloc(builder *b, size_t size);
+/* A terminated copy; equal texts are one copy. */
 const char *builder_text(builder *b, const char *text, size_t length);
+void builder_clear(builder *b);      /* frees the table; the texts are the arena's */
 
 /* From the start of a to the end of b, as far as b is on the same line. */
 span span_join(span a, span b);
@@ -57,10 +61,9 @@ syntax_arguments syntax_arguments_add(syntax_arguments list, syntax_argument *ar
 
 /* ---- syntax.c ---- */
 
-syntax_name *syntax_name_new(builder *b, const char *text, bool is_quoted, span where);
-syntax_names syntax_names_add(syntax_names list, syntax_name *name);
+syntax_names syntax_names_add(builder *b, syntax_names list, const syntax_name *name); /* copies the name */
 
-syntax_term *syntax_term_new(builder *b, const syntax_name *species);
+syntax_term *syntax_term_new(builder *b, const syntax_name *species); /* copies the species */
 syntax_term *syntax_term_count(builder *b, syntax_number coefficient, span where, const syntax_name *species);
 syntax_term *syntax_term_expression(builder *b, syntax_expression *coefficient, span where,
                                     const syntax_name *species);

@@ -61,6 +61,7 @@ static void lexical_free(lexical *l)
         return;
     if (l->scanner)
         lexer_lex_destroy(l->scanner);
+    builder_clear(&l->build);
     memory_free(l->buffer);
     memory_free(l);
 }

@@ -13,18 +13,12 @@
 
 /* ---- Species and sides ----------------------------------------------------- */
 
-syntax_name *syntax_name_new(builder *b, const char *text, bool is_quoted, span where)
+syntax_names syntax_names_add(builder *b, syntax_names list, const syntax_name *species)
 {
-    syntax_name *name = builder_alloc(b, sizeof *name);
-    if (name)
-        *name = (syntax_name){text, is_quoted, where, NULL};
-    return name;
-}
-
-syntax_names syntax_names_add(syntax_names list, syntax_name *name)
-{
+    syntax_name *name = species->text ? builder_alloc(b, sizeof *name) : NULL;
     if (!name)
         return list;
+    *name = *species;
     if (list.last)
         list.last->next = name;
     else
@@ -35,7 +29,7 @@ syntax_names syntax_names_add(syntax_names list, syntax_name *name)
 
 syntax_term *syntax_term_new(builder *b, const syntax_name *species)
 {
-    syntax_term *term = species ? builder_alloc(b, sizeof *term) : NULL;
+    syntax_term *term = species->text ? builder_alloc(b, sizeof *term) : NULL;
     if (!term)
         return NULL;
     term->number = 1;
@@ -104,7 +98,8 @@ syntax_term *syntax_side_number(builder *b, syntax_number number, span where)
     snprintf(remedy, sizeof remedy, "for a species called `%.40s` write `%.*s %.40s`", exponent,
              (int)(exponent - number.text < 40 ? exponent - number.text : 40), number.text, exponent);
     builder_fault(b, where, remedy, "`%.60s` is a number without a species", number.text);
-    syntax_term *term = syntax_term_new(b, syntax_name_new(b, exponent, false, where));
+    const syntax_name species = {.text = builder_text(b, exponent, strlen(exponent)), .where = where};
+    syntax_term *term = syntax_term_new(b, &species);
     if (term) {
         term->coefficient = builder_text(b, number.text, (size_t)(exponent - number.text));
         term->number = term->coefficient ? strtod(term->coefficient, NULL) : 1;
@@ -119,7 +114,9 @@ static syntax_statement *statement(builder *b, syntax_statement_kind kind, span 
     syntax_statement *s = builder_alloc(b, sizeof *s);
     if (s) {
         s->kind = kind;
-        s->where = s->text_where = where;
+        s->where = where;
+        if (kind != SYNTAX_REACTION)
+            s->text_where = where;
     }
     return s;
 }
@@ -169,7 +166,7 @@ syntax_statement *syntax_list(builder *b, syntax_statement_kind kind, syntax_nam
 syntax_statement *syntax_formula(builder *b, const syntax_name *species, const char *formula, span formula_where,
                                  span where)
 {
-    syntax_statement *s = species ? statement(b, SYNTAX_FORMULA, where) : NULL;
+    syntax_statement *s = species->text ? statement(b, SYNTAX_FORMULA, where) : NULL;
     if (s) {
         s->text = species->text;
         s->is_quoted = species->is_quoted;

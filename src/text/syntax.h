@@ -37,13 +37,13 @@ typedef struct syntax_argument {
 
 struct syntax_expression {
     syntax_expression_kind kind;
+    int depth;                      /* 1 + depth of the deepest child */
     span where;                     /* first line of the expression when it spans several */
     span operator_where;            /* of a binary operator */
     const char *text;
     double number;
     syntax_expression *left, *right;
     syntax_argument *first;
-    int depth;                      /* 1 + depth of the deepest child */
 };
 
 struct syntax_range {
@@ -55,8 +55,8 @@ struct syntax_range {
 /* A name in a list (`retained A, B`), or a species of a term. */
 typedef struct syntax_name {
     const char *text;
-    bool is_quoted;
     span where;
+    bool is_quoted;
     struct syntax_name *next;
 } syntax_name;
 
@@ -64,9 +64,9 @@ typedef struct syntax_term {
     const char *coefficient;        /* text of a plain number; NULL when none is written */
     double number;                  /* its value; 1 when none is written */
     syntax_expression *expression;  /* coefficient in parentheses; else NULL */
-    span coefficient_where;
-    syntax_name species;
     struct syntax_term *next;
+    syntax_name species;
+    span coefficient_where;
 } syntax_term;
 
 typedef enum syntax_statement_kind {
@@ -84,23 +84,27 @@ typedef enum syntax_statement_kind {
 
 typedef struct syntax_statement {
     syntax_statement_kind kind;
-    span where;                     /* of the whole statement's first line */
-    const char *text;
-    bool is_quoted;                 /* the name was quoted */
-    span text_where;                /* of the title, name or species */
-    syntax_expression *value;
-    syntax_range *range;
-    syntax_name *names;
-    const char *formula;
-    span formula_where;
-    /* reactions */
-    const char *label;              /* NULL when none is written */
-    span label_where;
-    bool is_reversible;
-    span arrow_where;
-    syntax_term *left, *right;      /* NULL: an empty side */
-    syntax_argument *settings;      /* k, kf, kr, K, v, as written */
-    bool is_broken;                 /* in the list of broken ones: what could be read before a fault */
+    span where;                         /* of the whole statement's first line */
+    union {
+        struct {                        /* all but reactions */
+            const char *text;
+            syntax_expression *value;
+            syntax_range *range;
+            syntax_name *names;
+            const char *formula;
+            span text_where;            /* of the title, name or species */
+            span formula_where;
+        };
+        struct {                        /* reactions */
+            const char *label;          /* NULL when none is written */
+            syntax_term *left, *right;  /* NULL: an empty side */
+            syntax_argument *settings;  /* k, kf, kr, K, v, as written */
+            span label_where, arrow_where;
+        };
+    };
+    bool is_quoted;                     /* the name was quoted */
+    bool is_reversible;                 /* of a reaction */
+    bool is_broken;                     /* in the list of broken ones: what could be read before a fault */
     struct syntax_statement *next;
 } syntax_statement;
 
