@@ -223,7 +223,7 @@ void lb_batch_jacobian_sparse(lb_batch *batch, const double x[], double values[]
 
 /* ---- Emitted C ----------------------------------------------------------- */
 
-/* Whom the emitted C is also for: glue to that library and an example program. */
+/* Whose solvers the emitted C is for (lb_emit_glue). */
 typedef enum lb_solver { LB_SOLVER_NONE, LB_SOLVER_GSL, LB_SOLVER_CVODES } lb_solver;
 
 typedef struct lb_emit_options {
@@ -240,6 +240,12 @@ char *lb_emit_name(const char *path);
  * Returns LB_E_ARG when the name is no identifier or a word of C. */
 lb_status lb_emit(const lb_network *network, const lb_emit_options *options,
                   lb_text *header, lb_text *source, lb_error *err);
+
+/* Write the glue between this C and a solver, NAME_gsl.h and NAME_gsl.c (or NAME_cvodes...),
+ * and an example program, NAME_gsl_main.c, that integrates from the initial state and prints
+ * comma-separated values.  LB_E_ARG as above, and where options name no solver. */
+lb_status lb_emit_glue(const lb_network *network, const lb_emit_options *options,
+                       lb_text *header, lb_text *source, lb_text *example, lb_error *err);
 
 /* ---- Time courses -------------------------------------------------------- */
 
@@ -426,7 +432,11 @@ lb_status lb_json_steady(const lb_system *system, const lb_diagnostics *diagnost
 lb_status lb_json_oscillate(const lb_system *system, const lb_diagnostics *diagnostics, const lb_oscillate *oscillate, lb_text *out);
 /* The keys of check, steady and oscillate in one object. */
 lb_status lb_json_page(const lb_system *system, const lb_diagnostics *diagnostics, const lb_oscillate *oscillate, lb_text *out);
-lb_status lb_json_emit(const lb_network *network, const lb_diagnostics *diagnostics, const char *header_path, const char *source_path, lb_text *out);
+/* Paths of the files written; those of the glue NULL where there is none. */
+typedef struct lb_emit_paths {
+    const char *header, *source, *glue_header, *glue_source, *example;
+} lb_emit_paths;
+lb_status lb_json_emit(const lb_network *network, const lb_diagnostics *diagnostics, const lb_emit_paths *paths, lb_text *out);
 /* {"limbeck": ..., "command": ..., "file": ..., "error": {"code", "message", "remedy", "faults": [...]}} */
 lb_status lb_json_error(const char *command, const char *file, const lb_error *error, const lb_diagnostics *diagnostics, lb_text *out);
 

@@ -1,4 +1,4 @@
-/* limbeck emit: the model as C, two files in a folder. */
+/* limbeck emit: the model as C, two files in a folder, and three more for a solver. */
 #include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
@@ -6,22 +6,25 @@
 #include "cli/files.h"
 #include "cli/session.h"
 
-/* The two files on their way to the disk. */
+enum { HEADER, SOURCE, GLUE_HEADER, GLUE_SOURCE, EXAMPLE, MOST_FILES };
+
+/* The files on their way to the disk: two, or five with the glue to a solver. */
 typedef struct output {
-    char *name, *header_path, *source_path;
-    lb_text *header, *source;
-    pending_file pending_header, pending_source;
+    char *name;
+    int count;
+    lb_text *text[MOST_FILES];
+    char *path[MOST_FILES];
+    pending_file pending[MOST_FILES];
 } output;
 
 static void output_clear(output *o)
 {
-    files_abandon(&o->pending_header);
-    files_abandon(&o->pending_source);
-    lb_text_free(o->header);
-    lb_text_free(o->source);
+    for (int i = 0; i < MOST_FILES; i++) {
+        files_abandon(&o->pending[i]);
+        lb_text_free(o->text[i]);
+        free(o->path[i]);
+    }
     free(o->name);
-    free(o->header_path);
-    free(o->source_path);
 }
 
 static char *choose_name(const options *given)
@@ -31,47 +34,60 @@ static char *choose_name(const options *given)
     return lb_emit_name(strcmp(given->file, "-") == 0 ? "mechanism" : given->file);
 }
 
+static const char *const endings[][MOST_FILES] = {
+    [LB_SOLVER_NONE] = {".h", ".c", NULL, NULL, NULL},
+    [LB_SOLVER_GSL] = {".h", ".c", "_gsl.h", "_gsl.c", "_gsl_main.c"},
+    [LB_SOLVER_CVODES] = {".h", ".c", "_cvodes.h", "_cvodes.c", "_cvodes_main.c"},
+};
+
 /* The texts and the paths, nothing on the disk yet. */
 static lb_status compose(const session *s, output *o, lb_error *error)
 {
-    const lb_status no_memory = LB_E_NOMEM;
-    *error = (lb_error){.code = no_memory};
-    o->name = choose_name(s->given);
-    o->header = lb_text_new();
-    o->source = lb_text_new();
-    if (!o->name || !o->header || !o->source)
-        return no_memory;
-    o->header_path = files_join(s->given->output, o->name, ".h");
-    o->source_path = files_join(s->given->output, o->name, ".c");
-    if (!o->header_path || !o->source_path)
-        return no_memory;
-    lb_emit_options emit_options = {.name = o->name};
-    return lb_emit(s->network, &emit_options, o->header, o->source, error);
+    lb_emit_options emit_options = {.solver = s->given->solver};
+    *error = (lb_error){.code = LB_E_NOMEM};
+    o->count = emit_options.solver == LB_SOLVER_NONE ? GLUE_HEADER : MOST_FILES;
+    emit_options.name = o->name = choose_name(s->given);
+    if (!o->name)
+        return LB_E_NOMEM;
+    for (int i = 0; i < o->count; i++) {
+        o->text[i] = lb_text_new();
+        o->path[i] = files_join(s->given->output, o->name, endings[emit_options.solver][i]);
+        if (!o->text[i] || !o->path[i])
+            return LB_E_NOMEM;
+    }
+    lb_status status = lb_emit(s->network, &emit_options, o->text[HEADER], o->text[SOURCE], error);
+    if (status == LB_OK && o->count == MOST_FILES)
+        status = lb_emit_glue(s->network, &emit_options, o->text[GLUE_HEADER], o->text[GLUE_SOURCE],
+                              o->text[EXAMPLE], error);
+    return status;
 }
 
-/* Both files or neither: both are complete beside their places before one is renamed. */
+/* All files or none: each is complete beside its place before one is renamed. */
 static lb_status save(const session *s, output *o, lb_error *error)
 {
-    size_t header_length, source_length;
-    const char *header = lb_text_get(o->header, &header_length), *source = lb_text_get(o->source, &source_length);
     lb_status status = files_make_folder(s->given->output, error);
-    if (status == LB_OK)
-        status = files_prepare(o->header_path, header, header_length, &o->pending_header, error);
-    if (status == LB_OK)
-        status = files_prepare(o->source_path, source, source_length, &o->pending_source, error);
-    if (status == LB_OK)
-        status = files_commit(&o->pending_header, error);
-    if (status == LB_OK)
-        status = files_commit(&o->pending_source, error);
+    for (int i = 0; status == LB_OK && i < o->count; i++) {
+        size_t length;
+        const char *bytes = lb_text_get(o->text[i], &length);
+        status = files_prepare(o->path[i], bytes, length, &o->pending[i], error);
+    }
+    for (int i = 0; status == LB_OK && i < o->count; i++)
+        status = files_commit(&o->pending[i], error);
     return status;
 }
 
 /* What was written, on standard output. */
 static int announce(session *s, const output *o)
 {
-    if (s->given->json)
-        return session_print(s, lb_json_emit(s->network, s->diagnostics, o->header_path, o->source_path, s->text));
-    if (!s->given->quiet && (printf("%s\n%s\n", o->header_path, o->source_path) < 0 || fflush(stdout)))
+    if (s->given->json) {
+        lb_emit_paths paths = {o->path[HEADER], o->path[SOURCE], o->path[GLUE_HEADER], o->path[GLUE_SOURCE],
+                               o->path[EXAMPLE]};
+        return session_print(s, lb_json_emit(s->network, s->diagnostics, &paths, s->text));
+    }
+    bool has_failed = false;
+    for (int i = 0; !s->given->quiet && i < o->count; i++)
+        has_failed = has_failed || printf("%s\n", o->path[i]) < 0;
+    if (has_failed || fflush(stdout))
         return session_fail_status(s, LB_E_IO);
     return EXIT_ANSWERED;
 }
@@ -113,6 +129,7 @@ static int run(const options *given)
 static const option_spec own[] = {
     {OPTION_OUTPUT, "--output", 'o', "FOLDER", "where NAME.h and NAME.c go; made if missing"},
     {OPTION_NAME, "--name", 0, "NAME", "prefix of the names in the C, and of the files (the file's name)"},
+    {OPTION_FOR, "--for", 0, "LIBRARY", "gsl or cvodes: glue to its solvers and an example program as well"},
 };
 
 const command command_emit = {
@@ -121,10 +138,13 @@ const command command_emit = {
     .summary = "the model as C: right-hand side, Jacobian, parameter derivatives",
     .about = "Write NAME.h and NAME.c: rates, right-hand side, dense and sparse analytic\n"
              "Jacobian and derivatives by the constants, in C99 that needs nothing but the\n"
-             "mathematical library. The C is yours, under any terms.\n",
+             "mathematical library. The C is yours, under any terms. With --for, NAME_gsl.h,\n"
+             "NAME_gsl.c and NAME_gsl_main.c (or NAME_cvodes...) as well: callbacks for that\n"
+             "library and a program that integrates and prints comma-separated values.\n",
     .examples = "  limbeck emit bath.mech -o model/\n"
                 "  limbeck emit bath.mech -o . --name bath_2\n"
-                "  cc -std=c99 -c model/bath.c\n",
+                "  cc -std=c99 -c model/bath.c\n"
+                "  limbeck emit bath.mech -o model/ --for cvodes\n",
     .own = own,
     .own_count = sizeof own / sizeof *own,
     .run = run,

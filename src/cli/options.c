@@ -186,6 +186,17 @@ static bool read_scopes(options *o, const char *text)
     }
 }
 
+static bool read_solver(options *o, const char *text)
+{
+    if (strcmp(text, "gsl") == 0)
+        o->solver = LB_SOLVER_GSL;
+    else if (strcmp(text, "cvodes") == 0)
+        o->solver = LB_SOLVER_CVODES;
+    else
+        return fail(o, "write --for gsl or --for cvodes", "`%s` is not a library that emit knows", text);
+    return true;
+}
+
 static bool apply(options *o, const option_spec *spec, const char *value)
 {
     const double most_seconds = 1e9, most_tolerance = 1e-2;
@@ -202,6 +213,7 @@ static bool apply(options *o, const option_spec *spec, const char *value)
     case OPTION_TOLERANCE: return read_positive(o, spec, value, most_tolerance, &o->tolerance);
     case OPTION_OUTPUT: o->output = value; return true;
     case OPTION_NAME: o->name = value; return true;
+    case OPTION_FOR: return read_solver(o, value);
     case OPTION_SCOPE: return read_scopes(o, value);
     case OPTION_SAMPLES:
         if (!read_whole(o, spec, value, 1, &number))

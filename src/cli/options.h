@@ -12,7 +12,7 @@ typedef struct command command;
 
 typedef enum option_id {
     OPTION_JSON, OPTION_SET, OPTION_SEED, OPTION_QUIET, OPTION_HELP, OPTION_VERSION,
-    OPTION_UNTIL, OPTION_EVERY, OPTION_TOLERANCE, OPTION_OUTPUT, OPTION_NAME,
+    OPTION_UNTIL, OPTION_EVERY, OPTION_TOLERANCE, OPTION_OUTPUT, OPTION_NAME, OPTION_FOR,
     OPTION_SCOPE, OPTION_SAMPLES, OPTION_SECONDS, OPTION_NATIVE
 } option_id;
 
@@ -35,6 +35,7 @@ typedef struct options {
     const char *until, *every;          /* times as written; NULL: not given */
     double tolerance;                   /* 0: not given */
     const char *output, *name;          /* NULL: not given */
+    lb_solver solver;                   /* of the emitted glue */
     bool given, ranges;                 /* scopes; both when nothing was said */
     size_t samples;                     /* 0: not given */
     double seconds;                     /* 0: not given */

@@ -4,55 +4,18 @@
  * docs/emitted-code.md, the tables of names and numbers.  What the functions
  * compute is in sums.c, how they are cut is in plan.c, and function.c writes
  * them.  The same network gives the same bytes. */
-#include <ctype.h>
+#include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
 
 #include "base/memory.h"
 #include "base/status.h"
 #include "emit/function.h"
+#include "emit/head.h"
 #include "emit/spell.h"
 #include "limbeck.h"
 
-enum { LONGEST_NAME = 100, TEXT_LIMIT = 200 };
-
-/* ---- Names ---------------------------------------------------------------------- */
-
-/* The last part of a path without its last extension. */
-static char *stem_of(const char *path)
-{
-    const char *slash = strrchr(path, '/');
-    const char *first = slash ? slash + 1 : path;
-    const char *dot = strrchr(first, '.');
-    size_t length = dot && dot > first ? (size_t)(dot - first) : strlen(first);
-    return memory_text_n(first, length);
-}
-
-char *lb_emit_name(const char *path)
-{
-    char *stem = stem_of(path);
-    if (!stem)
-        return NULL;
-    buffer name;
-    buffer_init(&name);
-    bool is_plain = true;
-    for (const char *c = stem; *c; c++)
-        is_plain = is_plain && ((unsigned char)*c < 0x80) && (isalnum((unsigned char)*c) || *c == '_');
-    if (is_plain && strlen(stem) <= LONGEST_NAME)
-        buffer_append(&name, stem);
-    else
-        spell_identifier(&name, stem);
-    memory_free(stem);
-    if (name.status == LB_OK && !spell_is_prefix(buffer_get(&name))) {
-        char *rest = buffer_take(&name);
-        if (rest)
-            buffer_printf(&name, "model%s%s", *rest && *rest != '_' ? "_" : "", rest);
-        else
-            name.status = LB_E_NOMEM;
-        memory_free(rest);
-    }
-    return buffer_take(&name);
-}
+enum { TEXT_LIMIT = HEAD_TEXT_LIMIT };
 
 /* ---- Local names of definitions ---------------------------------------------------- */
 
@@ -180,11 +143,11 @@ static void file_clear(function_file *file)
 
 /* ---- Head comments -------------------------------------------------------------------- */
 
-static void write_title(const function_file *file, char extension, buffer *out)
+static void write_head(const function_file *file, const char *extension, buffer *out)
 {
-    buffer_printf(out, "/* %s.%c: ", file->name, extension);
-    spell_comment(out, *file->net->title ? file->net->title : "a reaction mechanism", TEXT_LIMIT);
-    buffer_append(out, "\n *\n");
+    char name[HEAD_LONGEST_NAME + 3];
+    snprintf(name, sizeof name, "%s%s", file->name, extension);
+    head_begin(file->net, name, out);
 }
 
 static void write_units(const lb_network *net, buffer *out)
@@ -261,12 +224,6 @@ static void write_index(const lb_network *net, const char *what, int count,
     buffer_append(out, count > 0 ? "\n" : " none\n");
 }
 
-static void write_terms_of_use(buffer *out)
-{
-    buffer_append(out, " * Written by limbeck " LB_VERSION ".  This file belongs to whoever made it with limbeck, who\n"
-                       " * may use, change and pass it on under any terms.\n");
-}
-
 /* ---- The header ------------------------------------------------------------------------- */
 
 /* C has no arrays of no elements: those get one. */
@@ -307,13 +264,26 @@ static void write_declarations(const function_file *file, buffer *out)
     write_prototype(file, "dfdk", "D", "/* D[i + j*STATES] = d(dxdt[i])/d(k[j]). */", out);
 }
 
+/* What CMake and pkg-config want to read. */
+static void write_build_files(const char *name, buffer *out)
+{
+    buffer_append(out, " * In a CMakeLists.txt:\n *\n");
+    buffer_printf(out, " *     add_library(%s STATIC %s.c)\n", name, name);
+    buffer_printf(out, " *     target_include_directories(%s PUBLIC ${CMAKE_CURRENT_SOURCE_DIR})\n", name);
+    buffer_printf(out, " *     target_link_libraries(%s PUBLIC m)\n *\n", name);
+    buffer_printf(out, " * As an installed library with a %s.pc for pkg-config:\n *\n", name);
+    buffer_printf(out, " *     prefix=/usr/local\n *     Name: %s\n *     Description: a reaction mechanism\n", name);
+    buffer_printf(out, " *     Version: 1\n *     Cflags: -I${prefix}/include\n"
+                       " *     Libs: -L${prefix}/lib -l%s -lm\n *\n", name);
+}
+
 static void write_header(const function_file *file, buffer *out)
 {
     const char *name = file->name;
-    write_title(file, 'h', out);
-    write_terms_of_use(out);
+    write_head(file, ".h", out);
     buffer_append(out, " *\n * C99, needs libm alone:\n *\n");
     buffer_printf(out, " *     cc -std=c99 -O2 -c %s.c\n *     cc -o program program.o %s.o -lm\n *\n", name, name);
+    write_build_files(name, out);
     buffer_printf(out, " * Start from x = %s_initial and k = %s_defaults, or from your own copies of\n", name, name);
     buffer_append(out, " * them.  The functions keep nothing between calls and may run in many threads at\n"
                        " * once; the output array must not overlap x or k.  t is the time; no rate depends\n"
@@ -395,8 +365,7 @@ static bool has_numbers_to_name(const function_file *file)
 static void write_source(function_file *file, buffer *out)
 {
     const lb_network *net = file->net;
-    write_title(file, 'c', out);
-    write_terms_of_use(out);
+    write_head(file, ".c", out);
     buffer_append(out, " *\n");
     write_units(net, out);
     write_index(net, "x:", net->states, name_of_state, out);
@@ -422,12 +391,11 @@ static void write_source(function_file *file, buffer *out)
 lb_status lb_emit(const lb_network *network, const lb_emit_options *options, lb_text *header, lb_text *source,
                   lb_error *err)
 {
-    const char *name = options && options->name ? options->name : "";
-    if (!spell_is_prefix(name) || strlen(name) > LONGEST_NAME)
-        return status_raise(err, LB_E_ARG, "write a name of letters, digits and `_` that begins with a letter",
-                            "`%.100s` cannot be the name of C functions", name);
+    lb_status status = head_check_name(options, err);
+    if (status != LB_OK)
+        return status;
     function_file file;
-    lb_status status = file_init(&file, network, name);
+    status = file_init(&file, network, options->name);
     file.lines = options->lines > 0 ? options->lines : FUNCTION_LINES;
     if (status == LB_OK)
         status = function_rates(&file);

@@ -136,12 +136,17 @@ lb_status lb_json_check(const lb_network *network, const lb_diagnostics *diagnos
     return json_finish(&w, out);
 }
 
-lb_status lb_json_emit(const lb_network *network, const lb_diagnostics *diagnostics, const char *header_path,
-                       const char *source_path, lb_text *out)
+lb_status lb_json_emit(const lb_network *network, const lb_diagnostics *diagnostics, const lb_emit_paths *paths,
+                       lb_text *out)
 {
     json_writer w;
     json_begin(&w, "emit", network->file, diagnostics);
-    json_put(&w, w.root, "header", json_text(header_path));
-    json_put(&w, w.root, "source", json_text(source_path));
+    json_put(&w, w.root, "header", json_text(paths->header));
+    json_put(&w, w.root, "source", json_text(paths->source));
+    if (paths->glue_header) {
+        json_put(&w, w.root, "glue_header", json_text(paths->glue_header));
+        json_put(&w, w.root, "glue_source", json_text(paths->glue_source));
+        json_put(&w, w.root, "example", json_text(paths->example));
+    }
     return json_finish(&w, out);
 }

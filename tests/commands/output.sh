@@ -12,3 +12,7 @@ try emit networks/brusselator.mech -o "$SCRATCH/new/model" --json
 ls -A "$SCRATCH/new/model"
 try run networks/brusselator.mech --until 1 --every 1 --json -o "$SCRATCH/beside.csv" | cut -c 1-60
 wc -l <"$SCRATCH/beside.csv"
+try emit networks/brusselator.mech -o "$SCRATCH/glue" --for gsl --quiet
+ls -A "$SCRATCH/glue"
+try emit networks/lotka-volterra.mech -o "$SCRATCH/glue" --for cvodes
+try emit networks/lotka-volterra.mech -o "$SCRATCH/glue" --for cvodes --json --quiet

@@ -34,3 +34,4 @@ try check --set '[B]=-1' networks/brusselator.mech
 ls -A "$SCRATCH"
 try run networks/demo.mech --until 1 h
 try run networks/demo.mech --until 1min --every 1min --quiet | tail -n 1 | cut -c 1-2
+try emit networks/brusselator.mech -o "$SCRATCH" --for fortran

@@ -8,6 +8,21 @@
  *     cc -std=c99 -O2 -c brusselator.c
  *     cc -o program program.o brusselator.o -lm
  *
+ * In a CMakeLists.txt:
+ *
+ *     add_library(brusselator STATIC brusselator.c)
+ *     target_include_directories(brusselator PUBLIC ${CMAKE_CURRENT_SOURCE_DIR})
+ *     target_link_libraries(brusselator PUBLIC m)
+ *
+ * As an installed library with a brusselator.pc for pkg-config:
+ *
+ *     prefix=/usr/local
+ *     Name: brusselator
+ *     Description: a reaction mechanism
+ *     Version: 1
+ *     Cflags: -I${prefix}/include
+ *     Libs: -L${prefix}/lib -lbrusselator -lm
+ *
  * Start from x = brusselator_initial and k = brusselator_defaults, or from your own copies of
  * them.  The functions keep nothing between calls and may run in many threads at
  * once; the output array must not overlap x or k.  t is the time; no rate depends

@@ -8,6 +8,21 @@
  *     cc -std=c99 -O2 -c source.c
  *     cc -o program program.o source.o -lm
  *
+ * In a CMakeLists.txt:
+ *
+ *     add_library(source STATIC source.c)
+ *     target_include_directories(source PUBLIC ${CMAKE_CURRENT_SOURCE_DIR})
+ *     target_link_libraries(source PUBLIC m)
+ *
+ * As an installed library with a source.pc for pkg-config:
+ *
+ *     prefix=/usr/local
+ *     Name: source
+ *     Description: a reaction mechanism
+ *     Version: 1
+ *     Cflags: -I${prefix}/include
+ *     Libs: -L${prefix}/lib -lsource -lm
+ *
  * Start from x = source_initial and k = source_defaults, or from your own copies of
  * them.  The functions keep nothing between calls and may run in many threads at
  * once; the output array must not overlap x or k.  t is the time; no rate depends

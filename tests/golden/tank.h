@@ -8,6 +8,21 @@
  *     cc -std=c99 -O2 -c tank.c
  *     cc -o program program.o tank.o -lm
  *
+ * In a CMakeLists.txt:
+ *
+ *     add_library(tank STATIC tank.c)
+ *     target_include_directories(tank PUBLIC ${CMAKE_CURRENT_SOURCE_DIR})
+ *     target_link_libraries(tank PUBLIC m)
+ *
+ * As an installed library with a tank.pc for pkg-config:
+ *
+ *     prefix=/usr/local
+ *     Name: tank
+ *     Description: a reaction mechanism
+ *     Version: 1
+ *     Cflags: -I${prefix}/include
+ *     Libs: -L${prefix}/lib -ltank -lm
+ *
  * Start from x = tank_initial and k = tank_defaults, or from your own copies of
  * them.  The functions keep nothing between calls and may run in many threads at
  * once; the output array must not overlap x or k.  t is the time; no rate depends
