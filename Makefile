@@ -136,10 +136,15 @@ coverage: deps
 	@$(MAKE) --no-print-directory BUILD=$(BUILD)-coverage test-run
 	sh tests/coverage.sh $(BUILD)-coverage
 
+BENCH_PACKAGES = libsundials-dev
+bench: PACKAGES += $(BENCH_PACKAGES)
 bench: deps
 	@$(MAKE) --no-print-directory all $(BENCHES)
 	@for b in $(BENCHES); do $$b $(BUILD) || exit 1; done
 
+$(BUILD)/tests/bench/bench_stiff: LIBS += -lsundials_cvode -lsundials_nvecserial -lsundials_sunlinsolklu \
+    -lsundials_sunlinsoldense -lsundials_sunmatrixsparse -lsundials_sunmatrixdense
+$(BUILD)/tests/bench/bench_stiff.o: ALL_CFLAGS += -isystem /usr/include/suitesparse
 $(BENCHES): %: %.o $(BUILD)/liblimbeck.a
 	$(call say,link,$@)
 	$(Q)$(CC) $(ALL_CFLAGS) $(LDFLAGS) -o $@ $^ $(LIBS) -ldl
