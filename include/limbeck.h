@@ -337,6 +337,7 @@ typedef struct lb_steady {
     bool *accumulating;      /* [n] set aside, grows or is not fixed by a law */
     int continuum;           /* dimension of a continuum of steady states that was met, of which one is listed; 0: none */
     size_t starts, converged; /* effort of the search */
+    bool all_faces;          /* false: there are more faces than were visited */
     bool interrupted;
 } lb_steady;
 

@@ -295,7 +295,8 @@ START_TEST(test_tank_loses_what_nothing_feeds)
         int found = 0;
         for (int i = 0; i < 3; i++) {
             const lb_steady_state *state = &a.steady->state[i];
-            found += fabs(value_of(&a, state, "A") - want[w]) < 1e-12 && fabs(value_of(&a, state, "B") - 1 + want[w]) < 1e-12;
+            found += fabs(value_of(&a, state, "A") - want[w]) < 1e-12 &&
+                     fabs(value_of(&a, state, "B") - 1 + want[w]) < 1e-12;
             ck_assert(value_of(&a, state, "C") == 0 && value_of(&a, state, "D") == 0);
         }
         ck_assert_int_eq(found, 1);

@@ -155,8 +155,8 @@ static bool allocate(equations *eq)
     eq->x = memory_array(n, sizeof *eq->x);
     eq->rate = memory_array((size_t)eq->system->steps, sizeof *eq->rate);
     eq->jacobian = memory_array((size_t)eq->system->nonzeros, sizeof *eq->jacobian);
-    return eq->state && eq->unknown && eq->is_signed && eq->unit && eq->law && eq->is_alive && eq->is_positive && eq->pool && eq->start &&
-           eq->is_ratio && eq->size && eq->law_size && eq->x && eq->rate && eq->jacobian;
+    return eq->state && eq->unknown && eq->is_signed && eq->unit && eq->law && eq->is_alive &&
+           eq->is_positive && eq->pool && eq->start && eq->is_ratio && eq->size && eq->law_size && eq->x && eq->rate && eq->jacobian;
 }
 
 static void choose_unknowns(equations *eq, const double *x0, const bool *is_zero)

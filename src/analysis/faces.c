@@ -282,7 +282,8 @@ lb_status faces_find(equations *eq, const bool *is_zero, const bool *must_vanish
     const lb_system *system = eq->system;
     faces found;
     faces_init(&found, system->n);
-    struct search s = {.system = system, .is_outside = is_zero, .is_alive = eq->is_alive, .found = &found, .err = err};
+    struct search s = {
+        .system = system, .is_outside = is_zero, .is_alive = eq->is_alive, .found = &found, .err = err};
     s.need_start = memory_zeroed((size_t)system->steps + 1, sizeof *s.need_start);
     s.is_in = memory_zeroed((size_t)system->n, sizeof *s.is_in);
     lb_status status = s.need_start && s.is_in ? find_needs(&s, eq->evaluator) : status_no_memory(err);

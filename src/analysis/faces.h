@@ -13,7 +13,7 @@ typedef struct faces {
     int count;
     size_t capacity;
     bool **is_zero;         /* [count] each [n]; owned */
-    bool is_complete;       /* false: the search hit its limit */
+    bool is_complete;       /* false: a limit was hit, there are more */
 } faces;
 
 void faces_init(faces *f, int n);

@@ -83,7 +83,8 @@ lb_status newton_init(newton *w, equations *eq, lb_error *err)
     w->step = memory_array(count, sizeof *w->step);
     w->trial = memory_array(count, sizeof *w->trial);
     w->pivot = memory_array(count, sizeof *w->pivot);
-    if (!w->relaxed_row || !w->row || !w->F || !w->trial_F || !w->A || !w->work || !w->right || !w->step || !w->trial || !w->pivot) {
+    if (!w->relaxed_row || !w->row || !w->F || !w->trial_F || !w->A || !w->work || !w->right || !w->step ||
+        !w->trial || !w->pivot) {
         newton_clear(w);
         return status_no_memory(err);
     }

@@ -10,7 +10,7 @@
 
 typedef struct newton {
     equations *eq;          /* borrowed */
-    bool is_square;         /* steps use as many rows as unknowns: there are no others, or too many for least squares */
+    bool is_square;         /* steps use as many rows as unknowns: there are no others, or too many */
     int *relaxed_row;       /* [count] these rows: of all species, or of some and the laws */
     int *row;               /* [count] the same with balances of pools in place of some */
     double *F, *trial_F;    /* [rows] */

@@ -81,8 +81,8 @@ static lb_status workspace_init(struct workspace *w, const lb_system *system, lb
     w->f = memory_array(n, sizeof *w->f);
     w->magnitude = memory_array(n, sizeof *w->magnitude);
     w->pivot = memory_array(rank, sizeof *w->pivot);
-    if (w->x && w->y && w->J && w->moved_J && w->reduced && w->moved && w->error && w->scale && w->matrix && w->vectors && w->inverse && w->bound &&
-        w->f && w->magnitude && w->pivot)
+    if (w->x && w->y && w->J && w->moved_J && w->reduced && w->moved && w->error && w->scale && w->matrix &&
+        w->vectors && w->inverse && w->bound && w->f && w->magnitude && w->pivot)
         return LB_OK;
     workspace_clear(w);
     return status_no_memory(err);

@@ -337,6 +337,7 @@ lb_status lb_steady_solve(const lb_system *system, const lb_steady_options *opti
         status = search_faces(&s);
     if (status == LB_OK) {
         sort_states(s.out);
+        s.out->all_faces = s.faces.is_complete && !s.out->interrupted;
         *out = s.out;
         s.out = NULL;
     }
