@@ -2,6 +2,7 @@
  *
  * Reference periods as in check_cycle.c. */
 #include <math.h>
+#include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
 
@@ -121,13 +122,18 @@ START_TEST(test_start_at_the_unstable_state_is_no_excuse)
 END_TEST
 
 /* A stable focus inside an unstable cycle inside a stable one: r' = r(-0.1 + r^2 -
- * r^4/4), radii sqrt(2 -+ sqrt(3.6)); the file starts inside both. */
+ * r^4/4), radii sqrt(2 -+ sqrt(3.6)); the file starts inside both, not far from the
+ * unstable one, or far. */
 START_TEST(test_hard_excitation_is_found_from_the_spread)
 {
+    static const char *const starts[] = {"0.1", "0.01"};
+    char text[400];
     bench b;
-    solve(&b, "units none\nsigned X, Y\n[X]0 = 0.1\n"
-              "-> X, v = [X]*(-0.1 + [X]^2 + [Y]^2 - ([X]^2 + [Y]^2)^2/4) - [Y]\n"
-              "-> Y, v = [Y]*(-0.1 + [X]^2 + [Y]^2 - ([X]^2 + [Y]^2)^2/4) + [X]\n", &given);
+    snprintf(text, sizeof text,
+             "units none\nsigned X, Y\n[X]0 = %s\n"
+             "-> X, v = [X]*(-0.1 + [X]^2 + [Y]^2 - ([X]^2 + [Y]^2)^2/4) - [Y]\n"
+             "-> Y, v = [Y]*(-0.1 + [X]^2 + [Y]^2 - ([X]^2 + [Y]^2)^2/4) + [X]\n", starts[_i]);
+    solve(&b, text, &given);
     assert_verdict(&b, LB_OSCILLATES);
     assert_close(b.answer->cycle->period, 2 * 3.14159265358979324, 1e-8, 0);
     assert_close(b.answer->cycle->high[0], sqrt(2 + sqrt(3.6)), 1e-8, 0);
@@ -400,7 +406,7 @@ Suite *oscillate_suite(void)
     tcase_add_test(at, test_brusselator_oscillates_beyond_its_hopf_point);
     tcase_add_test(at, test_brusselator_below_its_hopf_point_only_rings);
     tcase_add_test(at, test_start_at_the_unstable_state_is_no_excuse);
-    tcase_add_test(at, test_hard_excitation_is_found_from_the_spread);
+    tcase_add_loop_test(at, test_hard_excitation_is_found_from_the_spread, 0, 2);
     tcase_add_test(at, test_lotka_volterra_is_a_centre);
     tcase_add_test(at, test_centre_is_found_from_a_start_without_prey);
     tcase_add_loop_test(at, test_what_has_no_cycle_is_not_found, 0, 6);

@@ -103,6 +103,16 @@ static lb_status reduce_period(closed_orbit *c, const lb_monitor *monitor, lb_er
     return shoot(c, true, monitor, err);
 }
 
+static double growth_of(const closed_orbit *c)
+{
+    double growth = 0;
+    for (int k = 0; k < c->s.core; k++) {
+        int i = c->s.system->core_state[k];
+        growth = fmax(growth, (c->high[i] - c->low[i]) / c->scale[i]);
+    }
+    return growth;
+}
+
 /* No species moves by more than noise: the orbit has shrunk to a steady state. */
 static bool is_flat(const closed_orbit *c)
 {
@@ -136,6 +146,7 @@ static lb_status measure(closed_orbit *c, const lb_monitor *monitor, lb_error *e
     orbit_options options = closed_options(c, c->tolerance, monitor);
     lb_status status = orbit_measure(&c->s, c->x, c->period, &options, c->low, c->high, end, &c->steps, err);
     if (status == LB_OK) {
+        c->growth = growth_of(c);
         orbit_scale(&c->s, c->low, c->high, c->scale);
         c->closure = space_distance(&c->s, end, c->x, c->scale);
         c->converged = !is_flat(c) && stays_inside(c) && c->closure < CLOSED_CLOSURE;

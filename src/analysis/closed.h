@@ -17,6 +17,7 @@ typedef struct closed_orbit {
     double *x;                    /* [n] a point of it */
     double period;
     double *low, *high, *scale;   /* [n] */
+    double growth;                /* largest swing relative to the scale of the loop it was closed from */
     double closure;               /* space_distance after one period, integrated without tangents */
     size_t steps;
     lb_method method;             /* the cheaper one: explicit unless the orbit is stiff */

@@ -6,6 +6,7 @@
  * of it, at a distance that is held. */
 #include "analysis/confirm.h"
 
+#include <float.h>
 #include <math.h>
 #include <string.h>
 
@@ -13,9 +14,12 @@
 #include "base/status.h"
 
 #define PUSH 0.02                 /* in amplitudes */
+#define WRONG_PERIOD 1e-3         /* relative */
 #define FEW_PERIODS 6             /* to wait for a trajectory to fall back, in a small system */
 #define OTHER_TOLERANCE 100       /* times the first one */
 #define FAMILY_STEP 0.1           /* in amplitudes */
+#define FAMILY_TOLERANCE 1e-12
+#define FAMILY_CLOSURE 1e-11      /* in amplitudes: less damping than that per turn is not seen */
 
 /* ---- A second path ------------------------------------------------------------------ */
 
@@ -70,13 +74,14 @@ static lb_status period_by_return(const closed_orbit *c, integrator *it, double 
     return status;
 }
 
-/* Period by shooting again from x. */
-static lb_status period_by_shooting(const closed_orbit *c, double *x, const orbit_options *options,
-                                    double *period, lb_error *err)
+/* Period by shooting again from x, and from a wrong period: shooting that begins at the
+ * answer would return it. */
+static lb_status period_by_shooting(const closed_orbit *c, double *x, const double *hold,
+                                    const orbit_options *options, double *period, lb_error *err)
 {
     shooting shot = {.converged = false};
-    *period = c->period;
-    lb_status status = shooting_close(&c->s, x, period, c->scale, NULL, 100 * CLOSED_GOAL, options, &shot, err);
+    *period = c->period * (1 + WRONG_PERIOD);
+    lb_status status = shooting_close(&c->s, x, period, c->scale, hold, 100 * CLOSED_GOAL, options, &shot, err);
     if (status != LB_OK || !shot.converged)
         *period = NAN;
     shooting_clear(&shot);
@@ -101,9 +106,22 @@ static lb_status second_path(const closed_orbit *c, double *x, double *weight, c
         status = c->stable == LB_YES ? integrator_to(it, 2 * c->period, err) : LB_OK;
         memcpy(x, integrator_state(it), (size_t)c->s.n * sizeof *x);
         if (status == LB_OK)
-            status = period_by_shooting(c, x, options, period, err);
+            status = period_by_shooting(c, x, NULL, options, period, err);
     }
     integrator_free(it);
+    if (status != LB_OK)
+        *period = NAN;
+    return closed_is_fatal(status) ? status : LB_OK;
+}
+
+/* An orbit of a family, from where it is, with the point held. */
+static lb_status second_path_in_family(const closed_orbit *c, double *x, double *direction,
+                                       const orbit_options *options, double *period, lb_error *err)
+{
+    memcpy(x, c->x, (size_t)c->s.n * sizeof *x);
+    lb_status status = shooting_neutral(&c->shot, c->s.rank, direction, err);
+    if (status == LB_OK)
+        status = period_by_shooting(c, x, direction, options, period, err);
     if (status != LB_OK)
         *period = NAN;
     return closed_is_fatal(status) ? status : LB_OK;
@@ -116,13 +134,13 @@ lb_status confirm_period(const closed_orbit *c, bool is_family, const lb_monitor
     *difference = NAN;
     if (!x)
         return status_no_memory(err);
+    double *weight = x + c->s.n, *y = weight + c->s.n;
     orbit_options options = {.tolerance = OTHER_TOLERANCE * c->tolerance, .method = LB_METHOD_STIFF,
                              .monitor = monitor};
-    if (is_family)
-        memcpy(x, c->x, (size_t)c->s.n * sizeof *x);
-    else
-        push(c, x + 2 * c->s.n, x);
-    lb_status status = second_path(c, x, x + c->s.n, &options, &period, err);
+    if (!is_family)
+        push(c, y, x);
+    lb_status status = is_family ? second_path_in_family(c, x, y, &options, &period, err)
+                                 : second_path(c, x, weight, &options, &period, err);
     if (status == LB_OK)
         *difference = fabs(period - c->period) / c->period;
     memory_free(x);
@@ -130,6 +148,18 @@ lb_status confirm_period(const closed_orbit *c, bool is_family, const lb_monitor
 }
 
 /* ---- Families ---------------------------------------------------------------------- */
+
+/* How well it must close: as well as the tolerance allows, and rounding where the
+ * amplitude is small. */
+static double family_closure(const closed_orbit *c)
+{
+    double worst = 0;
+    for (int k = 0; k < c->s.core; k++) {
+        int i = c->s.system->core_state[k];
+        worst = fmax(worst, fmax(fabs(c->low[i]), fabs(c->high[i])) / c->scale[i]);
+    }
+    return fmax(FAMILY_CLOSURE, 1000 * DBL_EPSILON * worst);
+}
 
 /* Is there a closed orbit through the place `step` amplitudes along the neutral
  * direction?  The point is held there while it is closed: an orbit that stands
@@ -147,8 +177,8 @@ static lb_status closes_beside(const closed_orbit *c, const double *direction, d
     for (int i = 0; i < c->s.rank; i++)
         y[i] += step * direction[i] * c->scale[space_state(&c->s, i)];
     space_place(&c->s, y, x);
-    orbit_options options = closed_options(c, c->tolerance, monitor);
-    lb_status status = shooting_close(&c->s, x, &period, c->scale, direction, CLOSED_CLOSURE, &options, &shot, err);
+    orbit_options options = closed_options(c, FAMILY_TOLERANCE, monitor);
+    lb_status status = shooting_close(&c->s, x, &period, c->scale, direction, family_closure(c), &options, &shot, err);
     *closes = status == LB_OK && shot.converged;
     shooting_clear(&shot);
     memory_free(y);

@@ -37,6 +37,7 @@ enum {
 #define PERIOD_AGREES 1e-6        /* relative, between the two paths */
 #define NEAR_REST 1e-2
 #define AT_REST 1e-5
+#define IN_PLACE 1.5              /* factor by which the amplitudes of a neutral orbit may differ from the loop's */
 #define STARTS_AT_REST 1e-10
 #define STILL 1e-6
 #define STAYS 100.0               /* growth times that rounding would need to leave a saddle, and then some */
@@ -64,7 +65,6 @@ typedef struct explorer {
     size_t *turns;                /* [n] turning points when the epoch began */
     size_t epoch_end, epoch_length, epoch_returns, max_returns, max_steps;
     double repeat;                /* how close the next repeat must be */
-    double first_distance;        /* from the stable steady state, when first near it; else infinite */
     double still_since;           /* time since which it stands still; infinite when it moves */
     int attempts;                 /* at closing, that failed */
     bool is_done;
@@ -124,7 +124,7 @@ static lb_status explorer_init(explorer *e, lb_evaluator *evaluator, const doubl
     e->max_steps = options->max_steps ? options->max_steps : DEFAULT_STEPS;
     e->epoch_length = FIRST_EPOCH;
     e->repeat = FIRST_REPEAT;
-    e->first_distance = e->still_since = INFINITY;
+    e->still_since = INFINITY;
     lb_status status = space_init(&e->s, evaluator, x0, err);
     if (status == LB_OK)
         status = take_memory(e, err);
@@ -164,7 +164,7 @@ static void finish(explorer *e, cycle_outcome outcome, const char *why)
     e->is_done = true;
 }
 
-static lb_status settle(explorer *e, const double *where, const char *why, lb_error *err)
+static lb_status settle_cut(explorer *e, const double *where, bool is_cut, const char *why, lb_error *err)
 {
     cycle_report *report = e->report;
     size_t n = (size_t)e->s.n;
@@ -173,7 +173,17 @@ static lb_status settle(explorer *e, const double *where, const char *why, lb_er
         return status_no_memory(err);
     memcpy(report->rest, where, n * sizeof *where);
     finish(e, CYCLE_SETTLED, why);
-    return swings_summary(&e->swings, e->reach, &report->swings, &report->swing_decay, &report->swing_species, err);
+    swings_result seen;
+    lb_status status = swings_summary(&e->swings, e->reach, is_cut, &seen, err);
+    report->swings = seen.count;
+    report->swing_decay = seen.decay;
+    report->swing_species = seen.state;
+    return status;
+}
+
+static lb_status settle(explorer *e, const double *where, const char *why, lb_error *err)
+{
+    return settle_cut(e, where, false, why, err);
 }
 
 /* A point of the orbit as a state to start from: species set aside take what the
@@ -241,20 +251,14 @@ static lb_status look_for_rest(explorer *e, lb_error *err)
     bool moves = has_moved_far(e, x);
     memcpy(e->asked, x, (size_t)e->s.n * sizeof *x);
     if (moves) {
-        e->first_distance = e->still_since = INFINITY;
-        r->found = false;
+        e->still_since = INFINITY;
         return LB_OK;
     }
     lb_status status = rest_near(r, &e->s, x, e->reach, NEAR_REST, err);
     if (status != LB_OK)
         return status;
-    if (!r->found || r->distance >= NEAR_REST || r->stable == LB_NO) {
-        e->first_distance = INFINITY;
-    } else if (r->distance < AT_REST && r->stable == LB_YES) {
+    if (r->found && r->distance < AT_REST && r->stable == LB_YES)
         return settle(e, r->x, "it comes to rest at a stable steady state", err);
-    } else if (!isfinite(e->first_distance)) {
-        e->first_distance = r->distance;
-    }
     return look_for_stillness(e, err);
 }
 
@@ -309,11 +313,30 @@ static lb_status stop_at_failure(explorer *e, lb_status status)
     return status;
 }
 
+/* Does it ring down, too slowly to wait for?  Its swings fade, and there is a stable
+ * steady state in the middle of them. */
+static lb_status look_for_ringing(explorer *e, bool *rings, lb_error *err)
+{
+    swings_result seen;
+    lb_status status = swings_summary(&e->swings, e->reach, true, &seen, err);
+    *rings = false;
+    if (status != LB_OK || !seen.fades)
+        return status;
+    for (int i = 0; i < e->s.n; i++)
+        e->scale[i] = 0.5 * (e->low[i] + e->high[i]);
+    status = rest_near(&e->rest, &e->s, e->scale, e->reach, INFINITY, err);
+    *rings = status == LB_OK && e->rest.found && e->rest.stable == LB_YES;
+    return status;
+}
+
 static lb_status give_up(explorer *e, lb_error *err)
 {
-    const rest *r = &e->rest;
-    if (r->found && r->stable == LB_YES && r->distance < 0.5 * e->first_distance)
-        return settle(e, r->x, "it approaches a stable steady state, slowly", err);
+    bool rings;
+    lb_status status = look_for_ringing(e, &rings, err);
+    if (status != LB_OK)
+        return status;
+    if (rings)
+        return settle_cut(e, e->rest.x, true, "it rings down to a stable steady state, slowly", err);
     if (e->report->returns <= SECTION_LOOPS)
         finish(e, CYCLE_UNDECIDED, "it neither rests nor recurs within the effort");
     else if (e->s.n > CLOSED_LIMIT)
@@ -325,20 +348,29 @@ static lb_status give_up(explorer *e, lb_error *err)
 
 /* ---- Closing ------------------------------------------------------------------------------ */
 
-/* The orbit through x0 of a family; the one at hand where that does not close. */
+/* An orbit that was closed where the trajectory is, and not by shrinking away from
+ * there: slow damping has closed orbits of no size. */
+static bool is_in_place(const closed_orbit *orbit)
+{
+    return orbit->converged && orbit->growth > 1 / IN_PLACE && orbit->growth < IN_PLACE;
+}
+
+/* The orbit through x0 of a family.  In the plane there must be one; in more dimensions
+ * x0 may lead to the family without lying on it, and the orbit at hand serves. */
 static lb_status report_centre(explorer *e, const closed_orbit *orbit, lb_error *err)
 {
-    const char *why = "closed orbits of several amplitudes: a centre";
     const lb_monitor *monitor = e->options->monitor;
     double difference;
     closed_orbit own;
     lb_status status = closed_find(&own, e->s.evaluator, e->x0, orbit->period, true, e->closing_tolerance, monitor,
                                    err);
-    const closed_orbit *best = own.converged ? &own : orbit;
-    if (status == LB_OK)
+    const closed_orbit *best = is_in_place(&own) ? &own : orbit;
+    if (status == LB_OK && (best == &own || e->s.rank > 2)) {
         status = confirm_period(best, true, monitor, &difference, err);
-    if (status == LB_OK)
-        status = report_orbit(e, best, difference, CYCLE_CENTRE, why, err);
+        if (status == LB_OK)
+            status = report_orbit(e, best, difference, CYCLE_CENTRE,
+                                  "closed orbits of several amplitudes: a centre", err);
+    }
     closed_clear(&own);
     return status;
 }
@@ -354,6 +386,8 @@ static lb_status judge_orbit(explorer *e, const closed_orbit *orbit, lb_error *e
         return status;
     }
     bool is_family;
+    if (!is_in_place(orbit))
+        return LB_OK;
     lb_status status = confirm_is_family(orbit, monitor, &is_family, err);
     return status == LB_OK && is_family ? report_centre(e, orbit, err) : status;
 }
@@ -379,8 +413,10 @@ static lb_status watch_section(explorer *e, lb_error *err)
     if (!e->section.is_placed)
         return LB_OK;
     lb_status status = section_watch(&e->section, e->it, &returned, err);
-    if (status != LB_OK || !returned)
-        return status;
+    if (status != LB_OK)
+        return stop_at_failure(e, status);
+    if (!returned)
+        return LB_OK;
     e->epoch_returns++;
     e->report->returns++;
     if (e->attempts >= MOST_ATTEMPTS || e->s.n > CLOSED_LIMIT)
@@ -446,7 +482,8 @@ static lb_status advance(explorer *e, lb_error *err)
         e->high[i] = fmax(e->high[i], x[i]);
         e->reach[i] = fmax(e->reach[i], fabs(x[i]));
     }
-    return swings_watch(&e->swings, &e->turning, e->before, e->after, err);
+    status = swings_watch(&e->swings, &e->turning, e->before, e->after, err);
+    return status == LB_OK ? LB_OK : stop_at_failure(e, status);
 }
 
 static lb_status explore(explorer *e, lb_error *err)
@@ -482,7 +519,10 @@ lb_status cycle_find(lb_evaluator *evaluator, const double *x0, const cycle_opti
     report->outcome = CYCLE_UNDECIDED;
     report->swing_species = -1;
     report->why = "";
-    lb_status status = explorer_init(&e, evaluator, x0, options ? options : &defaults, report, err);
+    memset(&e, 0, sizeof e);
+    lb_status status = system_require_laws(evaluator_system(evaluator), err);
+    if (status == LB_OK)
+        status = explorer_init(&e, evaluator, x0, options ? options : &defaults, report, err);
     if (status == LB_OK)
         status = explore(&e, err);
     explorer_clear(&e);

@@ -71,6 +71,9 @@ static lb_status note(hunt *h, const double *x, bool notes_swings, cycle_report 
 lb_status hunt_from(hunt *h, const double *x, bool notes_swings, lb_error *err)
 {
     cycle_report report;
+    const lb_monitor *monitor = h->options.monitor;
+    if (monitor && monitor->progress && h->answer->scope == LB_SCOPE_GIVEN)
+        monitor->progress(monitor->context, "following trajectories", -1);
     h->answer->integrations++;
     lb_status status = cycle_find(h->evaluator, x, &h->options, &report, err);
     if (status == LB_OK)

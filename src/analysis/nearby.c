@@ -15,11 +15,12 @@
 #include "base/memory.h"
 #include "base/status.h"
 
+enum { SPREAD_SCALES = 3 };       /* starts lie within one, two and three decades in turn */
+
 #define PUSH 0.01                 /* relative to the species' size, along an unstable direction */
 #define PUSH_NEUTRAL 0.1
 #define SMALL_FRACTION 1e-3       /* of the largest species: size of one that is zero */
 #define SIGNED_FRACTION 0.1       /* the same for a signed one, whose zero means nothing */
-#define SPREAD 10.0
 #define ON_THE_AXIS 1e-8          /* real part relative to imaginary part */
 
 typedef struct pusher {
@@ -131,12 +132,14 @@ lb_status nearby_spread(lb_evaluator *evaluator, const double *x, const double *
     lb_status status = pusher_init(&p, evaluator, x, x0, err);
     if (status == LB_OK) {
         const lb_network *net = p.s.system->network;
+        double decades = (double)(1 + i % SPREAD_SCALES);
         sample_point(seed, i, p.s.rank, p.direction);
         for (int j = 0; j < p.s.rank; j++) {
             int state = space_state(&p.s, j);
             double u = 2 * p.direction[j] - 1;
             bool is_signed = net->species[net->state_species[state]].is_signed;
-            p.direction[j] = is_signed ? u * SPREAD * p.size[state] : p.size[state] * pow(SPREAD, u) - p.x[state];
+            p.direction[j] = is_signed ? u * pow(10, decades) * p.size[state]
+                                       : p.size[state] * pow(10, u * decades) - p.x[state];
         }
         space_lift(&p.s, p.direction, p.change);
         double fraction = 1;

@@ -17,8 +17,8 @@
 lb_status nearby_unstable(lb_evaluator *evaluator, const double *x, const double *x0,
                           double *starts, int *count, lb_error *err);
 
-/* A state within a decade of x [n] (ten times its size for signed variables) in
- * its compatibility class: point i of a low-discrepancy sequence, drawn towards x
+/* A state within one, two or three decades of x [n], in turn (for signed variables ten,
+ * hundred or thousand times its size), in its compatibility class: point i of a low-discrepancy sequence, drawn towards x
  * until it is inside the orthant. */
 lb_status nearby_spread(lb_evaluator *evaluator, const double *x, const double *x0, uint64_t seed, uint64_t i,
                         double *start, lb_error *err);

@@ -21,8 +21,8 @@
 #include "limbeck.h"
 
 enum {
-    SPREAD = 6,                   /* starts around the steady states */
-    SPREAD_FEW = 2,               /* the same from LARGE states up, and where some trajectory never rests */
+    SPREAD = 9,                   /* starts around the steady states */
+    SPREAD_FEW = 3,               /* the same from LARGE states up, and where some trajectory never rests */
     LARGE = 40,
     SPREAD_RETURNS = 500,
     SPREAD_STEPS = 40000
@@ -261,13 +261,16 @@ lb_status lb_oscillate_solve(const lb_system *system, const lb_oscillate_options
     *out = NULL;
     if (!options->given && !options->ranges)
         return status_raise(err, LB_E_ARG, "ask for given, ranges or both", "no scope was asked for");
+    lb_status status = system_require_laws(system, err);
+    if (status != LB_OK)
+        return status;
     lb_oscillate *result = memory_zeroed(1, sizeof *result);
     if (!result)
         return status_no_memory(err);
     result->states = system->n;
     result->constants = system->m;
     result->answer = memory_zeroed(2, sizeof *result->answer);
-    lb_status status = result->answer ? LB_OK : status_no_memory(err);
+    status = result->answer ? LB_OK : status_no_memory(err);
     if (status == LB_OK && options->given)
         status = solve_scope(system, options, result, LB_SCOPE_GIVEN, err);
     bool was_stopped = result->count > 0 && result->answer[0].interrupted;

@@ -12,9 +12,10 @@
 #include "base/memory.h"
 #include "base/status.h"
 
-enum { TRACK_LIMIT = 1000, FEWEST = 3 };
+enum { TRACK_LIMIT = 1000, FEWEST = 3, MANY = 20 };
 
 #define SWING_NOISE 1e-3          /* of the largest swing */
+#define FADING 0.95               /* of the swings are smaller than the one before */
 #define SMALLEST_SWING 1e-4       /* of the species' magnitude: well above the tolerance of the run */
 
 lb_status swings_init(swings *w, const space *s, lb_error *err)
@@ -90,9 +91,8 @@ static int ascending(const void *a, const void *b)
     return (x > y) - (x < y);
 }
 
-/* Median ratio of successive prominent swings: the first swings of a wide start and
- * the last of a fine end do not sway it.  scratch has room for the track. */
-static double median_ratio(const swings_track *track, double largest, double *scratch)
+/* Ratios of successive prominent swings into ratio, which has room for the track. */
+static size_t ratios(const swings_track *track, double largest, double *ratio)
 {
     double last = 0;
     size_t count = 0;
@@ -101,35 +101,46 @@ static double median_ratio(const swings_track *track, double largest, double *sc
         if (size <= SWING_NOISE * largest)
             continue;
         if (last > 0)
-            scratch[count++] = size / last;
+            ratio[count++] = size / last;
         last = size;
     }
-    qsort(scratch, count, sizeof *scratch, ascending);
-    return count % 2 ? scratch[count / 2] : 0.5 * (scratch[count / 2 - 1] + scratch[count / 2]);
+    return count;
 }
 
-lb_status swings_summary(const swings *w, const double *reach, int *count, double *decay, int *state, lb_error *err)
+/* The median: the first swings of a wide start and the last of a fine end do not sway
+ * it. */
+static void judge(const swings_track *track, double largest, bool is_cut, double *ratio, swings_result *out)
+{
+    size_t count = ratios(track, largest, ratio), falling = 0;
+    for (size_t j = 0; j < count; j++)
+        falling += ratio[j] < 1;
+    qsort(ratio, count, sizeof *ratio, ascending);
+    out->decay = count % 2 ? ratio[count / 2] : 0.5 * (ratio[count / 2 - 1] + ratio[count / 2]);
+    out->fades = count >= MANY && falling >= FADING * (double)count && out->decay < 1;
+    if (out->fades && (is_cut || track->count >= TRACK_LIMIT))
+        out->count = (int)fmin(1e9, ceil(log(SWING_NOISE) / log(out->decay)));
+}
+
+lb_status swings_summary(const swings *w, const double *reach, bool is_cut, swings_result *out, lb_error *err)
 {
     double best = SMALLEST_SWING, largest = 0;
-    *count = 0;
-    *decay = 0;
-    *state = -1;
+    *out = (swings_result){.state = -1};
     for (int k = 0; k < w->s->core; k++) {
         int i = w->s->system->core_state[k], found = prominent(&w->track[i], &largest);
         if (found < FEWEST || !(largest > best * reach[i]))
             continue;
         best = largest / reach[i];
-        *count = found;
-        *state = i;
+        out->count = found;
+        out->state = i;
     }
-    if (*state < 0)
+    if (out->state < 0)
         return LB_OK;
-    const swings_track *track = &w->track[*state];
+    const swings_track *track = &w->track[out->state];
     double *scratch = memory_array(track->count, sizeof *scratch);
     if (!scratch)
         return status_no_memory(err);
     prominent(track, &largest);
-    *decay = median_ratio(track, largest, scratch);
+    judge(track, largest, is_cut, scratch, out);
     memory_free(scratch);
     return LB_OK;
 }

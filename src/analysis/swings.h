@@ -29,10 +29,18 @@ lb_status swings_watch(swings *w, const orbit_turning *turning, const double *be
 /* Turning points of species `state` so far. */
 size_t swings_turns(const swings *w, int state);
 
+typedef struct swings_result {
+    int count;                    /* 0: none */
+    double decay;                 /* median ratio of successive swings */
+    int state;                    /* -1: none */
+    bool fades;                   /* there are many, and nearly each is smaller than the one before */
+} swings_result;
+
 /* Of the species whose swings are largest relative to reach [n], its largest
- * magnitude: how many stand above noise (more than a thousandth of the largest), and
- * the median ratio of successive ones.  At most the first 500 are looked at.  No
- * species with at least three: 0, 0, -1.  LB_OK or LB_E_NOMEM. */
-lb_status swings_summary(const swings *w, const double *reach, int *count, double *decay, int *state, lb_error *err);
+ * magnitude: how many stand above noise (more than a thousandth of the largest).  Fewer
+ * than three are none.  Where the trajectory was not followed to its end (is_cut), or
+ * the swings were too many to keep, the count is what the ratio leads to, if they fade.
+ * LB_OK or LB_E_NOMEM. */
+lb_status swings_summary(const swings *w, const double *reach, bool is_cut, swings_result *out, lb_error *err);
 
 #endif
