@@ -385,7 +385,10 @@ typedef struct lb_oscillate_answer {
     double *k;               /* [m] constants of the witness; NULL when not found */
     double *start;           /* [n] state from which the orbit was reached; NULL when not found */
     char *witness;           /* text of a .mech file that runs; NULL when not found */
-    int swings;              /* transient oscillation seen on the way to rest: maxima; 0: none */
+    bool keeps_moving;       /* some trajectory stays bounded and neither rests nor closes: chaos, a torus, or very slow */
+    bool runs_away;          /* some trajectory grows without bound */
+    int swings;              /* transient oscillation on the way to rest: swings above a thousandth of the largest,
+                              * led on by their ratio where they last too long to follow; 0: none */
     double swing_decay;      /* ratio of successive swings, 0 when none */
     int swing_species;       /* state in which the swings are largest; -1: none */
     size_t unstable;         /* unstable steady states met */

@@ -205,6 +205,17 @@ START_TEST(test_chaos_is_not_found_and_says_that_it_moves)
               "-> X, v = 10*([Y] - [X])\n-> Y, v = [X]*(28 - [Z]) - [Y]\n-> Z, v = [X]*[Y] - 8*[Z]/3\n", &given);
     assert_verdict(&b, LB_NOT_FOUND);
     ck_assert(strstr(b.answer->limits, "keeps moving") != NULL);
+    ck_assert(b.answer->keeps_moving && !b.answer->runs_away);
+    close_bench(&b);
+}
+END_TEST
+
+START_TEST(test_growth_without_bound_is_said)
+{
+    bench b;
+    solve(&b, "units none\n[S]0 = 1\n[P]0 = 3\n-> S, k = 1.2\nS + 2 P -> 3 P, k = 1e-3\nP ->, k = 1\n", &given);
+    ck_assert(b.answer->runs_away);
+    ck_assert(strstr(b.answer->limits, "without bound") != NULL);
     close_bench(&b);
 }
 END_TEST
@@ -411,6 +422,7 @@ Suite *oscillate_suite(void)
     tcase_add_test(at, test_centre_is_found_from_a_start_without_prey);
     tcase_add_loop_test(at, test_what_has_no_cycle_is_not_found, 0, 6);
     tcase_add_test(at, test_cycle_in_a_class_with_a_conservation_law);
+    tcase_add_test(at, test_growth_without_bound_is_said);
     tcase_add_test(at, test_chaos_is_not_found_and_says_that_it_moves);
     suite_add_tcase(suite, at);
     TCase *box = tcase_create("ranges");

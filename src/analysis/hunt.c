@@ -54,11 +54,11 @@ static lb_status note(hunt *h, const double *x, bool notes_swings, cycle_report 
         }
         return LB_OK;
     case CYCLE_UNBOUNDED:
-        h->runs_away = true;
+        answer->runs_away = true;
         return LB_OK;
     case CYCLE_UNDECIDED:
         if (report->returns >= RETURNS_WHEN_MOVING) {
-            h->keeps_moving = true;
+            answer->keeps_moving = true;
             h->options.max_returns = RETURNS_WHEN_MOVING;
         } else {
             h->is_cut_short = true;

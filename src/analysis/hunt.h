@@ -10,9 +10,7 @@ typedef struct hunt {
     lb_evaluator *evaluator;      /* borrowed, bound */
     lb_oscillate_answer *answer;  /* borrowed; takes the witness and the counts */
     cycle_options options;
-    bool keeps_moving;            /* a trajectory recurred without closing */
-    bool runs_away;               /* one grew without bound */
-    bool is_cut_short;            /* one could not be followed to an end */
+    bool is_cut_short;            /* a trajectory could not be followed to an end */
 } hunt;
 
 /* Follow the trajectory from x [n].  An attracting cycle makes the verdict

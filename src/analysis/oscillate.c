@@ -88,10 +88,10 @@ static void write_coverage(const hunt *h, buffer *text)
         buffer_printf(text, "%zu set%s of constants %s tried: a cycle between the samples, or beside a steady state "
                       "that is stable, is missed", answer->samples, answer->samples == 1 ? "" : "s",
                       answer->samples == 1 ? "was" : "were");
-    if (h->keeps_moving)
+    if (answer->keeps_moving)
         buffer_append(text, "; some trajectory keeps moving within bounds without closing (chaos, a torus or a "
                             "very slow approach: this search does not tell)");
-    if (h->runs_away)
+    if (answer->runs_away)
         buffer_append(text, "; some trajectory grows without bound");
     if (h->is_cut_short)
         buffer_append(text, "; some trajectory could not be followed to its end");
@@ -132,11 +132,11 @@ static lb_status finish(const hunt *h, lb_error *err)
 /* Around the steady states in turn, or around x0 where there is none. */
 static lb_status hunt_spread(hunt *h, const lb_steady *steady, const double *x0, uint64_t seed, lb_error *err)
 {
-    size_t starts = steady->states < LARGE && !h->keeps_moving ? SPREAD : SPREAD_FEW;
+    size_t starts = steady->states < LARGE && !h->answer->keeps_moving ? SPREAD : SPREAD_FEW;
     double *x = memory_array((size_t)steady->states, sizeof *x);
     if (!x)
         return status_no_memory(err);
-    h->options.max_returns = h->keeps_moving ? h->options.max_returns : SPREAD_RETURNS;
+    h->options.max_returns = h->answer->keeps_moving ? h->options.max_returns : SPREAD_RETURNS;
     h->options.max_steps = SPREAD_STEPS;
     lb_status status = LB_OK;
     for (size_t i = 0; i < starts && status == LB_OK && h->answer->verdict == LB_NOT_FOUND; i++) {
