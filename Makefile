@@ -21,6 +21,9 @@ LIBS    = -lgsl -llapacke -llapack -lblas -lklu -lflint -lmpfr -lgmp -ljansson -
 PACKAGES = gcc libc6-dev make pkg-config flex bison libgsl-dev liblapacke-dev liblapack-dev libblas-dev libsuitesparse-dev \
            libflint-dev libgmp-dev libmpfr-dev libjansson-dev check
 
+# SUNDIALS is a floor to measure against, and what the emitted glue is compiled with.
+BENCH_PACKAGES = libsundials-dev
+
 # `make V=1` shows the commands.
 Q   = $(if $(V),,@)
 say = @$(if $(V),true,printf '  %-8s %s\n' '$(1)' '$(2)')
@@ -122,6 +125,7 @@ test-sanitized: deps
 	@$(MAKE) --no-print-directory BUILD=$(BUILD)-sanitized CFLAGS="-O1 -g $(SANITIZE)" all $(BUILD)-sanitized/tests/run
 	@$(MAKE) --no-print-directory BUILD=$(BUILD)-sanitized test-run
 
+test-long: PACKAGES += $(BENCH_PACKAGES)
 test-long: deps
 	@$(MAKE) --no-print-directory all $(BUILD)/tests/run
 	CK_DEFAULT_TIMEOUT=3600 LB_TEST_LONG=1 $(BUILD)/tests/run
@@ -136,7 +140,6 @@ coverage: deps
 	@$(MAKE) --no-print-directory BUILD=$(BUILD)-coverage test-run
 	sh tests/coverage.sh $(BUILD)-coverage
 
-BENCH_PACKAGES = libsundials-dev
 bench: PACKAGES += $(BENCH_PACKAGES)
 bench: deps
 	@$(MAKE) --no-print-directory all $(BENCHES)

@@ -4,6 +4,7 @@
  * that fails shows it. */
 #include "emitted.h"
 
+#include <ctype.h>
 #include <dirent.h>
 #include <dlfcn.h>
 #include <fcntl.h>
@@ -72,6 +73,21 @@ void emitted_write_as(const emitted_folder *folder, const lb_network *net, const
     emitted_write_file(folder, file, lb_text_get(source, NULL));
     lb_text_free(header);
     lb_text_free(source);
+}
+
+void emitted_write_glue(const emitted_folder *folder, const lb_network *net, const lb_emit_options *options)
+{
+    static const char *const endings[] = {".h", ".c", "_main.c"};
+    const char *solver = options->solver == LB_SOLVER_GSL ? "gsl" : "cvodes";
+    lb_text *text[3] = {lb_text_new(), lb_text_new(), lb_text_new()};
+    lb_error err = {.code = LB_OK};
+    ck_assert_msg(lb_emit_glue(net, options, text[0], text[1], text[2], &err) == LB_OK, "%s", err.message);
+    for (int i = 0; i < 3; i++) {
+        char file[FILE_NAME];
+        snprintf(file, sizeof file, "%s_%s%s", options->name, solver, endings[i]);
+        emitted_write_file(folder, file, lb_text_get(text[i], NULL));
+        lb_text_free(text[i]);
+    }
 }
 
 static char *read_all(const char *path)
@@ -184,4 +200,53 @@ emitted_model emitted_find(const emitted_folder *folder, const char *name)
         .column_start = symbol(folder, name, "column_start"),
         .row = symbol(folder, name, "row"),
     };
+}
+
+/* The text without comments and strings, trigraphs and spliced lines resolved first as C
+ * does (C99 5.1.1.2). */
+static char *strip(const char *text)
+{
+    char *plain = calloc(strlen(text) + 1, 1), *out = plain;
+    for (const char *c = text; *c;) {
+        bool is_trigraph = strncmp(c, "\?\?/", 3) == 0;
+        const char *after = c + (is_trigraph ? 3 : 1);
+        if ((*c == '\\' || is_trigraph) && *after == '\n') {
+            c = after + 1;
+        } else {
+            *out++ = is_trigraph ? '\\' : *c;
+            c = after;
+        }
+    }
+    char *write = plain;
+    for (const char *c = plain; *c;) {
+        if (c[0] == '/' && c[1] == '*') {
+            const char *end = strstr(c + 2, "*/");
+            ck_assert_msg(end != NULL, "a comment without an end");
+            c = end + 2;
+        } else if (*c == '"' || *c == '\'') {
+            char quote = *c++;
+            while (*c && *c != quote)
+                c += *c == '\\' ? 2 : 1;
+            c++;
+        } else {
+            *write++ = *c++;
+        }
+    }
+    *write = '\0';
+    return plain;
+}
+
+/* No byte outside comments and strings but printable ASCII, and no INJECT but in d_ names. */
+void emitted_assert_harmless(const char *text)
+{
+    char *code = strip(text);
+    for (const char *c = code; *c; c++)
+        ck_assert_msg(*c == '\n' || (*c >= ' ' && *c < 0x7f), "byte %#x in the code", (unsigned)(unsigned char)*c);
+    for (const char *c = code; (c = strstr(c, "INJECT")) != NULL; c++) {
+        const char *first = c;
+        while (first > code && (isalnum((unsigned char)first[-1]) || first[-1] == '_'))
+            first--;
+        ck_assert_msg(first[0] == 'd' && (first[1] == '_' || isdigit((unsigned char)first[1])), "injected: %.60s", first);
+    }
+    free(code);
 }

@@ -29,6 +29,13 @@ void emitted_write(const emitted_folder *folder, const lb_network *net, const ch
 void emitted_write_as(const emitted_folder *folder, const lb_network *net, const lb_emit_options *options);
 void emitted_write_file(const emitted_folder *folder, const char *file, const char *text);
 
+/* Write NAME_gsl.h, ..., of options->solver. */
+void emitted_write_glue(const emitted_folder *folder, const lb_network *net, const lb_emit_options *options);
+
+/* The test fails where a byte outside comments and strings is no printable ASCII, or where
+ * INJECT, which names of the test contain, stands there otherwise than in a name d_.... */
+void emitted_assert_harmless(const char *text);
+
 /* Run a program in the folder, by its name and NULL-terminated arguments; its exit
  * status, 127 when there is no such program.  *output (when not NULL): what it
  * printed, both streams; the caller frees it. */
