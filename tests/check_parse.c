@@ -250,10 +250,10 @@ START_TEST(test_places_count_characters)
     ck_assert_uint_eq(lb_diagnostics_count(p.list), 0);
     assert_span(s->where, 2, 2, 31);
     assert_span(s->label_where, 2, 2, 4);
-    assert_span(s->left->coefficient_where, 2, 8, 1);
+    assert_span(s->left->coefficient->where, 2, 8, 1);
     assert_span(s->left->species.where, 2, 10, 2);
     assert_span(s->arrow_where, 2, 13, 1);
-    assert_span(s->right->coefficient_where, 2, 15, 5);
+    assert_span(s->right->coefficient->where, 2, 15, 5);
     assert_span(s->right->species.where, 2, 21, 1);
     assert_span(s->settings->name_where, 2, 24, 1);
     assert_span(s->settings->value->where, 2, 28, 5);

@@ -104,10 +104,10 @@ static void put_expression(buffer *b, const syntax_expression *e)
 static void put_side(buffer *b, const syntax_term *t)
 {
     for (; t; t = t->next) {
-        if (t->expression)
-            put_wrapped(b, "", t->expression, " ");
+        if (t->coefficient && t->coefficient->expression)
+            put_wrapped(b, "", t->coefficient->expression, " ");
         else if (t->coefficient)
-            buffer_printf(b, "%.17g ", t->number);
+            buffer_printf(b, "%.17g ", strtod(t->coefficient->text, NULL));
         buffer_printf(b, t->species.is_quoted ? "\"%s\"%s" : "%s%s", t->species.text, t->next ? " + " : "");
     }
 }

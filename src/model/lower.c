@@ -104,10 +104,10 @@ static lb_status read_all(lower *l, lb_error *err)
     return status;
 }
 
-/* A network without faults: its texts, its warnings. */
+/* A network without faults: its values, its warnings. */
 static void complete(lower *l)
 {
-    l->status = network_finish(l->net);
+    l->status = network_settle(l->net);
     if (l->status == LB_OK)
         lower_warnings(l);
     if (l->status == LB_OK)

@@ -26,27 +26,30 @@
 /* What a plain number must not be, from where it is used. */
 typedef enum lower_sign { SIGN_ANY, SIGN_NOT_NEGATIVE, SIGN_POSITIVE } lower_sign;
 
+/* What a setting put in place of a plain number. */
+typedef struct lower_replacement {
+    int setting;                    /* its index */
+    bool has_unit;
+    dimension unit;
+} lower_replacement;
+
 /* A plain number of the file: a number, signed or not, with a unit or without. */
 typedef struct lower_plain {
     const char *name;               /* "k2", "[A]", "R3.kf" */
-    network_constant_kind kind;
-    bool is_initial;                /* [X]0: no constant of the network */
     span where;
-    const syntax_range *range;
-    double number;                  /* as written */
-    unit measure;                   /* its unit; one when none is written */
-    bool has_unit;
+    network_constant_kind kind;
     double written, stored;         /* in stored units: the file's, and a setting's when there is one */
     form dim;
     int unknown;                    /* of a bare number; -1: its dimension is known */
     int constant;                   /* in the network, -1 for initials */
-    lower_sign sign;
     const char *sign_why;           /* "rate constant", "concentration", ... */
-    bool has_range, is_bad;
+    lower_sign sign;
+    bool is_initial;                /* [X]0: no constant of the network */
+    bool has_unit, has_range, is_bad;
+    const syntax_range *range;
+    const unit *measure;            /* with a range: the unit as written, one when there is none */
     double low, high;
-    int setting;                    /* index of the setting that replaced it, or -1 */
-    dimension set_unit;             /* of that setting */
-    bool set_has_unit;
+    const lower_replacement *set;   /* NULL: no setting */
 } lower_plain;
 
 /* What an expression came to. */

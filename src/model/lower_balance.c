@@ -56,15 +56,17 @@ static void add_quantity(struct tally *t, int side, int quantity, int64_t count,
 static void add_term(lower *l, struct tally *t, int side, const syntax_term *term)
 {
     rational exact = {1, 1};
-    double coefficient = term->number;
-    if (term->expression) {
+    double coefficient = 1;
+    bool is_expression = term->coefficient && term->coefficient->expression;
+    if (is_expression) {
         lower_context context = {.what = "a coefficient"};
-        coefficient = lower_evaluate(l, term->expression, &context).number;
+        coefficient = lower_evaluate(l, term->coefficient->expression, &context).number;
         t->is_exact = false;
     } else if (term->coefficient) {
-        rational_read(term->coefficient, &exact);
+        rational_read(term->coefficient->text, &exact);
+        coefficient = (double)exact.num / (double)exact.den;
     }
-    const rational *known = term->expression ? NULL : &exact;
+    const rational *known = is_expression ? NULL : &exact;
     const formula *f = &l->species[lower_find_species(l, term->species.text)].atoms;
     for (int i = 0; i < f->atom_count; i++)
         add_quantity(t, side, f->atoms[i].element, f->atoms[i].count, known, coefficient);

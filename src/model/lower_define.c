@@ -144,9 +144,10 @@ static void store_definition(lower *l, const lower_definition *d)
     buffer_init(&text);
     if (infer_resolve(&l->inf, &d->value.dim, &dim))
         unit_write(&l->net->units, &dim, &text);
-    memory_free(n->unit);
-    n->unit = buffer_take(&text);
-    if (!n->unit)
+    char *words = buffer_take(&text);
+    if (words)
+        network_set_unit(&n->unit, words);
+    else
         lower_no_memory(l);
 }
 

@@ -132,22 +132,32 @@ int lower_add_plain(lower *l, const char *name, network_constant_kind kind, span
         lower_no_memory(l);
         return -1;
     }
-    l->plains[l->plain_count] = (lower_plain){.name = name, .kind = kind, .where = where, .measure = unit_one(),
-                                              .dim = form_none(), .unknown = -1, .constant = -1, .setting = -1};
+    l->plains[l->plain_count] = (lower_plain){.name = name, .kind = kind, .where = where,
+                                              .dim = form_none(), .unknown = -1, .constant = -1};
     return (int)l->plain_count++;
 }
 
-static void set_dimension(lower *l, lower_plain *p)
+static void set_dimension(lower *l, lower_plain *p, const unit *measure)
 {
     if (l->net->units.none)
         return;
     if (p->has_unit) {
-        p->dim = form_known(&p->measure.dim);
+        p->dim = form_known(&measure->dim);
     } else {
         p->unknown = infer_new(&l->inf);
         if (p->unknown < 0 || !form_unknown(&l->inf, p->unknown, &p->dim))
             lower_no_memory(l);
     }
+}
+
+static const unit *keep_unit(lower *l, const unit *measure)
+{
+    unit *kept = arena_alloc(l->memory, sizeof *kept);
+    if (kept)
+        *kept = *measure;
+    else
+        lower_no_memory(l);
+    return kept;
 }
 
 /* A plain number for this expression, or -1 when it is none. */
@@ -163,8 +173,7 @@ static int make_plain(lower *l, const char *name, network_constant_kind kind, co
     if (index < 0)
         return -1;
     lower_plain *p = &l->plains[index];
-    p->number = number;
-    p->measure = measure;
+    p->measure = range ? keep_unit(l, &measure) : NULL;
     p->has_unit = has_unit;
     p->range = range;
     p->written = p->stored = unit_to_stored(&l->net->units, &measure, number);
@@ -172,7 +181,7 @@ static int make_plain(lower *l, const char *name, network_constant_kind kind, co
         diagnostics_fault(l->list, p->where, NULL, "this number is too large in the units of the file");
         p->is_bad = true;
     }
-    set_dimension(l, p);
+    set_dimension(l, p, &measure);
     return index;
 }
 
@@ -295,7 +304,7 @@ static void check_bare(lower *l, lower_plain *p, const dimension *d)
 
 static void check_sign(lower *l, const lower_plain *p)
 {
-    if (p->setting >= 0 || p->is_bad)
+    if (p->set || p->is_bad)
         return;
     if (p->sign == SIGN_NOT_NEGATIVE && p->stored < 0)
         diagnostics_fault(l->list, p->where, NULL, "the %s `%s` is negative", p->sign_why, p->name);
@@ -314,8 +323,7 @@ static void store_unit(lower *l, lower_plain *p, const dimension *d)
         lower_no_memory(l);
         return;
     }
-    memory_free(c->unit);
-    c->unit = copy;
+    network_set_unit(&c->unit, copy);
     c->may_be_negative = p->sign == SIGN_ANY;
 }
 

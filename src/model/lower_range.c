@@ -23,7 +23,7 @@ static bool read_end(lower *l, const syntax_expression *node, struct end *out)
 static bool store_end(lower *l, const lower_plain *p, const syntax_expression *node, const struct end *own,
                       const struct end *other, double *stored)
 {
-    const unit *measure = own->has_unit ? &own->measure : other->has_unit ? &other->measure : &p->measure;
+    const unit *measure = own->has_unit ? &own->measure : other->has_unit ? &other->measure : p->measure;
     const char *value_text, *end_text;
     form dim = form_known(&measure->dim);
     if (own->has_unit && !lower_agree(l, &p->dim, &dim, node->where.line, &value_text, &end_text)) {

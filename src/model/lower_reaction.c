@@ -97,13 +97,13 @@ static bool read_coefficient(lower *l, const syntax_term *term, rational *out)
     *out = (rational){1, 1};
     if (!term->coefficient)
         return true;
-    rational_outcome outcome = rational_read(term->coefficient, out);
+    rational_outcome outcome = rational_read(term->coefficient->text, out);
     if (outcome == RATIONAL_TOO_LARGE)
-        diagnostics_fault(l->list, term->coefficient_where, NULL, "a coefficient is at most 1000000");
+        diagnostics_fault(l->list, term->coefficient->where, NULL, "a coefficient is at most 1000000");
     else if (outcome == RATIONAL_TOO_LONG)
-        diagnostics_fault(l->list, term->coefficient_where, NULL, "a coefficient has at most 15 digits");
+        diagnostics_fault(l->list, term->coefficient->where, NULL, "a coefficient has at most 15 digits");
     else if (out->num == 0)
-        diagnostics_fault(l->list, term->coefficient_where, "leave the species out",
+        diagnostics_fault(l->list, term->coefficient->where, "leave the species out",
                           "the coefficient of `%s` is zero", term->species.text);
     return outcome == RATIONAL_OK && out->num != 0;
 }
@@ -112,12 +112,12 @@ static bool read_coefficient(lower *l, const syntax_term *term, rational *out)
 static bool evaluate_coefficient(lower *l, const syntax_term *term, bool is_product, expression *out)
 {
     if (!is_product) {
-        diagnostics_fault(l->list, term->coefficient_where, "write a rate law, `v = ...`",
+        diagnostics_fault(l->list, term->coefficient->where, "write a rate law, `v = ...`",
                           "a coefficient on the left is a plain number");
         return false;
     }
     lower_context context = {.what = "a coefficient"};
-    lower_value v = lower_evaluate(l, term->expression, &context);
+    lower_value v = lower_evaluate(l, term->coefficient->expression, &context);
     dimension none = dimension_none();
     lower_need(l, &v, &none, "a coefficient", NULL);
     lower_require_sign(l, &v, SIGN_NOT_NEGATIVE, "coefficient", "a coefficient");
@@ -139,11 +139,12 @@ static bool add_side(lower *l, lower_reaction *r, const syntax_term *term, bool 
     for (; term && l->status == LB_OK; term = term->next) {
         rational coefficient = {1, 1};
         expression e = EXPRESSION_NONE;
-        bool is_fine = term->expression ? evaluate_coefficient(l, term, is_product, &e)
+        bool is_expression = term->coefficient && term->coefficient->expression;
+        bool is_fine = is_expression ? evaluate_coefficient(l, term, is_product, &e)
                                         : read_coefficient(l, term, &coefficient);
         int species = lower_find_species(l, term->species.text);
         is_good = is_good && is_fine;
-        side->is_known = side->is_known && !term->expression && is_fine
+        side->is_known = side->is_known && !is_expression && is_fine
                          && rational_add(side->order, coefficient, &side->order);
         if (is_fine && species >= 0
             && network_add_term(l->net, r->index, is_product, l->species[species].index, coefficient.num,

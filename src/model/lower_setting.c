@@ -227,10 +227,12 @@ lb_status lower_settings(lower *l, lb_error *err)
         if (status != LB_OK || l->status != LB_OK)
             return status;
         lower_plain *p = &l->plains[plain];
-        p->setting = (int)i;
+        lower_replacement *set = arena_alloc(l->memory, sizeof *set);
+        if (!set)
+            return status_no_memory(err);
+        *set = (lower_replacement){.setting = (int)i, .has_unit = given.has_unit, .unit = given.measure.dim};
+        p->set = set;
         p->stored = given.has_unit ? unit_to_stored(&l->net->units, &given.measure, given.number) : given.number;
-        p->set_unit = given.measure.dim;
-        p->set_has_unit = given.has_unit;
         if (!isfinite(p->stored))
             return status_raise(err, LB_E_ARG, NULL,
                                 "`%s` cannot be set to `%s`: too large in the units of the file", p->name,
@@ -246,11 +248,11 @@ static lb_status check_dimension(lower *l, const lower_plain *p, const lb_settin
     if (l->net->units.none || !infer_resolve(&l->inf, &p->dim, &d))
         return LB_OK;
     const char *own = lower_dimension_text(l, &d);
-    if (p->set_has_unit && !dimension_equal(&d, &p->set_unit))
+    if (p->set->has_unit && !dimension_equal(&d, &p->set->unit))
         return status_raise(err, LB_E_ARG,
                             lower_text(l, "`%s` is %s%s", p->name, dimension_is_none(&d) ? "" : "in ", own),
                             "`%s` cannot be set to `%s`: the unit does not fit", p->name, s->value);
-    if (!p->set_has_unit && !dimension_equal(&d, &kelvin)
+    if (!p->set->has_unit && !dimension_equal(&d, &kelvin)
         && (d.num[DIMENSION_ENERGY] != 0 || d.num[DIMENSION_TEMPERATURE] != 0
             || !dimension_is_concentration_power(&d, &num, &den)))
         return status_raise(
@@ -274,9 +276,9 @@ lb_status lower_check_settings(lower *l, lb_error *err)
 {
     for (size_t i = 0; i < l->plain_count; i++) {
         const lower_plain *p = &l->plains[i];
-        if (p->setting < 0)
+        if (!p->set)
             continue;
-        const lb_setting *s = &l->settings[p->setting];
+        const lb_setting *s = &l->settings[p->set->setting];
         lb_status status = check_dimension(l, p, s, err);
         if (status == LB_OK)
             status = check_sign(p, s, err);

@@ -48,18 +48,39 @@ static void free_reaction(network_reaction *reaction)
     memory_free(reaction->rate);
 }
 
-static void free_step(network_step *step)
+/* A step of a one-way reaction is called like its reaction. */
+static void free_step(const lb_network *net, network_step *step)
 {
-    memory_free(step->name);
+    if (step->reaction < 0 || step->name != net->reactions[step->reaction].label)
+        memory_free(step->name);
     memory_free(step->orders);
     memory_free(step->entries);
+}
+
+/* What has no unit shares one empty text. */
+static char no_unit[] = "";
+
+static void free_unit(char *text)
+{
+    if (text != no_unit)
+        memory_free(text);
+}
+
+void network_set_unit(char **place, char *text)
+{
+    free_unit(*place);
+    *place = text;
+    if (*text == '\0') {
+        memory_free(text);
+        *place = no_unit;
+    }
 }
 
 static void free_definitions(network_definition *definitions, int count)
 {
     for (int i = 0; i < count; i++) {
         memory_free(definitions[i].name);
-        memory_free(definitions[i].unit);
+        free_unit(definitions[i].unit);
     }
     memory_free(definitions);
 }
@@ -72,12 +93,12 @@ void lb_network_free(lb_network *net)
         free_species(&net->species[i]);
     for (int i = 0; i < net->constant_count; i++) {
         memory_free(net->constants[i].name);
-        memory_free(net->constants[i].unit);
+        free_unit(net->constants[i].unit);
     }
+    for (int i = 0; i < net->step_count; i++)
+        free_step(net, &net->steps[i]);
     for (int i = 0; i < net->reaction_count; i++)
         free_reaction(&net->reactions[i]);
-    for (int i = 0; i < net->step_count; i++)
-        free_step(&net->steps[i]);
     free_definitions(net->derived, net->derived_count);
     free_definitions(net->readings, net->reading_count);
     memory_free(net->species);
@@ -161,8 +182,8 @@ int network_add_constant(lb_network *net, const char *name, network_constant_kin
     int index = net->constant_count++;
     grown[index] = (network_constant){.kind = kind, .value = value, .low = value, .high = value};
     grown[index].name = memory_text(name);
-    grown[index].unit = memory_text("");
-    return grown[index].name && grown[index].unit ? index : -1;
+    grown[index].unit = no_unit;
+    return grown[index].name ? index : -1;
 }
 
 int network_add_definition(lb_network *net, bool is_reading, const char *name, expression value)
@@ -178,8 +199,8 @@ int network_add_definition(lb_network *net, bool is_reading, const char *name, e
     int index = (*count)++;
     grown[index] = (network_definition){.value = value, .number = NAN};
     grown[index].name = memory_text(name);
-    grown[index].unit = memory_text("");
-    return grown[index].name && grown[index].unit ? index : -1;
+    grown[index].unit = no_unit;
+    return grown[index].name ? index : -1;
 }
 
 /* ---- Reactions and their terms ---------------------------------------------------- */
@@ -370,7 +391,7 @@ static lb_status index_definitions(lb_network *net)
     return LB_OK;
 }
 
-lb_status network_finish(lb_network *net)
+lb_status network_settle(lb_network *net)
 {
     for (int i = 0; i < net->species_count; i++) {
         network_species *species = &net->species[i];
@@ -381,9 +402,11 @@ lb_status network_finish(lb_network *net)
     }
     net->is_open = is_open(net);
     lb_status status = evaluate_defaults(net);
-    if (status == LB_OK)
-        status = index_definitions(net);
-    if (status == LB_OK)
-        status = network_fill_texts(net);
-    return status;
+    return status == LB_OK ? index_definitions(net) : status;
+}
+
+lb_status network_finish(lb_network *net)
+{
+    lb_status status = network_settle(net);
+    return status == LB_OK ? network_fill_texts(net) : status;
 }

@@ -88,7 +88,7 @@ typedef struct network_order {
 } network_order;
 
 typedef struct network_step {
-    char *name;                 /* "R1"; of a reversible reaction "R3.forward", "R3.reverse"; flows "[X] inflow" */
+    char *name;                 /* "R1", its reaction's text; of a reversible reaction "R3.forward", "R3.reverse"; flows "[X] inflow" */
     int reaction;               /* -1 for a flow */
     network_direction direction;
     bool is_power_law;          /* v = factor * prod x^order: mass action and recognised power laws, and flows */
@@ -185,7 +185,12 @@ int network_add_step(lb_network *net, int reaction, network_direction direction,
 int network_add_mass_action(lb_network *net, int reaction, network_direction direction, expression k);
 /* After all reactions: residence makes it a tank and adds the flow steps.  0, or -1. */
 int network_set_tank(lb_network *net, expression residence);
-/* Fill texts (equations, rates), default values, is_open.  LB_OK or LB_E_NOMEM. */
+/* The unit of a constant or definition becomes this text, which is taken. */
+void network_set_unit(char **place, char *text);
+/* Fill default values and is_open; then (a large part of a large network, and nothing to its
+ * meaning) the texts of equations and rates.  network_finish does both.  LB_OK or LB_E_NOMEM. */
+lb_status network_settle(lb_network *net);
+lb_status network_fill_texts(lb_network *net);
 lb_status network_finish(lb_network *net);
 
 #endif

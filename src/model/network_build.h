@@ -19,7 +19,4 @@ bool coefficient_settle(expression_graph *g, int64_t *num, int64_t *den, express
 bool coefficient_add(expression_graph *g, int64_t *num, int64_t *den, expression *e,
                      int64_t num2, int64_t den2, expression e2);
 
-/* Equations and rates of all reactions.  LB_OK or LB_E_NOMEM. */
-lb_status network_fill_texts(lb_network *net);
-
 #endif

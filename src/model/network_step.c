@@ -232,11 +232,12 @@ static bool recognise(expression_graph *g, network_step *step)
 
 static char *step_name(const network_reaction *reaction, network_direction direction)
 {
+    if (!reaction->is_reversible)
+        return reaction->label;
     buffer text;
     buffer_init(&text);
     buffer_append(&text, reaction->label);
-    if (reaction->is_reversible)
-        buffer_append(&text, direction == STEP_FORWARD ? ".forward" : ".reverse");
+    buffer_append(&text, direction == STEP_FORWARD ? ".forward" : ".reverse");
     return buffer_take(&text);
 }
 
@@ -247,7 +248,8 @@ static network_step *append_step(lb_network *net, int reaction, network_directio
     if (grown)
         net->steps = grown;
     if (!grown || !name) {
-        memory_free(name);
+        if (reaction < 0 || name != net->reactions[reaction].label)
+            memory_free(name);
         return NULL;
     }
     network_step *step = &net->steps[net->step_count++];

@@ -6,10 +6,10 @@
 #include "base/status.h"
 #include "model/lower.h"
 
-static lb_status keep_text(lb_network *net, const char *file, const char *text, size_t length)
+static lb_status keep_text(lb_network *net, const source *s)
 {
-    char *name = memory_text(file);
-    char *copy = memory_text_n(text, length);
+    char *name = memory_text(source_name(s));
+    char *copy = memory_text_n(source_text(s), source_length(s));
     if (!name || !copy) {
         memory_free(name);
         memory_free(copy);
@@ -39,7 +39,25 @@ static lb_status read_source(lb_diagnostics *list, const lb_setting *settings, s
     if (faults > 0)
         return status_raise(err, LB_E_MECHANISM, NULL, "the mechanism has %zu fault%s", faults,
                             faults == 1 ? "" : "s");
-    return LB_OK;
+    status = network_fill_texts(*network);
+    return status == LB_OK ? keep_text(*network, diagnostics_source(list)) : status;
+}
+
+/* The same; takes the source, and gives the list. */
+static lb_status take_source(source *s, const lb_setting *settings, size_t setting_count, lb_network **network,
+                             lb_diagnostics **diagnostics, lb_error *err)
+{
+    lb_status status = diagnostics_new(s, diagnostics);
+    if (status == LB_OK)
+        status = read_source(*diagnostics, settings, setting_count, network, err);
+    if (status == LB_E_NOMEM) {
+        lb_network_free(*network);
+        lb_diagnostics_free(*diagnostics);
+        *network = NULL;
+        *diagnostics = NULL;
+        return status_no_memory(err);
+    }
+    return status;
 }
 
 lb_status lb_network_parse(const char *file, const char *text, size_t length, const lb_setting *settings,
@@ -50,21 +68,9 @@ lb_status lb_network_parse(const char *file, const char *text, size_t length, co
     *network = NULL;
     *diagnostics = NULL;
     lb_status status = source_new(file, text, length, &s);
-    if (status == LB_OK)
-        status = diagnostics_new(s, diagnostics);
     if (status != LB_OK)
-        return status_no_memory(err);
-    status = read_source(*diagnostics, settings, setting_count, network, err);
-    if (status == LB_OK)
-        status = keep_text(*network, file, text, length);
-    if (status == LB_E_NOMEM) {
-        lb_network_free(*network);
-        lb_diagnostics_free(*diagnostics);
-        *network = NULL;
-        *diagnostics = NULL;
-        return status_no_memory(err);
-    }
-    return status;
+        return status_raise(err, status, NULL, "%s", lb_status_text(status));
+    return take_source(s, settings, setting_count, network, diagnostics, err);
 }
 
 /* ---- Files ------------------------------------------------------------------------------------ */
@@ -96,11 +102,11 @@ lb_status lb_network_read(const char *path, const lb_setting *settings, size_t s
     lb_status status = read_all(stream, is_input ? "standard input" : path, &text, err);
     if (!is_input)
         fclose(stream);
-    if (status == LB_OK)
-        status = lb_network_parse(path, buffer_get(&text), text.length, settings, setting_count, network,
-                                  diagnostics, err);
+    source *s = NULL;
+    if (status == LB_OK && (status = source_new(path, buffer_get(&text), text.length, &s)) != LB_OK)
+        status_raise(err, status, NULL, "%s: %s", path, lb_status_text(status));
     buffer_clear(&text);
-    return status;
+    return status == LB_OK ? take_source(s, settings, setting_count, network, diagnostics, err) : status;
 }
 
 /* ---- Times -------------------------------------------------------------------------------------- */

@@ -45,7 +45,7 @@ static void check_statement(const syntax_statement *s)
         assert(t->species.text);
     for (const syntax_term *t = s->right; t; t = t->next) {
         assert(t->species.text);
-        check_expression(t->expression);
+        check_expression(t->coefficient ? t->coefficient->expression : NULL);
     }
 }
 
