@@ -388,7 +388,7 @@ START_TEST(test_reduced_systems_solve_the_full_ones)
     lb_rhs(r.evaluator, r.start, f);
     lb_jacobian(r.evaluator, r.start, J);
     lb_jacobian_sparse(r.evaluator, r.start, values);
-    ck_assert_int_eq(stiff_matrix_init(&matrix, r.system, 1), LB_OK);
+    ck_assert_int_eq(stiff_matrix_init(&matrix, r.system), LB_OK);
     for (int k = 0; k < 4; k++) {
         ck_assert_int_eq(stiff_matrix_choose(&matrix, favour[k]), LB_OK);
         ck_assert_int_eq(matrix.laws.free, 2);

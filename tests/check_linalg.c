@@ -1,5 +1,6 @@
 /* Dense solves, eigenvalues and the count of unstable roots. */
 #include "analysis/linalg.h"
+#include "analysis/eliminate.h"
 
 #include <math.h>
 #include <stdlib.h>
@@ -79,12 +80,12 @@ START_TEST(test_the_diagonal_is_preferred_while_it_is_safe)
 {
     double kept[4] = {1, 50, 1, 1}, changed[4] = {1, 1e4, 1, 1}, b[2] = {2, 51}, c[2] = {2, 10001};
     int pivot[2];
-    ck_assert(linalg_factor_diagonal(2, kept, pivot));
+    ck_assert(eliminate(2, kept, pivot, 0.01));
     ck_assert(kept[0] == 1 && kept[1] == 50);
     linalg_solve(2, kept, pivot, 1, b);
     assert_close(b[0], 1, 1e-14, 0);
     assert_close(b[1], 1, 1e-14, 0);
-    ck_assert(linalg_factor_diagonal(2, changed, pivot));
+    ck_assert(eliminate(2, changed, pivot, 0.01));
     ck_assert(changed[0] == 1e4);
     linalg_solve(2, changed, pivot, 1, c);
     assert_close(c[0], 1, 1e-14, 0);
@@ -96,7 +97,7 @@ START_TEST(test_the_diagonal_is_preferred_while_it_is_safe)
         large[i + 200 * (199 - i)] += 1;
         x[i] = 1 + 1e-6;
     }
-    ck_assert(linalg_factor_diagonal(200, large, order));
+    ck_assert(eliminate(200, large, order, 0.01));
     linalg_solve(200, large, order, 1, x);      /* beyond the change to LAPACK's solve */
     for (int i = 0; i < 200; i++)
         assert_close(x[i], 1, 1e-13, 0);

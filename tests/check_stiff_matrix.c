@@ -103,7 +103,7 @@ START_TEST(test_both_forms_solve_the_full_system)
     double *u = malloc((size_t)r.n * sizeof *u);
     ck_assert_ptr_nonnull(u);
     stiff_matrix matrix;
-    ck_assert_int_eq(stiff_matrix_init(&matrix, r.system, 1), LB_OK);
+    ck_assert_int_eq(stiff_matrix_init(&matrix, r.system), LB_OK);
     for (int large = 0; large < r.n; large += is_sparse ? 40 : 2) {
         r.x[large] *= 1e6;          /* another species is the largest of its law */
         ck_assert_int_eq(stiff_matrix_choose(&matrix, r.x), LB_OK);
@@ -157,7 +157,7 @@ START_TEST(test_sparse_failing_allocations_leave_nothing_behind)
     int failures = 0;
     for (long k = 0; status != LB_OK; k++, failures++) {
         memory_fail_after(k);
-        status = stiff_matrix_init(&matrix, r.system, 1);
+        status = stiff_matrix_init(&matrix, r.system);
         if (status == LB_OK)
             status = stiff_matrix_choose(&matrix, r.x);
         memory_fail_after(-1);

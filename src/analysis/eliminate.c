@@ -162,3 +162,34 @@ bool eliminate(int n, double *A, int *pivot, double threshold)
     }
     return is_regular;
 }
+
+void eliminate_invert(int n, const double *LU, double *inverse)
+{
+    for (int k = 0; k < n; k++)
+        inverse[k] = 1 / LU[k + (size_t)k * n];
+}
+
+void eliminate_solve(int n, const double *restrict LU, const int *restrict pivot, const double *restrict inverse,
+                     double *restrict b)
+{
+    for (int k = 0; k < n; k++) {
+        int other = pivot[k] - 1;
+        if (other != k) {
+            double kept = b[other];
+            b[other] = b[k];
+            b[k] = kept;
+        }
+    }
+    for (int k = 0; k < n; k++) {
+        const double *column = LU + (size_t)k * n;
+        double value = b[k];
+        for (int i = k + 1; i < n; i++)
+            b[i] -= column[i] * value;
+    }
+    for (int k = n - 1; k >= 0; k--) {
+        const double *column = LU + (size_t)k * n;
+        double value = b[k] *= inverse[k];
+        for (int i = 0; i < k; i++)
+            b[i] -= column[i] * value;
+    }
+}

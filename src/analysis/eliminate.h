@@ -10,4 +10,10 @@
  * zero or not finite.  Entries that are not finite are the caller's to look for. */
 bool eliminate(int n, double *A, int *pivot, double threshold);
 
+/* Reciprocals of the pivots, [n]: a division takes as long as the rest of a small
+ * solution. */
+void eliminate_invert(int n, const double *LU, double *inverse);
+/* Solve with the factors and those, b [n] in place. */
+void eliminate_solve(int n, const double *LU, const int *pivot, const double *inverse, double *b);
+
 #endif

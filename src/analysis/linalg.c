@@ -2,9 +2,8 @@
  *
  * LU: our own elimination with partial pivoting (eliminate.c) up to OWN_LIMIT
  * rows, where a library call costs more than the work, LAPACK's dgetrf above;
- * both leave the factors in the same place.  Where the diagonal is preferred as
- * the pivot, which LAPACK cannot, it is our own at any size.  Eigenvalues by
- * dgeev, least squares by dgelsy.  LAPACK is known to this file alone, and what is not
+ * both leave the factors in the same place.  Eigenvalues by dgeev, least
+ * squares by dgelsy.  LAPACK is known to this file alone, and what is not
  * finite never passes through it in either direction.
  *
  * Source of the methods: G. H. Golub and C. F. Van Loan, Matrix Computations,
@@ -23,7 +22,6 @@
 #include "base/status.h"
 
 enum { OWN_LIMIT = 128 };
-#define DIAGONAL_THRESHOLD 0.01
 
 /* 0*a is zero for a finite number and NAN for everything else, so the sum
  * tells in one pass without a branch. */
@@ -42,11 +40,6 @@ bool linalg_factor(int n, double *A, int *pivot)
     if (n <= OWN_LIMIT)
         return eliminate(n, A, pivot, 1) && all_finite((size_t)n * n, A);
     return LAPACKE_dgetrf_work(LAPACK_COL_MAJOR, n, n, A, n, pivot) == 0 && all_finite((size_t)n * n, A);
-}
-
-bool linalg_factor_diagonal(int n, double *A, int *pivot)
-{
-    return all_finite((size_t)n * n, A) && eliminate(n, A, pivot, DIAGONAL_THRESHOLD) && all_finite((size_t)n * n, A);
 }
 
 static void solve_small(int n, const double *LU, const int *pivot, double *b)

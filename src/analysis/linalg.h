@@ -9,10 +9,6 @@
 /* LU with partial pivoting of A [n*n], column-major, in place; pivot [n], for
  * linalg_solve alone.  False when A is singular or not finite. */
 bool linalg_factor(int n, double *A, int *pivot);
-/* The same, but the diagonal entry is the pivot unless it is below a hundredth
- * of the largest: for matrices whose unknowns lie decades apart, each best solved
- * from its own row. */
-bool linalg_factor_diagonal(int n, double *A, int *pivot);
 /* Solve with the factors, `columns` right-hand sides B [n*columns] in place. */
 void linalg_solve(int n, const double *LU, const int *pivot, int columns, double *B);
 /* Estimated reciprocal condition number in the 1-norm from the factors and the

@@ -113,7 +113,7 @@ lb_status rosenbrock_new(lb_evaluator *evaluator, bool tangents, rosenbrock **ou
     method->u = memory_array(STAGES * n, sizeof *method->u);
     method->Y = memory_array(n, sizeof *method->Y);
     bool complete = method->values && method->shifted && method->u && method->Y &&
-                    stiff_matrix_init(&method->matrix, system, tangents ? system->n : 1) == LB_OK;
+                    stiff_matrix_init(&method->matrix, system) == LB_OK;
     if (complete && tangents) {
         method->slope = memory_array(z, sizeof *method->slope);
         method->point = memory_array(n, sizeof *method->point);

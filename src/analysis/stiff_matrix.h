@@ -21,7 +21,8 @@ typedef struct stiff_matrix {
     double *W;                  /* [free*free] factored; NULL until it is needed */
     size_t room;                /* numbers that W holds */
     int *pivot;                 /* [n] */
-    double *compact;            /* [n*columns] right-hand sides of the free species */
+    double *inverse;            /* [n] of the pivots' values */
+    double *compact;            /* [n] a right-hand side of the free species */
     /* sparse: all species, a law in place of the row of the species that it gives */
     int *start, *row;           /* pattern, [n+1] and [start[n]] */
     int *origin;                /* [start[n]] entry of J that an entry comes from; -1: of a law or the diagonal alone */
@@ -30,8 +31,7 @@ typedef struct stiff_matrix {
     sparse_lu *lu;
 } stiff_matrix;
 
-/* Room for right-hand sides of up to so many columns.  LB_E_NOMEM. */
-lb_status stiff_matrix_init(stiff_matrix *matrix, const lb_system *system, int columns);
+lb_status stiff_matrix_init(stiff_matrix *matrix, const lb_system *system);     /* LB_E_NOMEM */
 void stiff_matrix_clear(stiff_matrix *matrix);
 /* What follows depends on the sizes that are given from now on alone. */
 void stiff_matrix_forget(stiff_matrix *matrix);

@@ -17,7 +17,7 @@
 #include "analysis/stepper.h"
 #include "base/memory.h"
 
-enum { ITERATIONS = 4 };
+enum { ITERATIONS = 4 };       /* the mean below is a fourth root */
 
 void stiffness_clear(stiffness *estimate)
 {
@@ -85,11 +85,12 @@ double stiffness_radius(stiffness *estimate, const lb_system *system, const doub
         *is_damped = false;
         if (!(image > 0) || !isfinite(image) || !(size > 0))
             return 0;
-        growth *= pow(image / size, 1.0 / ITERATIONS);
+        growth *= image / size;
         rayleigh += dot(estimate->n, estimate->v, estimate->w) / (size * size) / ITERATIONS;
         for (int i = 0; i < estimate->n; i++)
             estimate->v[i] = estimate->w[i] / image;
     }
+    growth = sqrt(sqrt(growth));
     *is_damped = rayleigh < -0.3 * growth;
     return growth;
 }
