@@ -5,8 +5,8 @@
  * most, relative to its size, carries a Poincare section, and once a return
  * repeats an older one (up to SECTION_LOOPS loops back) the orbit between them is
  * handed to closed.c.  An attempt that fails, or an orbit that is not attracting,
- * makes the next attempt ask for a closer repeat.  Every few steps rest.c is asked
- * whether a stable steady state has the trajectory. */
+ * makes the next attempt ask for a closer repeat.  Every few steps ending.c is asked
+ * whether the trajectory goes to rest. */
 #include "analysis/cycle.h"
 
 #include <math.h>
@@ -14,10 +14,8 @@
 
 #include "analysis/closed.h"
 #include "analysis/confirm.h"
-#include "analysis/integrate.h"
-#include "analysis/rest.h"
-#include "analysis/section.h"
-#include "analysis/swings.h"
+#include "analysis/ending.h"
+#include "analysis/explorer.h"
 #include "base/memory.h"
 #include "base/status.h"
 
@@ -35,40 +33,8 @@ enum {
 #define FIRST_REPEAT 1e-2         /* amplitudes; the first closing attempt */
 #define LEAST_REPEAT 1e-7
 #define PERIOD_AGREES 1e-6        /* relative, between the two paths */
-#define NEAR_REST 1e-2
-#define AT_REST 1e-5
 #define IN_PLACE 1.5              /* factor by which the amplitudes of a neutral orbit may differ from the loop's */
-#define STARTS_AT_REST 1e-10
-#define STILL 1e-6
-#define STAYS 100.0               /* growth times that rounding would need to leave a saddle, and then some */
 #define FAR_FUTURE 1e100
-#define RUNAWAY 1e60
-#define RUNAWAY_GROWTH 1e6        /* before the integration fails */
-
-typedef struct explorer {
-    space s;
-    const double *x0;
-    const cycle_options *options;
-    cycle_report *report;
-    double closing_tolerance;
-    integrator *it;
-    section section;
-    swings swings;
-    rest rest;
-    orbit_turning turning;
-    double *block;
-    double *before, *after;       /* [n] rates at the ends of the last step */
-    double *low, *high;           /* [n] range of the epoch */
-    double *reach;                /* [n] largest magnitude so far */
-    double *asked;                /* [n] state when rest was last asked for */
-    double *scale;                /* [n] scratch */
-    size_t *turns;                /* [n] turning points when the epoch began */
-    size_t epoch_end, epoch_length, epoch_returns, max_returns, max_steps;
-    double repeat;                /* how close the next repeat must be */
-    double still_since;           /* time since which it stands still; infinite when it moves */
-    int attempts;                 /* at closing, that failed */
-    bool is_done;
-} explorer;
 
 /* ---- Setting up ---------------------------------------------------------------------- */
 
@@ -155,36 +121,7 @@ static void explorer_clear(explorer *e)
     memory_free(e->turns);
 }
 
-/* ---- Outcomes ------------------------------------------------------------------------- */
-
-static void finish(explorer *e, cycle_outcome outcome, const char *why)
-{
-    e->report->outcome = outcome;
-    e->report->why = why;
-    e->is_done = true;
-}
-
-static lb_status settle_cut(explorer *e, const double *where, bool is_cut, const char *why, lb_error *err)
-{
-    cycle_report *report = e->report;
-    size_t n = (size_t)e->s.n;
-    report->rest = memory_array(n, sizeof *report->rest);
-    if (!report->rest)
-        return status_no_memory(err);
-    memcpy(report->rest, where, n * sizeof *where);
-    finish(e, CYCLE_SETTLED, why);
-    swings_result seen;
-    lb_status status = swings_summary(&e->swings, e->reach, is_cut, &seen, err);
-    report->swings = seen.count;
-    report->swing_decay = seen.decay;
-    report->swing_species = seen.state;
-    return status;
-}
-
-static lb_status settle(explorer *e, const double *where, const char *why, lb_error *err)
-{
-    return settle_cut(e, where, false, why, err);
-}
+/* ---- Orbits ------------------------------------------------------------------------------- */
 
 /* A point of the orbit as a state to start from: species set aside take what the
  * laws say, else what they have at x0. */
@@ -205,144 +142,7 @@ static lb_status report_orbit(explorer *e, const closed_orbit *orbit, double con
     complete(e, e->report->cycle->x);
     if (outcome == CYCLE_CENTRE)
         e->report->cycle->stable = LB_NO;
-    finish(e, outcome, why);
-    return LB_OK;
-}
-
-/* ---- Rest and runaway -------------------------------------------------------------------- */
-
-/* Rest that Newton does not find.  A trajectory may also stand still next to a saddle;
- * when it does so for longer than rounding would let it, large steps have damped
- * what should grow, and nothing more is learned from it. */
-static lb_status look_for_stillness(explorer *e, lb_error *err)
-{
-    const double *x = integrator_state(e->it);
-    bool is_still;
-    double rate, now = integrator_time(e->it);
-    lb_status status = rest_is_still(&e->rest, &e->s, x, e->reach, now, STILL, &is_still, &rate, err);
-    if (status != LB_OK || !is_still) {
-        e->still_since = INFINITY;
-        return status;
-    }
-    if (rate * now <= 1)
-        return settle(e, x, "it comes to rest: as much time again would not move it", err);
-    if (rate * (now - e->still_since) > STAYS)
-        finish(e, CYCLE_UNDECIDED, "it lingers next to a steady state that is not stable");
-    e->still_since = fmin(e->still_since, now);
-    return LB_OK;
-}
-
-/* Near a steady state a trajectory cannot have come far since it was last asked: a
- * cheap question before the dear one. */
-static bool has_moved_far(const explorer *e, const double *x)
-{
-    for (int k = 0; k < e->s.core; k++) {
-        int i = e->s.system->core_state[k];
-        if (fabs(x[i] - e->asked[i]) > 5 * NEAR_REST * fmax(fabs(x[i]), 1e-3 * e->reach[i]))
-            return true;
-    }
-    return false;
-}
-
-static lb_status look_for_rest(explorer *e, lb_error *err)
-{
-    const double *x = integrator_state(e->it);
-    rest *r = &e->rest;
-    bool moves = has_moved_far(e, x);
-    memcpy(e->asked, x, (size_t)e->s.n * sizeof *x);
-    if (moves) {
-        e->still_since = INFINITY;
-        return LB_OK;
-    }
-    lb_status status = rest_near(r, &e->s, x, e->reach, NEAR_REST, err);
-    if (status != LB_OK)
-        return status;
-    if (r->found && r->distance < AT_REST && r->stable == LB_YES)
-        return settle(e, r->x, "it comes to rest at a stable steady state", err);
-    return look_for_stillness(e, err);
-}
-
-static lb_status look_at_start(explorer *e, lb_error *err)
-{
-    const char *why = "it starts at a steady state";
-    if (rest_is_balanced(&e->rest, &e->s, e->x0))
-        return settle(e, e->x0, why, err);
-    lb_status status = rest_near(&e->rest, &e->s, e->x0, e->reach, NEAR_REST, err);
-    if (status == LB_OK && e->rest.found && e->rest.distance < STARTS_AT_REST)
-        return settle(e, e->rest.x, why, err);
-    return status;
-}
-
-/* Largest core magnitude now, relative to the largest at the start. */
-static double growth(const explorer *e, double *largest)
-{
-    double start = 0;
-    *largest = 0;
-    for (int k = 0; k < e->s.core; k++) {
-        int i = e->s.system->core_state[k];
-        *largest = fmax(*largest, e->reach[i]);
-        start = fmax(start, fabs(e->x0[i]));
-    }
-    return start > 0 ? *largest / start : 0;
-}
-
-static void look_for_runaway(explorer *e)
-{
-    double largest;
-    growth(e, &largest);
-    if (largest > RUNAWAY)
-        finish(e, CYCLE_UNBOUNDED, "it grows without bound");
-}
-
-/* The integration could not go on.  A blow-up in finite time is an answer; so is
- * leaving the orthant. */
-static lb_status stop_at_failure(explorer *e, lb_status status)
-{
-    double largest;
-    if (status == LB_E_STEP || status == LB_E_FINITE || status == LB_E_NUMERIC) {
-        if (growth(e, &largest) > RUNAWAY_GROWTH)
-            finish(e, CYCLE_UNBOUNDED, "it grows without bound in finite time");
-        else
-            finish(e, CYCLE_UNDECIDED, "the integration could not go on");
-        return LB_OK;
-    }
-    if (status == LB_E_NEGATIVE) {
-        finish(e, CYCLE_UNDECIDED, "a concentration falls below zero");
-        return LB_OK;
-    }
-    return status;
-}
-
-/* Does it ring down, too slowly to wait for?  Its swings fade, and there is a stable
- * steady state in the middle of them. */
-static lb_status look_for_ringing(explorer *e, bool *rings, lb_error *err)
-{
-    swings_result seen;
-    lb_status status = swings_summary(&e->swings, e->reach, true, &seen, err);
-    *rings = false;
-    if (status != LB_OK || !seen.fades)
-        return status;
-    for (int i = 0; i < e->s.n; i++)
-        e->scale[i] = 0.5 * (e->low[i] + e->high[i]);
-    status = rest_near(&e->rest, &e->s, e->scale, e->reach, INFINITY, err);
-    *rings = status == LB_OK && e->rest.found && e->rest.stable == LB_YES;
-    return status;
-}
-
-static lb_status give_up(explorer *e, lb_error *err)
-{
-    bool rings;
-    lb_status status = look_for_ringing(e, &rings, err);
-    if (status != LB_OK)
-        return status;
-    if (rings)
-        return settle_cut(e, e->rest.x, true, "it rings down to a stable steady state, slowly", err);
-    if (e->report->returns <= SECTION_LOOPS)
-        finish(e, CYCLE_UNDECIDED, "it neither rests nor recurs within the effort");
-    else if (e->s.n > CLOSED_LIMIT)
-        finish(e, CYCLE_UNDECIDED, "it recurs, and there are too many species to close an orbit");
-    else
-        finish(e, CYCLE_UNDECIDED, "it keeps moving and recurs without closing");
+    ending_finish(e, outcome, why);
     return LB_OK;
 }
 
@@ -414,7 +214,7 @@ static lb_status watch_section(explorer *e, lb_error *err)
         return LB_OK;
     lb_status status = section_watch(&e->section, e->it, &returned, err);
     if (status != LB_OK)
-        return stop_at_failure(e, status);
+        return ending_by_failure(e, status);
     if (!returned)
         return LB_OK;
     e->epoch_returns++;
@@ -470,7 +270,7 @@ static lb_status advance(explorer *e, lb_error *err)
 {
     lb_status status = integrator_step(e->it, FAR_FUTURE, err);
     if (status != LB_OK)
-        return stop_at_failure(e, status);
+        return ending_by_failure(e, status);
     const double *x = integrator_state(e->it);
     double *swap = e->before;
     e->before = e->after;
@@ -483,27 +283,27 @@ static lb_status advance(explorer *e, lb_error *err)
         e->reach[i] = fmax(e->reach[i], fabs(x[i]));
     }
     status = swings_watch(&e->swings, &e->turning, e->before, e->after, err);
-    return status == LB_OK ? LB_OK : stop_at_failure(e, status);
+    return status == LB_OK ? LB_OK : ending_by_failure(e, status);
 }
 
 static lb_status explore(explorer *e, lb_error *err)
 {
-    lb_status status = look_at_start(e, err);
+    lb_status status = ending_at_start(e, err);
     while (status == LB_OK && !e->is_done) {
         status = advance(e, err);
         if (status == LB_OK && !e->is_done)
             status = watch_section(e, err);
         if (status == LB_OK && !e->is_done && e->report->steps % REST_EVERY == 0) {
-            look_for_runaway(e);
+            ending_by_runaway(e);
             if (!e->is_done)
-                status = look_for_rest(e, err);
+                status = ending_by_rest(e, err);
         }
         if (status == LB_OK && !e->is_done && e->report->steps >= e->epoch_end)
             end_epoch(e);
         if (status == LB_OK && !e->is_done &&
             (e->report->steps >= e->max_steps || e->report->returns >= e->max_returns ||
              integrator_time(e->it) >= FAR_FUTURE))
-            status = give_up(e, err);
+            status = ending_by_effort(e, err);
     }
     return status;
 }
