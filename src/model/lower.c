@@ -116,7 +116,7 @@ static void complete(lower *l)
         lower_start_warnings(l);
 }
 
-lb_status lower_tree(const syntax_tree *tree, lb_diagnostics *list, const lb_setting *settings,
+lb_status lower_tree(syntax_tree *tree, lb_diagnostics *list, const lb_setting *settings,
                      size_t setting_count, lb_network **net, lb_error *err)
 {
     lower l = {.tree = tree, .list = list, .settings = settings, .setting_count = setting_count};

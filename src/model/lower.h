@@ -102,7 +102,7 @@ typedef struct lower_species {
 } lower_species;
 
 typedef struct lower_reaction {
-    const syntax_statement *statement;
+    const syntax_statement *statement;  /* NULL: in the network, and released */
     const char *label;
     int index;                      /* in the network, or -1 */
     bool is_bad;
@@ -116,7 +116,7 @@ typedef struct lower_inline {
 } lower_inline;
 
 typedef struct lower {
-    const syntax_tree *tree;
+    syntax_tree *tree;              /* pages of it go while reactions are added */
     lb_diagnostics *list;
     lb_network *net;
     arena *memory;                  /* names made here; lives until the network is done */
@@ -141,10 +141,10 @@ typedef struct lower {
 
 /* ---- lower.c ----------------------------------------------------------------- */
 
-/* Tree to network.  Faults and warnings go to the list; *net is NULL when there
+/* Tree to network; parts of the tree are released on the way.  Faults and warnings go to the list; *net is NULL when there
  * are faults.  LB_E_NAME or LB_E_ARG with err filled when a setting is wrong, and
  * the file has no fault in its syntax and names.  LB_OK also with faults. */
-lb_status lower_tree(const syntax_tree *tree, lb_diagnostics *list, const lb_setting *settings,
+lb_status lower_tree(syntax_tree *tree, lb_diagnostics *list, const lb_setting *settings,
                      size_t setting_count, lb_network **net, lb_error *err);
 
 bool  lower_no_memory(lower *l);                     /* remembers it; returns false */

@@ -111,7 +111,7 @@ void lower_balance(lower *l)
     for (size_t i = 0; i < l->reaction_count && l->status == LB_OK; i++) {
         const lower_reaction *r = &l->reactions[i];
         const syntax_statement *s = r->statement;
-        if (r->is_bad || !s->left || !s->right || !have_formulas(l, s->left) || !have_formulas(l, s->right))
+        if (r->is_bad || !s || !s->left || !s->right || !have_formulas(l, s->left) || !have_formulas(l, s->right))
             continue;
         struct tally t = {.is_exact = true};
         for (const syntax_term *term = s->left; term; term = term->next)

@@ -282,8 +282,35 @@ static void add_reaction(lower *l, lower_reaction *r)
         add_rates(l, r, &settings, &left, &right);
 }
 
+/* ---- All of them ----------------------------------------------------------------------------- */
+
+/* The balance reads a reaction's terms again. */
+static bool has_formulas(const lower *l)
+{
+    for (size_t i = 0; i < l->species_count; i++)
+        if (l->species[i].formula)
+            return true;
+    return false;
+}
+
+/* Release the page when reaction i is the last thing in it; gives the page to wait for. */
+static syntax_page *release_page(lower *l, syntax_page *page, size_t i)
+{
+    while (page && !page->is_plain)
+        page = page->next;
+    if (!page || !page->next || page->last != l->reactions[i].statement)
+        return page;
+    for (int back = 0; back < page->statements; back++)
+        l->reactions[i - (size_t)back].statement = NULL;
+    syntax_release(page);
+    return page->next;
+}
+
 void lower_reactions(lower *l)
 {
-    for (size_t i = 0; i < l->reaction_count && l->status == LB_OK; i++)
+    syntax_page *page = has_formulas(l) ? NULL : l->tree->pages;
+    for (size_t i = 0; i < l->reaction_count && l->status == LB_OK; i++) {
         add_reaction(l, &l->reactions[i]);
+        page = release_page(l, page, i);
+    }
 }

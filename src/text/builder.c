@@ -9,10 +9,26 @@
 
 void *builder_alloc(builder *b, size_t size)
 {
-    void *block = b->status == LB_OK ? arena_alloc(b->arena, size) : NULL;
+    void *block = b->status == LB_OK ? arena_alloc(b->tree->page->arena, size) : NULL;
     if (!block)
         b->status = LB_E_NOMEM;
     return block;
+}
+
+bool builder_turn_page(builder *b)
+{
+    syntax_page *page = arena_alloc(b->arena, sizeof *page);
+    if (!page || !(page->arena = arena_new())) {
+        b->status = LB_E_NOMEM;
+        return false;
+    }
+    page->is_plain = true;
+    if (b->tree->page)
+        b->tree->page->next = page;
+    else
+        b->tree->pages = page;
+    b->tree->page = page;
+    return true;
 }
 
 /* FNV-1a. */
@@ -57,9 +73,11 @@ const char *builder_text(builder *b, const char *text, size_t length)
     }
     size_t slot = find_text(b, text, length);
     if (!b->texts[slot]) {
-        char *copy = builder_alloc(b, length + 1);
-        if (!copy)
+        char *copy = b->status == LB_OK ? arena_alloc(b->arena, length + 1) : NULL;
+        if (!copy) {
+            b->status = LB_E_NOMEM;
             return NULL;
+        }
         memcpy(copy, text, length);
         b->texts[slot] = copy;
         b->text_count++;

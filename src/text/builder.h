@@ -32,7 +32,8 @@ typedef struct syntax_text { const char *text; bool is_quoted; } syntax_text;
 /* Report a fault, unless its place was reached before (a line that is read again). */
 void builder_fault(builder *b, span where, const char *remedy, const char *format, ...)
     __attribute__((format(printf, 4, 5)));
-void *builder_alloc(builder *b, size_t size);
+void *builder_alloc(builder *b, size_t size);        /* a node, in the tree's page */
+bool builder_turn_page(builder *b);                  /* nodes go to a new page; false without memory */
 /* A terminated copy; equal texts are one copy. */
 const char *builder_text(builder *b, const char *text, size_t length);
 void builder_clear(builder *b);      /* frees the table; the texts are the arena's */

@@ -79,7 +79,7 @@ static lexical *lexical_new(lb_diagnostics *diagnostics, syntax_tree *tree, int 
     l->build.tree = tree;
     l->buffer_size = length + 3;
     l->buffer = memory_array(l->buffer_size, 1);
-    if (!l->buffer || lexer_lex_init_extra(l, &l->scanner) != 0) {
+    if (!l->buffer || !builder_turn_page(&l->build) || lexer_lex_init_extra(l, &l->scanner) != 0) {
         lexical_free(l);
         return NULL;
     }

@@ -30,18 +30,26 @@ syntax_names syntax_names_add(builder *b, syntax_names list, const syntax_name *
 syntax_term *syntax_term_new(builder *b, const syntax_name *species)
 {
     syntax_term *term = species->text ? builder_alloc(b, sizeof *term) : NULL;
-    if (!term)
+    if (term)
+        term->species = *species;
+    return term;
+}
+
+static syntax_term *term_with(builder *b, const char *text, syntax_expression *expression, span where,
+                              const syntax_name *species)
+{
+    syntax_term *term = syntax_term_new(b, species);
+    syntax_coefficient *coefficient = term ? builder_alloc(b, sizeof *coefficient) : NULL;
+    if (!coefficient)
         return NULL;
-    term->number = 1;
-    term->coefficient_where = species->where;
-    term->species = *species;
+    *coefficient = (syntax_coefficient){text, expression, where};
+    term->coefficient = coefficient;
     return term;
 }
 
 syntax_term *syntax_term_count(builder *b, syntax_number coefficient, span where, const syntax_name *species)
 {
-    syntax_term *term = syntax_term_new(b, species);
-    if (!term || !coefficient.text)
+    if (!species->text || !coefficient.text)
         return NULL;
     const char *exponent = strpbrk(coefficient.text, "eE");
     if (exponent && span_touches(where, species->where)) {
@@ -52,21 +60,13 @@ syntax_term *syntax_term_count(builder *b, syntax_number coefficient, span where
     } else if (exponent) {
         builder_fault(b, where, "write it without `e`", "a coefficient has no exponent");
     }
-    term->coefficient = coefficient.text;
-    term->number = coefficient.value;
-    term->coefficient_where = where;
-    return term;
+    return term_with(b, coefficient.text, NULL, where, species);
 }
 
 syntax_term *syntax_term_expression(builder *b, syntax_expression *coefficient, span where,
                                     const syntax_name *species)
 {
-    syntax_term *term = coefficient ? syntax_term_new(b, species) : NULL;
-    if (term) {
-        term->expression = coefficient;
-        term->coefficient_where = where;
-    }
-    return term;
+    return coefficient ? term_with(b, NULL, coefficient, where, species) : NULL;
 }
 
 syntax_terms syntax_terms_add(syntax_terms list, syntax_term *term)
@@ -99,12 +99,7 @@ syntax_term *syntax_side_number(builder *b, syntax_number number, span where)
              (int)(exponent - number.text < 40 ? exponent - number.text : 40), number.text, exponent);
     builder_fault(b, where, remedy, "`%.60s` is a number without a species", number.text);
     const syntax_name species = {.text = builder_text(b, exponent, strlen(exponent)), .where = where};
-    syntax_term *term = syntax_term_new(b, &species);
-    if (term) {
-        term->coefficient = builder_text(b, number.text, (size_t)(exponent - number.text));
-        term->number = term->coefficient ? strtod(term->coefficient, NULL) : 1;
-    }
-    return term;
+    return term_with(b, builder_text(b, number.text, (size_t)(exponent - number.text)), NULL, where, &species);
 }
 
 /* ---- Statements ------------------------------------------------------------ */
@@ -180,8 +175,8 @@ syntax_statement *syntax_formula(builder *b, const syntax_name *species, const c
 static void check_left(builder *b, const syntax_term *term)
 {
     for (; term; term = term->next)
-        if (term->expression)
-            builder_fault(b, term->coefficient_where,
+        if (term->coefficient && term->coefficient->expression)
+            builder_fault(b, term->coefficient->where,
                           "write a number; a label in front has letters, digits and . _ + - ' * only",
                           "a coefficient on the left is a plain number");
 }
@@ -237,6 +232,27 @@ static void append(syntax_statement **first, syntax_statement **last, syntax_sta
     *last = s;
 }
 
+static bool has_law(const syntax_statement *s)
+{
+    for (const syntax_argument *a = s->settings; a; a = a->next)
+        if (strcmp(a->name, "v") == 0)
+            return true;
+    return false;
+}
+
+enum { PAGE_STATEMENTS = 1000 };
+
+/* The statement is the last of its page so far; a full page is turned. */
+static void note_in_page(builder *b, const syntax_statement *s)
+{
+    syntax_page *page = b->tree->page;
+    page->last = s;
+    if (s->is_broken || s->kind != SYNTAX_REACTION || has_law(s))
+        page->is_plain = false;
+    if (++page->statements == PAGE_STATEMENTS)
+        builder_turn_page(b);
+}
+
 void syntax_append(builder *b, syntax_statement *s)
 {
     bool has_bad_side = b->has_bad_side;
@@ -253,12 +269,21 @@ void syntax_append(builder *b, syntax_statement *s)
         append(&b->tree->first, &b->tree->last, s);
         b->tree->statement_count++;
     }
+    note_in_page(b, s);
+}
+
+void syntax_release(syntax_page *page)
+{
+    arena_free(page->arena);
+    page->arena = NULL;
 }
 
 void syntax_free(syntax_tree *tree)
 {
     if (!tree)
         return;
+    for (syntax_page *page = tree->pages; page; page = page->next)
+        syntax_release(page);
     arena_free(tree->arena);
     memory_free(tree);
 }

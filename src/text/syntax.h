@@ -60,13 +60,17 @@ typedef struct syntax_name {
     struct syntax_name *next;
 } syntax_name;
 
+/* What stands before a species: a plain number, or an expression in parentheses. */
+typedef struct syntax_coefficient {
+    const char *text;               /* of the number; NULL: an expression */
+    syntax_expression *expression;
+    span where;
+} syntax_coefficient;
+
 typedef struct syntax_term {
-    const char *coefficient;        /* text of a plain number; NULL when none is written */
-    double number;                  /* its value; 1 when none is written */
-    syntax_expression *expression;  /* coefficient in parentheses; else NULL */
-    struct syntax_term *next;
+    syntax_coefficient *coefficient; /* NULL when none is written */
     syntax_name species;
-    span coefficient_where;
+    struct syntax_term *next;
 } syntax_term;
 
 typedef enum syntax_statement_kind {
@@ -113,8 +117,20 @@ typedef struct syntax_statement {
  * Lowering takes the last factor as the unit of time, the rest as the unit of
  * concentration. */
 
+/* The nodes of some hundred statements.  One that has reactions alone, without ranges and
+ * rate laws, is plain: nothing in it is needed once its reactions are in the network, so that
+ * it can go while the rest of a large mechanism is still to come. */
+typedef struct syntax_page {
+    struct arena *arena;            /* NULL: released */
+    const syntax_statement *last;   /* in it */
+    int statements;
+    bool is_plain;
+    struct syntax_page *next;       /* NULL: the last page, which is not released */
+} syntax_page;
+
 typedef struct syntax_tree {
-    struct arena *arena;
+    struct arena *arena;            /* texts */
+    syntax_page *pages, *page;      /* the first, and the one that nodes come from */
     syntax_statement *first, *last;
     int statement_count;
     /* Definitions and reactions that a fault of syntax cut short, so that what
@@ -129,6 +145,7 @@ lb_status syntax_parse(lb_diagnostics *diagnostics, syntax_tree **out);
 
 /* One expression alone (the value of a setting): its text is the whole source. */
 lb_status syntax_parse_value(lb_diagnostics *diagnostics, syntax_tree **tree, syntax_expression **out);
+void syntax_release(syntax_page *page);   /* its nodes are gone */
 void syntax_free(syntax_tree *tree);
 
 #endif

@@ -156,6 +156,7 @@ syntax_range *syntax_range_between(builder *b, syntax_expression *low, syntax_ex
     bool good = check_end(b, low);
     good = check_end(b, high) && good;
     syntax_range *range = good ? builder_alloc(b, sizeof *range) : NULL;
+    b->tree->page->is_plain = false;
     if (range)
         *range = (syntax_range){.where = where, .low = low, .high = high};
     return range;
@@ -164,6 +165,7 @@ syntax_range *syntax_range_between(builder *b, syntax_expression *low, syntax_ex
 syntax_range *syntax_range_factor(builder *b, syntax_expression *factor, span where)
 {
     syntax_range *range = factor ? builder_alloc(b, sizeof *range) : NULL;
+    b->tree->page->is_plain = false;
     if (range)
         *range = (syntax_range){.where = where, .is_factor = true, .low = factor};
     return range;
