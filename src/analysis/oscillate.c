@@ -88,11 +88,6 @@ static void write_coverage(const hunt *h, buffer *text)
         buffer_printf(text, "%zu set%s of constants %s tried: a cycle between the samples, or beside a steady state "
                       "that is stable, is missed", answer->samples, answer->samples == 1 ? "" : "s",
                       answer->samples == 1 ? "was" : "were");
-    if (answer->keeps_moving)
-        buffer_append(text, "; some trajectory keeps moving within bounds without closing (chaos, a torus or a "
-                            "very slow approach: this search does not tell)");
-    if (answer->runs_away)
-        buffer_append(text, "; some trajectory grows without bound");
     if (h->is_cut_short)
         buffer_append(text, "; some trajectory could not be followed to its end");
 }

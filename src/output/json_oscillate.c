@@ -77,6 +77,8 @@ static json_t *answer_value(json_writer *w, const lb_network *net, const lb_osci
     if (answer->swings > 0)
         json_put(w, object, "transient", transient_value(w, net, answer));
     json_put(w, object, "effort", effort_value(w, answer));
+    json_put(w, object, "keeps_moving", json_boolean(answer->keeps_moving));
+    json_put(w, object, "runs_away", json_boolean(answer->runs_away));
     json_put(w, object, "limits", json_text(answer->limits ? answer->limits : ""));
     json_put(w, object, "interrupted", json_boolean(answer->interrupted));
     return object;

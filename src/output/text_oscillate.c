@@ -183,6 +183,20 @@ static void write_transient(buffer *out, const lb_layout *layout, const lb_netwo
     layout_end(&text, out);
 }
 
+/* What was seen that is neither rest nor a cycle; growth that a plant would feel
+ * carries the caution of the trade. */
+static void write_unsettled(buffer *out, const lb_layout *layout, const lb_oscillate_answer *answer)
+{
+    if (answer->verdict != LB_NOT_FOUND)
+        return;
+    if (answer->keeps_moving)
+        layout_printf(out, layout, 2, "Seen all the same: a trajectory that keeps moving within bounds and does not close "
+                      "(chaos, a torus or a very slow approach).");
+    if (answer->runs_away)
+        layout_printf(out, layout, 2, "Seen: a trajectory that grows without bound. If heat or gas comes with it this may be "
+                      "a runaway; sizing, dosing and venting need calorimetry, local codes and licensed practice.");
+}
+
 static void write_effort(buffer *out, const lb_layout *layout, const lb_oscillate_answer *answer)
 {
     buffer text;
@@ -222,6 +236,7 @@ void oscillate_write_answer(buffer *out, const lb_layout *layout, const lb_syste
         describe_fast_constants(out, layout, net, answer->k);
     }
     write_transient(out, layout, net, answer);
+    write_unsettled(out, layout, answer);
     write_effort(out, layout, answer);
 }
 
