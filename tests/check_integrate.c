@@ -507,7 +507,8 @@ START_TEST(test_dense_output_follows_the_solution)
 END_TEST
 
 /* cos t falls through zero at pi/2 + 2 k pi, every crossing is found once, and
- * the point is on the section to rounding. */
+ * the point is on the section to rounding: of t, and of a stiff step, whose constants
+ * are of size 100. */
 START_TEST(test_crossings_are_found_once_and_exactly)
 {
     const double pi = 3.14159265358979323846, weight[2] = {1, 0};
@@ -521,7 +522,7 @@ START_TEST(test_crossings_are_found_once_and_exactly)
         ck_assert_int_eq(integrator_crossing(r.it, weight, 0, -1, &found, &t, x, &r.err), LB_OK);
         if (found) {
             assert_close(t, pi / 2 + 2 * pi * falling, 0, 1e-9);
-            assert_close(x[0], 0, 0, 4 * 2.2e-16 * t);
+            assert_close(x[0], 0, 0, 4 * 2.2e-16 * t + (_i ? 100 * 2.2e-16 : 0));
             falling++;
         }
         ck_assert_int_eq(integrator_crossing(r.it, weight, 0, 0, &found, &t, x, &r.err), LB_OK);

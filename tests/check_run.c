@@ -184,6 +184,37 @@ START_TEST(test_options_outside_their_domain_are_refused)
 }
 END_TEST
 
+/* The Oregonator over many pulses at the loosest tolerance: what comes out is within 5 %
+ * of the course at 1e-10 in every row, and the result says that it was tightened. */
+START_TEST(test_a_loose_tolerance_is_found_out)
+{
+    rig r = rig_new(OREGO_TEXT), tight = rig_new(OREGO_TEXT);
+    ck_assert_int_eq(solve(&r, &(lb_run_options){.until = 10000, .tolerance = 1e-2}), LB_OK);
+    ck_assert_int_eq(solve(&tight, &(lb_run_options){.until = 10000, .tolerance = 1e-10}), LB_OK);
+    ck_assert_ptr_nonnull(r.run->tightened);
+    ck_assert(r.run->tolerance < 1e-2);
+    for (int i = 0; i < 3; i++) {
+        double largest = 0;
+        for (size_t row = 0; row < r.run->rows; row++)
+            largest = fmax(largest, tight.run->x[3 * row + (size_t)i]);
+        for (size_t row = 0; row < r.run->rows; row++)
+            assert_close(r.run->x[3 * row + (size_t)i], tight.run->x[3 * row + (size_t)i], 0, 0.06 * largest);
+    }
+    rig_free(&tight);
+    rig_free(&r);
+}
+END_TEST
+
+/* A decay is right at any tolerance: nothing to tighten, and a tight run is not checked. */
+START_TEST(test_a_sound_run_keeps_its_tolerance)
+{
+    rig r = rig_new(DECAY);
+    ck_assert_int_eq(solve(&r, &(lb_run_options){.until = 3, .tolerance = 1e-3}), LB_OK);
+    ck_assert(r.run->tolerance == 1e-3 && !r.run->tightened);
+    rig_free(&r);
+}
+END_TEST
+
 START_TEST(test_failing_allocations_leave_nothing_behind)
 {
     rig r = rig_new(ROBER_TEXT);
@@ -232,6 +263,8 @@ Suite *run_suite(void)
     tcase_add_test(ends, test_rows_before_an_error_are_kept);
     tcase_add_test(ends, test_an_interrupted_run_is_a_result);
     tcase_add_test(ends, test_options_outside_their_domain_are_refused);
+    tcase_add_test(ends, test_a_loose_tolerance_is_found_out);
+    tcase_add_test(ends, test_a_sound_run_keeps_its_tolerance);
     tcase_add_test(ends, test_failing_allocations_leave_nothing_behind);
     suite_add_tcase(suite, ends);
     return suite;

@@ -22,6 +22,7 @@ enum { ITERATIONS = 4 };       /* the mean below is a fourth root */
 void stiffness_clear(stiffness *estimate)
 {
     memory_free(estimate->values);
+    memory_free(estimate->jitter);
     memory_free(estimate->w);
     memory_free(estimate->v);
     *estimate = (stiffness){0};
@@ -33,11 +34,14 @@ lb_status stiffness_init(stiffness *estimate, const lb_system *system)
     *estimate = (stiffness){.n = system->n};
     estimate->v = memory_array(n, sizeof *estimate->v);
     estimate->w = memory_array(n, sizeof *estimate->w);
+    estimate->jitter = memory_array(n, sizeof *estimate->jitter);
     estimate->values = memory_array((size_t)system->nonzeros, sizeof *estimate->values);
-    if (!estimate->v || !estimate->w || !estimate->values) {
+    if (!estimate->v || !estimate->w || !estimate->jitter || !estimate->values) {
         stiffness_clear(estimate);
         return LB_E_NOMEM;
     }
+    for (size_t i = 0; i < n; i++)
+        estimate->jitter[i] = 1e-3 * (sample_uniform(1, i, 1) - 0.3);
     stiffness_reset(estimate);
     return LB_OK;
 }
@@ -77,7 +81,7 @@ double stiffness_radius(stiffness *estimate, const lb_system *system, const doub
     /* A little of every direction again: one that was lost exactly, because it
      * was not coupled then, may be the dominant one now. */
     for (int i = 0; i < estimate->n; i++)
-        estimate->v[i] += 1e-3 * (sample_uniform(1, (uint64_t)i, 1) - 0.3);
+        estimate->v[i] += estimate->jitter[i];
     for (int k = 0; k < ITERATIONS; k++) {
         double size = sqrt(dot(estimate->n, estimate->v, estimate->v));
         apply(estimate, system, values, scale);

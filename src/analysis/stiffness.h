@@ -8,6 +8,7 @@
 typedef struct stiffness {
     int n;
     double *v, *w;              /* [n] the dominant direction so far; image */
+    double *jitter;             /* [n] a little of every direction */
     double *values;             /* [nonzeros] room for a Jacobian */
 } stiffness;
 

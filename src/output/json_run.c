@@ -29,6 +29,8 @@ lb_status lb_json_run(const lb_system *system, const lb_diagnostics *diagnostics
     json_put(&w, w.root, "readings", readings);
     json_put(&w, w.root, "method", json_text(run->method ? run->method : ""));
     json_put(&w, w.root, "why", json_text(run->why ? run->why : ""));
+    json_put(&w, w.root, "tolerance", json_number(run->tolerance));
+    json_put(&w, w.root, "tightened", run->tightened ? json_text(run->tightened) : json_null());
     json_put(&w, w.root, "steps", json_count(run->steps));
     json_put(&w, w.root, "rejected", json_count(run->rejected));
     json_put(&w, w.root, "interrupted", json_boolean(run->interrupted));
