@@ -226,7 +226,8 @@ static char *strip(const char *text)
         } else if (*c == '"' || *c == '\'') {
             char quote = *c++;
             while (*c && *c != quote)
-                c += *c == '\\' ? 2 : 1;
+                c += *c == '\\' && c[1] ? 2 : 1;
+            ck_assert_msg(*c == quote, "a string without an end");
             c++;
         } else {
             *write++ = *c++;
