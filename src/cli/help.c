@@ -7,7 +7,14 @@
 
 #include "cli/terminal.h"
 
-enum { OPTION_COLUMNS = 24, TEXT_COLUMNS = 80 };
+enum { OPTION_COLUMNS = 24, PLAIN_WIDTH = 80, LEAST_WIDTH = 50 };
+
+/* Columns of the page; very narrow ones would leave no room beside the options. */
+static int page_width(void)
+{
+    int width = terminal_layout(STDOUT_FILENO).width;
+    return width <= 0 ? PLAIN_WIDTH : width < LEAST_WIDTH ? LEAST_WIDTH : width;
+}
 
 static void print_bold(const char *text)
 {
@@ -17,14 +24,16 @@ static void print_bold(const char *text)
         printf("%s\n", text);
 }
 
-/* Words from column `indent` on, the first line continued where the cursor is. */
+/* Words from column `indent` on, the first line continued where the cursor is;
+ * a line end in the text is a blank. */
 static void print_wrapped(const char *text, int indent)
 {
+    const int width = page_width();
     int used = indent;
     bool is_first = true;
     while (*text) {
-        int length = (int)strcspn(text, " ");
-        if (!is_first && used + 1 + length > TEXT_COLUMNS) {
+        int length = (int)strcspn(text, " \n");
+        if (!is_first && used + 1 + length > width) {
             printf("\n%*s", indent, "");
             used = indent;
             is_first = true;
@@ -33,7 +42,7 @@ static void print_wrapped(const char *text, int indent)
         used += length + !is_first;
         is_first = false;
         text += length;
-        text += strspn(text, " ");
+        text += strspn(text, " \n");
     }
     printf("\n");
 }
@@ -61,7 +70,9 @@ int help_command(const command *c)
 {
     size_t count;
     const option_spec *common = options_common(&count);
-    printf("limbeck %s\n\n%s\n", c->usage, c->about);
+    printf("limbeck %s\n\n", c->usage);
+    print_wrapped(c->about, 0);
+    printf("\n");
     print_bold("Options");
     for (size_t i = 0; i < c->own_count; i++)
         print_option(&c->own[i]);
