@@ -650,6 +650,66 @@ START_TEST(test_tangents_are_the_derivative_of_the_flow)
 }
 END_TEST
 
+/* Forward sensitivities by all constants, or by two of them beside the tangents, against
+ * central differences of the flow with a relative step of 1e-5 in the constant: mass action,
+ * a rate law that is no polynomial, a coefficient that is a constant, a held concentration, a
+ * conservation law.  Errors near 1e-9 of a column's largest entry. */
+START_TEST(test_sensitivities_are_derivatives_of_the_flow)
+{
+    const char *text = "units none\n[E]0 = 1\n[S]0 = 2\n[A] = 0.7\nVmax = 3\nKm = 0.2\nf = 0.6\n"
+                       "E + S <-> C, kf = 5, kr = 0.5\nC -> E + (f) P, k = 2\nP -> Q, v = Vmax*[P]/(Km + [P])\nA -> S, k = 0.3\n";
+    const lb_method method = _i % 2 ? LB_METHOD_STIFF : LB_METHOD_EXPLICIT;
+    const int chosen[2] = {4, 1};
+    integrator_options options = {.tolerance = 1e-11, .method = method};
+    rig r = rig_new(text, &options);
+    int m = lb_network_constants(r.network), count = _i < 2 ? m : 2;
+    options.sensitivities = count;
+    options.constants = _i < 2 ? NULL : chosen;
+    options.tangents = _i >= 2;
+    integrator *it = NULL;
+    ck_assert_int_eq(integrator_new(r.evaluator, &options, &it, &r.err), LB_OK);
+    integrator_start(it, 0, r.start);
+    ck_assert_int_eq(integrator_to(it, 3, &r.err), LB_OK);
+    const double *derivative = integrator_sensitivities(it);
+    ck_assert((integrator_tangents(it) != NULL) == options.tangents);
+    double k[16], end[2][8], most = 0;
+    ck_assert(m <= 16 && r.n <= 8);
+    for (int c = 0; c < count; c++) {
+        int constant = _i < 2 ? c : chosen[c];
+        double value = lb_network_default(r.network, constant), step = 1e-5 * value, largest = 0;
+        for (int side = 0; side < 2 && step > 0; side++) {
+            for (int j = 0; j < m; j++)
+                k[j] = lb_network_default(r.network, j) + (j == constant ? (side ? step : -step) : 0);
+            ck_assert_int_eq(lb_evaluator_bind(r.evaluator, k, NULL), LB_OK);
+            integrator_start(r.it, 0, r.start);
+            rig_to(&r, 3);
+            memcpy(end[side], integrator_state(r.it), (size_t)r.n * sizeof **end);
+        }
+        for (int i = 0; i < r.n; i++)
+            largest = fmax(largest, fabs(derivative[i + c * r.n]));
+        for (int i = 0; i < r.n && step > 0; i++)
+            assert_close(derivative[i + c * r.n], (end[1][i] - end[0][i]) / (2 * step), 0, 1e-8 * largest + 1e-9 / value);
+        most = fmax(most, largest);
+    }
+    ck_assert(most > 0.01);
+    integrator_free(it);
+    rig_free(&r);
+}
+END_TEST
+
+START_TEST(test_constants_that_are_not_there_are_refused)
+{
+    rig r = rig_new(DECAY, NULL);
+    integrator *it;
+    const int wrong = 99;
+    ck_assert_int_eq(integrator_new(r.evaluator, &(integrator_options){.sensitivities = 99}, &it, &r.err), LB_E_ARG);
+    ck_assert_int_eq(integrator_new(r.evaluator, &(integrator_options){.sensitivities = 1, .constants = &wrong}, &it,
+                                    &r.err), LB_E_ARG);
+    ck_assert_ptr_null(it);
+    rig_free(&r);
+}
+END_TEST
+
 /* At rest the state asks for no accuracy, the tangents do: exp(-t) and exp(-50 t)
  * after t = 1. */
 START_TEST(test_tangents_are_right_at_rest)
@@ -675,8 +735,9 @@ START_TEST(test_tangents_are_the_exact_derivative_of_a_step)
     rig r = rig_new(text, NULL);
     explicit_method *explicit_steps;
     rosenbrock *stiff_steps;
-    ck_assert_int_eq(explicit_new(r.evaluator, true, &explicit_steps, NULL), LB_OK);
-    ck_assert_int_eq(rosenbrock_new(r.evaluator, true, &stiff_steps, NULL), LB_OK);
+    const stepper_columns columns = {.tangents = 2};
+    ck_assert_int_eq(explicit_new(r.evaluator, &columns, &explicit_steps, NULL), LB_OK);
+    ck_assert_int_eq(rosenbrock_new(r.evaluator, &columns, &stiff_steps, NULL), LB_OK);
     const double identity[4] = {1, 0, 0, 1};
     double x[2], f[2], side[3][2], error[2], P[4], unused[4], P_error[4];
     for (int j = 0; j < 2; j++)
@@ -889,7 +950,7 @@ END_TEST
 START_TEST(test_failing_allocations_leave_nothing_behind)
 {
     rig r = rig_new(ROBER_TEXT, NULL);
-    integrator_options options = {.tangents = true};
+    integrator_options options = {.tangents = true, .sensitivities = 2};
     const double weight[3] = {1, 0, 0};
     int failures = 0;
     for (long k = 0; ; k++) {
@@ -955,6 +1016,8 @@ static void add_methods(Suite *suite)
     tcase_add_loop_test(tangents, test_tangents_are_the_derivative_of_the_flow, 0, 2);
     tcase_add_loop_test(tangents, test_tangents_are_the_exact_derivative_of_a_step, 0, 2);
     tcase_add_loop_test(tangents, test_tangents_are_right_at_rest, 0, 2);
+    tcase_add_loop_test(tangents, test_sensitivities_are_derivatives_of_the_flow, 0, 4);
+    tcase_add_test(tangents, test_constants_that_are_not_there_are_refused);
     suite_add_tcase(suite, tangents);
 }
 

@@ -11,8 +11,8 @@ typedef struct explicit_method explicit_method;
  * stepping x' = lambda x; complex ones with negative real part: 5.2 to 5.5). */
 #define EXPLICIT_STABILITY 5.17
 
-/* Borrows the evaluator for its life. */
-lb_status explicit_new(lb_evaluator *evaluator, bool tangents, explicit_method **out, lb_error *err);
+/* Borrows the evaluator and the columns (NULL: none) for its life. */
+lb_status explicit_new(lb_evaluator *evaluator, const stepper_columns *columns, explicit_method **out, lb_error *err);
 void explicit_free(explicit_method *method);
 stepper_outcome explicit_attempt(explicit_method *method, stepper_attempt *attempt);
 

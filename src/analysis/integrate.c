@@ -44,7 +44,7 @@ enum {
 
 /* ---- Life ---------------------------------------------------------------------- */
 
-static lb_status check_options(const integrator_options *options, int n, lb_error *err)
+static lb_status check_options(const integrator_options *options, int n, int m, lb_error *err)
 {
     double relative = options->tolerance;
     if (relative != 0 && !(relative >= TIGHTEST_TOLERANCE && relative < INFINITY))
@@ -53,6 +53,11 @@ static lb_status check_options(const integrator_options *options, int n, lb_erro
     for (int i = 0; options->absolute && i < n; i++)
         if (!(options->absolute[i] >= 0 && options->absolute[i] < INFINITY))
             return status_raise(err, LB_E_ARG, NULL, "%g is no absolute tolerance", options->absolute[i]);
+    if (options->sensitivities < 0 || (!options->constants && options->sensitivities > m))
+        return status_raise(err, LB_E_ARG, NULL, "there are %d constants, not %d", m, options->sensitivities);
+    for (int i = 0; options->constants && i < options->sensitivities; i++)
+        if (options->constants[i] < 0 || options->constants[i] >= m)
+            return status_raise(err, LB_E_ARG, NULL, "there is no constant %d", options->constants[i]);
     return LB_OK;
 }
 
@@ -63,6 +68,7 @@ void integrator_free(integrator *it)
     memory_free(it->tangents_error);
     memory_free(it->tangents_new);
     memory_free(it->tangents);
+    memory_free(it->constant);
     double *const vectors[] = {it->x, it->x_last, it->x_new, it->f, it->f_last, it->f_new, it->error, it->scale};
     for (size_t i = 0; i < sizeof vectors / sizeof *vectors; i++)
         memory_free(vectors[i]);
@@ -74,7 +80,7 @@ void integrator_free(integrator *it)
     memory_free(it);
 }
 
-static bool allocate(integrator *it, bool tangents)
+static bool allocate(integrator *it, const integrator_options *options)
 {
     size_t n = (size_t)it->n;
     double **const vectors[] = {&it->x,      &it->x_last, &it->x_new, &it->f,
@@ -82,11 +88,19 @@ static bool allocate(integrator *it, bool tangents)
     for (size_t i = 0; i < sizeof vectors / sizeof *vectors; i++)
         if (!(*vectors[i] = memory_zeroed(n, sizeof **vectors[i])))
             return false;
-    if (!tangents)
+    int count = options->sensitivities;
+    it->constant = memory_array((size_t)count, sizeof *it->constant);
+    if (!it->constant)
+        return false;
+    for (int c = 0; c < count; c++)
+        it->constant[c] = options->constants ? options->constants[c] : c;
+    it->columns = (stepper_columns){options->tangents ? it->n : 0, count, it->constant};
+    size_t carried = n * (size_t)stepper_column_count(&it->columns);
+    if (carried == 0)
         return true;
-    it->tangents = memory_zeroed(n * n, sizeof *it->tangents);
-    it->tangents_new = memory_zeroed(n * n, sizeof *it->tangents_new);
-    it->tangents_error = memory_zeroed(n * n, sizeof *it->tangents_error);
+    it->tangents = memory_zeroed(carried, sizeof *it->tangents);
+    it->tangents_new = memory_zeroed(carried, sizeof *it->tangents_new);
+    it->tangents_error = memory_zeroed(carried, sizeof *it->tangents_error);
     return it->tangents && it->tangents_new && it->tangents_error;
 }
 
@@ -97,7 +111,7 @@ lb_status integrator_new(lb_evaluator *evaluator, const integrator_options *opti
     if (!options)
         options = &defaults;
     const lb_system *system = evaluator_system(evaluator);
-    lb_status status = check_options(options, system->n, err);
+    lb_status status = check_options(options, system->n, system->m, err);
     if (status != LB_OK)
         return status;
     integrator *it = memory_zeroed(1, sizeof *it);
@@ -112,12 +126,12 @@ lb_status integrator_new(lb_evaluator *evaluator, const integrator_options *opti
     it->monitor = options->monitor;
     double relative = options->tolerance == 0 ? DEFAULT_TOLERANCE : fmin(options->tolerance, LOOSEST_TOLERANCE);
     if (tolerance_init(&it->control, system->network, relative, options->absolute) != LB_OK ||
-        stiffness_init(&it->estimate, system) != LB_OK || !allocate(it, options->tangents))
+        stiffness_init(&it->estimate, system) != LB_OK || !allocate(it, options))
         status = status_no_memory(err);
     if (status == LB_OK && it->method != LB_METHOD_STIFF)
-        status = explicit_new(evaluator, options->tangents, &it->explicit_steps, err);
+        status = explicit_new(evaluator, &it->columns, &it->explicit_steps, err);
     if (status == LB_OK && it->method == LB_METHOD_STIFF)
-        status = rosenbrock_new(evaluator, options->tangents, &it->stiff_steps, err);
+        status = rosenbrock_new(evaluator, &it->columns, &it->stiff_steps, err);
     if (status != LB_OK) {
         integrator_free(it);
         return status;
@@ -134,8 +148,8 @@ void integrator_start(integrator *it, double t, const double *x)
     memmove(it->x, x, n * sizeof *x);
     memcpy(it->x_last, it->x, n * sizeof *x);
     if (it->tangents) {
-        memset(it->tangents, 0, n * n * sizeof *it->tangents);
-        for (size_t i = 0; i < n; i++)
+        memset(it->tangents, 0, n * (size_t)stepper_column_count(&it->columns) * sizeof *it->tangents);
+        for (size_t i = 0; i < (size_t)it->columns.tangents; i++)
             it->tangents[i + i * n] = 1;
     }
     it->is_begun = it->is_stiff = it->last_was_stiff = it->has_stages = it->is_out_of_reach = false;
@@ -206,7 +220,7 @@ static bool looks_stiff(integrator *it)
 static lb_status use_method(integrator *it, bool stiff, lb_error *err)
 {
     if (stiff && !it->stiff_steps) {
-        lb_status status = rosenbrock_new(it->evaluator, it->tangents != NULL, &it->stiff_steps, err);
+        lb_status status = rosenbrock_new(it->evaluator, &it->columns, &it->stiff_steps, err);
         if (status != LB_OK)
             return status;
     }
@@ -286,6 +300,21 @@ static lb_status review_method(integrator *it, lb_error *err)
     return use_method(it, true, err);
 }
 
+/* The error of what is carried; a column is scaled by what it is a derivative by. */
+static double columns_norm(const integrator *it)
+{
+    double norm = 0;
+    for (int c = 0; c < stepper_column_count(&it->columns); c++) {
+        size_t at = (size_t)c * (size_t)it->n;
+        int constant = c - it->columns.tangents;
+        double from = constant < 0 ? tolerance_magnitude(&it->control, c)
+                                   : fabs(evaluator_constants(it->evaluator)[it->constant[constant]]);
+        norm = fmax(norm, tolerance_column_norm(&it->control, from > 0 ? from : 1, it->tangents + at,
+                                                it->tangents_new + at, it->tangents_error + at));
+    }
+    return norm;
+}
+
 /* Try a step h; true when it may be accepted.  Otherwise why is in refused and
  * culprit, and *shrink is the factor for the next try. */
 static bool attempt_step(integrator *it, double h, double *norm, double *shrink)
@@ -306,7 +335,7 @@ static bool attempt_step(integrator *it, double h, double *norm, double *shrink)
 
     *norm = tolerance_norm(&it->control, it->x, it->x_new, it->error, &it->worst);
     if (it->tangents)
-        *norm = fmax(*norm, tolerance_tangent_norm(&it->control, it->tangents, it->tangents_new, it->tangents_error));
+        *norm = fmax(*norm, columns_norm(it));
     it->refused = REFUSED_ERROR;
     if (!(*norm <= 1)) {
         int order = it->is_stiff ? ROSENBROCK_ERROR_ORDER : EXPLICIT_ERROR_ORDER;

@@ -17,17 +17,21 @@ typedef struct integrator_options {
     const double *absolute;     /* [n] or NULL: a scale per species that follows the run (analysis/tolerance.h) */
     lb_method method;
     bool tangents;              /* carry the n*n fundamental matrix of the variational equations */
+    /* Carry d x(t) / d k at a fixed start for these constants (forward sensitivities, exact
+     * right-hand sides), a column each. */
+    int sensitivities;          /* how many; all m: constants may be NULL */
+    const int *constants;       /* [sensitivities] ascending or not; copied */
     bool allow_negative;        /* analyses that start outside the orthant on purpose */
     size_t max_steps;           /* 0: no limit */
     const lb_monitor *monitor;
 } integrator_options;
 
 /* Borrows the evaluator for its life; options may be NULL.  LB_E_ARG (a
- * tolerance that is negative, not finite, or below 1e-13), LB_E_NOMEM. */
+ * tolerance that is negative, not finite, or below 1e-13; a constant that is not there), LB_E_NOMEM. */
 lb_status integrator_new(lb_evaluator *evaluator, const integrator_options *options, integrator **out, lb_error *err);
 void integrator_free(integrator *it);
 
-/* Set time and state; tangents (if carried) become the identity.  What follows
+/* Set time and state; tangents (if carried) become the identity, sensitivities zero.  What follows
  * depends on t, x and the options alone, not on earlier runs. */
 void integrator_start(integrator *it, double t, const double *x);
 
@@ -41,6 +45,7 @@ lb_status integrator_to(integrator *it, double t, lb_error *err);
 double        integrator_time(const integrator *it);
 const double *integrator_state(const integrator *it);      /* [n] */
 const double *integrator_tangents(const integrator *it);   /* [n*n] d x(t) / d x(start), column-major; NULL when not carried */
+const double *integrator_sensitivities(const integrator *it);   /* [n*sensitivities], column-major; NULL when none */
 double        integrator_last_time(const integrator *it);  /* where the last step began */
 const double *integrator_last_state(const integrator *it);
 

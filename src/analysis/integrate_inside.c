@@ -53,7 +53,7 @@ lb_status integrator_restep(integrator *it, double t, double *x, lb_error *err)
     if (!it->last_was_stiff || t <= it->t_last || t >= it->t)
         return integrator_dense(it, t, x, err);
     if (!it->extra_steps) {
-        lb_status status = rosenbrock_new(it->evaluator, false, &it->extra_steps, err);
+        lb_status status = rosenbrock_new(it->evaluator, NULL, &it->extra_steps, err);
         if (status != LB_OK)
             return status;
     }
@@ -74,7 +74,12 @@ const double *integrator_state(const integrator *it)
 
 const double *integrator_tangents(const integrator *it)
 {
-    return it->tangents;
+    return it->columns.tangents > 0 ? it->tangents : NULL;
+}
+
+const double *integrator_sensitivities(const integrator *it)
+{
+    return it->columns.constants > 0 ? it->tangents + (size_t)it->columns.tangents * (size_t)it->n : NULL;
 }
 
 double integrator_last_time(const integrator *it)

@@ -33,7 +33,9 @@ struct integrator {
     double *x, *x_last, *x_new; /* [n] */
     double *f, *f_last, *f_new; /* [n] right-hand sides there */
     double *error, *scale;      /* [n] */
-    double *tangents, *tangents_new, *tangents_error;   /* [n*n] or NULL */
+    stepper_columns columns;    /* carried beside the state */
+    int *constant;              /* [columns.constants] owned */
+    double *tangents, *tangents_new, *tangents_error;   /* [n*c] or NULL */
 
     bool is_stiff;              /* method in use */
     bool last_was_stiff;

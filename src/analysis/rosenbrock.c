@@ -17,6 +17,9 @@
  * about 4e-11 of the change of J over the step.  Its error acts like an error of
  * that size in the Jacobian of a Rosenbrock method, multiplied by h.
  *
+ * Sensitivities S' = J(x) S + D(x), D = df/dk, are columns of the same kind with D(Y_i) and
+ * (dD/dx)[u_i] added to the right.
+ *
  * Source: G. Steinebach, Construction of Rosenbrock-Wanner method Rodas5P and
  * numerical benchmarks within the Julia Differential Equations package, BIT
  * Numer. Math. 63:27 (2023) (constants); E. Hairer and G. Wanner, Solving
@@ -74,11 +77,13 @@ struct rosenbrock {
     stiff_matrix matrix;
     double *u;                  /* [8*n] stages of the last attempt */
     double *Y;                  /* [n] */
-    /* tangents only */
+    /* with columns only */
+    const stepper_columns *columns;     /* NULL: none */
     double *slope;              /* [nonzeros] derivative of J along a stage */
     double *point;              /* [n] */
-    double *U;                  /* [8*n*n] */
-    double *P;                  /* [n*n] */
+    double *forcing;            /* [n*m]; sensitivities only */
+    double *U;                  /* [8*n*c] */
+    double *P;                  /* [n*c] */
 };
 
 void rosenbrock_free(rosenbrock *method)
@@ -87,6 +92,7 @@ void rosenbrock_free(rosenbrock *method)
         return;
     memory_free(method->P);
     memory_free(method->U);
+    memory_free(method->forcing);
     memory_free(method->point);
     memory_free(method->slope);
     memory_free(method->Y);
@@ -97,29 +103,31 @@ void rosenbrock_free(rosenbrock *method)
     memory_free(method);
 }
 
-lb_status rosenbrock_new(lb_evaluator *evaluator, bool tangents, rosenbrock **out, lb_error *err)
+lb_status rosenbrock_new(lb_evaluator *evaluator, const stepper_columns *columns, rosenbrock **out, lb_error *err)
 {
     *out = NULL;
     const lb_system *system = evaluator_system(evaluator);
-    size_t n = (size_t)system->n, z = (size_t)system->nonzeros;
+    size_t n = (size_t)system->n, z = (size_t)system->nonzeros, c = (size_t)stepper_column_count(columns);
     rosenbrock *method = memory_zeroed(1, sizeof *method);
     if (!method)
         return status_no_memory(err);
     method->evaluator = evaluator;
     method->system = system;
     method->n = system->n;
+    method->columns = columns;
     method->values = memory_array(z, sizeof *method->values);
     method->shifted = memory_array(z, sizeof *method->shifted);
     method->u = memory_array(STAGES * n, sizeof *method->u);
     method->Y = memory_array(n, sizeof *method->Y);
     bool complete = method->values && method->shifted && method->u && method->Y &&
                     stiff_matrix_init(&method->matrix, system) == LB_OK;
-    if (complete && tangents) {
+    if (complete && c > 0) {
         method->slope = memory_array(z, sizeof *method->slope);
         method->point = memory_array(n, sizeof *method->point);
-        method->U = memory_array(STAGES * n * n, sizeof *method->U);
-        method->P = memory_array(n * n, sizeof *method->P);
-        complete = method->slope && method->point && method->U && method->P;
+        method->forcing = memory_array(columns->constants ? n * (size_t)system->m : 0, sizeof *method->forcing);
+        method->U = memory_array(STAGES * n * c, sizeof *method->U);
+        method->P = memory_array(n * c, sizeof *method->P);
+        complete = method->slope && method->point && method->forcing && method->U && method->P;
     }
     if (!complete) {
         rosenbrock_free(method);
@@ -157,7 +165,7 @@ const double *rosenbrock_jacobian(const rosenbrock *method)
 }
 
 /* Argument of stage i: from the start and the stages before, all of one size
- * (n for the state, n*n for the tangents); out holds stage i-1's on entry. */
+ * (n for the state, n*c for the columns); out holds stage i-1's on entry. */
 static void stage_argument(int i, size_t size, const double *start, const double *stages, double *out)
 {
     if (i > 5) {
@@ -184,8 +192,8 @@ static void add_history(int i, double h, size_t size, const double *stages, doub
     }
 }
 
-/* Derivative of the Jacobian at x along u. */
-static bool slope_along(rosenbrock *method, const double *x, const double *u)
+/* Derivative of the Jacobian at x along u; that of df/dk is added to U, the columns. */
+static bool slope_along(rosenbrock *method, const double *x, const double *u, double *U)
 {
     int n = method->n, nonzeros = method->system->nonzeros;
     double steepest = 0, largest = 0;
@@ -203,34 +211,38 @@ static bool slope_along(rosenbrock *method, const double *x, const double *u)
         method->point[i] = x[i] + reach * u[i];
     if (!stepper_jacobian(method->evaluator, method->point, method->slope))
         return false;
+    stepper_add_forcing(method->evaluator, method->columns, method->point, 0.5 / reach, method->forcing, U);
     for (int i = 0; i < n; i++)
         method->point[i] = x[i] - reach * u[i];
     if (!stepper_jacobian(method->evaluator, method->point, method->shifted))
         return false;
+    stepper_add_forcing(method->evaluator, method->columns, method->point, -0.5 / reach, method->forcing, U);
     for (int e = 0; e < nonzeros; e++)
         method->slope[e] = (method->slope[e] - method->shifted[e]) / (2 * reach);
     return true;
 }
 
-/* Stage i of the tangents, once u_i is known and Y still holds Y_i. */
+/* Stage i of the columns, once u_i is known and Y still holds Y_i. */
 static bool tangent_stage(rosenbrock *method, int i, const stepper_attempt *attempt)
 {
-    size_t n = (size_t)method->n, size = n * n;
+    int columns = stepper_column_count(method->columns);
+    size_t n = (size_t)method->n, size = n * (size_t)columns;
     const double *u = method->u + (size_t)i * n, *J = method->values;
     double *U = method->U + (size_t)i * size;
     stage_argument(i, size, attempt->tangents, method->U, method->P);
     memset(U, 0, size * sizeof *U);
-    if (!slope_along(method, attempt->x, u))
+    if (!slope_along(method, attempt->x, u, U))
         return false;
-    stepper_multiply_add(method->system, method->slope, 1, method->n, attempt->tangents, U);
+    stepper_multiply_add(method->system, method->slope, 1, columns, attempt->tangents, U);
     if (i > 0) {
         if (!stepper_jacobian(method->evaluator, method->Y, method->shifted))
             return false;
         J = method->shifted;
     }
-    stepper_multiply_add(method->system, J, 1, method->n, method->P, U);
+    stepper_multiply_add(method->system, J, 1, columns, method->P, U);
+    stepper_add_forcing(method->evaluator, method->columns, method->Y, 1, method->forcing, U);
     add_history(i, attempt->h, size, method->U, U);
-    stiff_matrix_solve(&method->matrix, method->n, U);
+    stiff_matrix_solve(&method->matrix, columns, U);
     return true;
 }
 
@@ -271,7 +283,8 @@ stepper_outcome rosenbrock_attempt(rosenbrock *method, stepper_attempt *attempt)
     }
     bool is_finite = finish(n, method->Y, method->u, attempt->x_new, attempt->error);
     if (attempt->tangents)
-        is_finite = finish(n * n, method->P, method->U, attempt->tangents_new, attempt->tangents_error) && is_finite;
+        is_finite = finish(n * (size_t)stepper_column_count(method->columns), method->P, method->U,
+                           attempt->tangents_new, attempt->tangents_error) && is_finite;
     return is_finite ? STEPPER_DONE : STEPPER_NOT_FINITE;
 }
 

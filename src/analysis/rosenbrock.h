@@ -17,8 +17,8 @@ extern const rosenbrock_table rosenbrock_rodas5p;
 
 typedef struct rosenbrock rosenbrock;
 
-/* Borrows the evaluator for its life.  LB_E_NOMEM. */
-lb_status rosenbrock_new(lb_evaluator *evaluator, bool tangents, rosenbrock **out, lb_error *err);
+/* Borrows the evaluator and the columns (NULL: none) for its life.  LB_E_NOMEM. */
+lb_status rosenbrock_new(lb_evaluator *evaluator, const stepper_columns *columns, rosenbrock **out, lb_error *err);
 void rosenbrock_free(rosenbrock *method);
 
 /* What follows depends on no earlier step. */

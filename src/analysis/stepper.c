@@ -36,3 +36,23 @@ void stepper_multiply_add(const lb_system *system, const double *values, double 
                     Y[system->row[e] + (size_t)c * n] += values[e] * scaled;
         }
 }
+
+int stepper_column_count(const stepper_columns *columns)
+{
+    return columns ? columns->tangents + columns->constants : 0;
+}
+
+void stepper_add_forcing(lb_evaluator *evaluator, const stepper_columns *columns, const double *x, double factor,
+                         double *room, double *Y)
+{
+    if (columns->constants == 0)
+        return;
+    size_t n = (size_t)evaluator_system(evaluator)->n;
+    lb_dfdk(evaluator, x, room);
+    for (int c = 0; c < columns->constants; c++) {
+        const double *from = room + (size_t)columns->constant[c] * n;
+        double *to = Y + (size_t)(columns->tangents + c) * n;
+        for (size_t i = 0; i < n; i++)
+            to[i] += factor * from[i];
+    }
+}

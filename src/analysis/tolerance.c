@@ -102,27 +102,22 @@ double tolerance_norm(const tolerance *control, const double *x, const double *x
     return norm;
 }
 
-static double magnitude(const tolerance *control, int state)
+double tolerance_magnitude(const tolerance *control, int state)
 {
     return fmax(control->seen[state], 1e-9 * control->reference);
 }
 
-double tolerance_tangent_norm(const tolerance *control, const double *tangents, const double *tangents_new,
-                              const double *error)
+double tolerance_column_norm(const tolerance *control, double from, const double *column, const double *column_new,
+                             const double *error)
 {
-    size_t n = (size_t)control->n;
-    double norm = 0;
-    for (size_t j = 0; j < n; j++) {
-        double size = 0, off = 0, from = magnitude(control, (int)j);
-        for (size_t i = 0; i < n; i++) {
-            double scale = from / magnitude(control, (int)i);
-            size = fmax(size, scale * fmax(fabs(tangents[i + j * n]), fabs(tangents_new[i + j * n])));
-            off = fmax(off, scale * fabs(error[i + j * n]));
-        }
-        /* The identity that the matrix starts from has columns of size one. */
-        norm = fmax(norm, ratio(off, 10 * control->relative * (size + TOLERANCE_FRACTION)));
+    double size = 0, off = 0;
+    for (int i = 0; i < control->n; i++) {
+        double scale = from / tolerance_magnitude(control, i);
+        size = fmax(size, scale * fmax(fabs(column[i]), fabs(column_new[i])));
+        off = fmax(off, scale * fabs(error[i]));
     }
-    return norm;
+    /* The identity that tangents start from has columns of size one. */
+    return ratio(off, 10 * control->relative * (size + TOLERANCE_FRACTION));
 }
 
 int tolerance_negative(const tolerance *control, const double *x, const double *x_new)

@@ -39,10 +39,12 @@ void tolerance_follow(tolerance *control, const double *x);
 double tolerance_weight(const tolerance *control, int state, double x, double x_new);
 /* max_i |error_i| / weight_i, and the state where it is; accepted up to 1. */
 double tolerance_norm(const tolerance *control, const double *x, const double *x_new, const double *error, int *worst);
-/* The same for the fundamental matrix, ten times looser: every column in
- * coordinates scaled by the states' magnitudes, by its own size. */
-double tolerance_tangent_norm(const tolerance *control, const double *tangents, const double *tangents_new,
-                              const double *error);
+/* The same for a column of derivatives of the state by something of size `from`, ten
+ * times looser: in coordinates scaled by the states' magnitudes, by its own size. */
+double tolerance_column_norm(const tolerance *control, double from, const double *column, const double *column_new,
+                             const double *error);
+/* Largest value of a state so far, or a trace of the largest of any. */
+double tolerance_magnitude(const tolerance *control, int state);
 
 /* The unsigned state that is furthest below minus its absolute tolerance (and
  * the rounding of the step from x), in units of that; -1 when there is none. */
