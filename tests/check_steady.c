@@ -459,6 +459,66 @@ START_TEST(test_signed_roots_far_from_the_start_are_found)
 }
 END_TEST
 
+/* Van der Pol's equations rest at the origin alone.  Along y = -1/(mu x) the terms of
+ * dy/dt cancel, and for large x what is left is small against them, but dx/dt = y is
+ * no less than all of itself. */
+START_TEST(test_stiff_van_der_pol_rests_at_the_origin_alone)
+{
+    static const double mu[] = {1, 100, 1000, 1e4, 1e6};
+    char text[200];
+    snprintf(text, sizeof text, "units none\nsigned x, y\nmu = %g\n[x]0 = 1\n-> x, v = [y]\n-> y, v = -[x] + mu*(1 - [x]^2)*[y]\n",
+             mu[_i]);
+    struct answer a = ask(text);
+    ck_assert_uint_eq(a.steady->count, 1);
+    assert_close(a.steady->state[0].x[0], 0, 0, 1e-12);
+    assert_close(a.steady->state[0].x[1], 0, 0, 1e-12);
+    answer_clear(&a);
+}
+END_TEST
+
+/* Rates that die out, underflow, or saturate on the way to infinity. */
+START_TEST(test_way_to_infinity_is_no_state)
+{
+    static const char *const text[] = {
+        "units none\nsigned x\n-> x, v = exp(-[x])\n",
+        "units none\nX ->, v = exp(-[X])\n",
+        "units none\nsigned x\n-> x, v = 1/(1 + [x]^2)\n",
+        "units none\nsigned x, y\n-> x, v = 1 - ([x] - [y])\n-> y, v = [x] - [y] + 1\n",
+        "units none\nX -> Y, v = [X]/(1 + [X])\n-> X, v = 1 + 1e-3/(1 + [Y])\nY ->, v = [Y]/(1 + [Y])\n",
+        "units none\nX -> Y, v = [X]/(1 + [X])\n-> X, v = 1\nY ->, k = 1\n",
+    };
+    struct answer a = ask(text[_i]);
+    ck_assert_uint_eq(a.steady->count, 0);
+    ck_assert_int_eq(a.steady->continuum, 0);
+    answer_clear(&a);
+}
+END_TEST
+
+START_TEST(test_large_signed_states_are_found)
+{
+    struct answer a = ask("units none\nsigned x, y\n-> x, v = [y]\n-> y, v = 1e20 - [x] - [y]\n");
+    ck_assert_uint_eq(a.steady->count, 1);
+    assert_close(a.steady->state[0].x[0], 1e20, 1e-12, 0);
+    answer_clear(&a);
+    a = ask("units none\nsigned x, y\n-> x, v = 1e12 - [x]\n-> y, v = [x] - [y]^3\n");
+    ck_assert_uint_eq(a.steady->count, 1);
+    assert_close(a.steady->state[0].x[0], 1e12, 1e-12, 0);
+    assert_close(a.steady->state[0].x[1], 1e4, 1e-12, 0);
+    answer_clear(&a);
+}
+END_TEST
+
+/* A threefold root at the origin is one state, though Newton's method only creeps there. */
+START_TEST(test_signed_degenerate_root_is_one_state)
+{
+    struct answer a = ask("units none\nsigned x, y\n-> x, v = [y]\n-> y, v = -[x]^3 - [y]\n");
+    ck_assert_uint_eq(a.steady->count, 1);
+    assert_close(a.steady->state[0].x[0], 0, 0, 1e-6);
+    ck_assert_int_eq(a.steady->state[0].stable, LB_UNDECIDED);
+    answer_clear(&a);
+}
+END_TEST
+
 /* ---- Random networks with planted states ------------------------------------------------------------ */
 
 /* Two molecules in, two out. */
@@ -717,6 +777,10 @@ Suite *steady_suite(void)
     tcase_add_test(degenerate, test_transcritical_point_is_the_boundary_state_alone);
     tcase_add_test(degenerate, test_rate_constant_of_zero_conserves_more);
     tcase_add_test(degenerate, test_signed_roots_far_from_the_start_are_found);
+    tcase_add_loop_test(degenerate, test_stiff_van_der_pol_rests_at_the_origin_alone, 0, 5);
+    tcase_add_loop_test(degenerate, test_way_to_infinity_is_no_state, 0, 6);
+    tcase_add_test(degenerate, test_large_signed_states_are_found);
+    tcase_add_test(degenerate, test_signed_degenerate_root_is_one_state);
     suite_add_tcase(suite, degenerate);
     TCase *planted = tcase_create("planted");
     tcase_set_timeout(planted, 120);

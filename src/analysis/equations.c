@@ -139,12 +139,13 @@ static void start_sizes(equations *eq)
     }
 }
 
-/* Terms that cancel inside one rate law show in its derivatives. */
-static void add_reaches(equations *eq)
+/* Terms that cancel inside one rate law show in its derivatives.  is_own: in the state
+ * as it is; else a signed unknown is taken to reach its unit at least. */
+static void add_reaches(equations *eq, bool is_own)
 {
     for (int j = 0; j < eq->count; j++) {
         int state = eq->state[j];
-        double reach = eq->is_signed[j] ? fmax(eq->unit[j], fabs(eq->x[state])) : eq->x[state];
+        double reach = fmax(eq->is_signed[j] && !is_own ? eq->unit[j] : 0, fabs(eq->x[state]));
         for (int p = eq->system->column_start[state]; p < eq->system->column_start[state + 1]; p++)
             if (eq->unknown[eq->system->row[p]] >= 0)
                 eq->size[eq->unknown[eq->system->row[p]]] += fabs(eq->jacobian[p]) * reach;
@@ -182,7 +183,7 @@ bool equations_matrix(equations *eq, const double *u, double *F, double *A)
     start_sizes(eq);
     if (eq->is_general || eq->is_plain) {
         lb_jacobian_sparse(eq->evaluator, eq->x, eq->jacobian);
-        add_reaches(eq);
+        add_reaches(eq, false);
         plain_rows(eq, A);
     }
     for (int i = 0; i < eq->balances; i++)
@@ -214,18 +215,52 @@ double equations_residual(const equations *eq, const double *F)
     return residual;
 }
 
-double equations_balance_error(equations *eq, const double *u)
+/* Sizes of the balances in the state in hand. */
+static void measure(equations *eq, bool is_own)
 {
-    double error = 0, gain, loss;
-    equations_place(eq, u);
     evaluator_step_rates(eq->evaluator, eq->x, eq->rate);
     lb_jacobian_sparse(eq->evaluator, eq->x, eq->jacobian);
     start_sizes(eq);
-    add_reaches(eq);
+    add_reaches(eq, is_own);
+}
+
+static double largest_error(const equations *eq)
+{
+    double error = 0, gain, loss;
     for (int i = 0; i < eq->count; i++) {
         gain_and_loss(eq, i, &gain, &loss);
         if (eq->size[i] > 0)
             error = fmax(error, fabs(gain - loss) / eq->size[i]);
     }
     return error;
+}
+
+double equations_balance_error(equations *eq, const double *u)
+{
+    equations_place(eq, u);
+    measure(eq, false);
+    return largest_error(eq);
+}
+
+/* Is nothing left of some balance, even with the signed unknowns near zero moved away? */
+static bool has_lost_balance(equations *eq, const double *u)
+{
+    equations_place(eq, u);
+    for (int i = 0; i < eq->count; i++)
+        if (eq->is_signed[i] && fabs(u[i]) < 1e-3)
+            eq->x[eq->state[i]] = eq->unit[i];
+    measure(eq, true);
+    for (int i = 0; i < eq->count; i++)
+        if (eq->start[i] < eq->start[i + 1] && eq->size[i] == 0)
+            return true;
+    return false;
+}
+
+double equations_own_error(equations *eq, const double *u)
+{
+    if (has_lost_balance(eq, u))
+        return 1;
+    equations_place(eq, u);
+    measure(eq, true);
+    return largest_error(eq);
 }

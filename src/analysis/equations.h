@@ -107,4 +107,9 @@ double equations_residual(const equations *eq, const double *F);
 /* max_i |f_i| / size_i at u, with the sizes of all balances in the plain form. */
 double equations_balance_error(equations *eq, const double *u);
 
+/* The same against the terms that each balance has in this very state: signed species
+ * near zero add none, a balance of one term is off by all of itself, and so is one
+ * whose terms and derivatives have all underflowed. */
+double equations_own_error(equations *eq, const double *u);
+
 #endif

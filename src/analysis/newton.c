@@ -12,9 +12,15 @@
  * S. W. Funke, SIAM J. Sci. Comput. 37 (2015) A2026; the scalar form follows
  * from Sherman and Morrison's formula).  Pseudo-transient continuation, its time step
  * grown as long as the unknowns move little: C. T. Kelley and D. E. Keyes, SIAM J.
- * Numer. Anal. 35 (1998) 508. */
+ * Numer. Anal. 35 (1998) 508.
+ *
+ * Where the derivatives are singular to rounding, small scaled residuals are no
+ * proof of a root: on the way to infinity a balance can be small against terms that
+ * it does not have there.  Such a point is a root when each balance is small against
+ * its own terms, or when the step without any cut-off of the rank is small too. */
 #include "analysis/newton.h"
 
+#include <float.h>
 #include <math.h>
 #include <string.h>
 
@@ -28,6 +34,7 @@ static const double STEP_LIMIT = 5;             /* e^5: two decades */
 static const double RESIDUAL_TOLERANCE = 1e-11; /* a root, before polishing */
 static const double STEP_TOLERANCE = 1e-3;      /* and well placed: not on its way to zero or infinity */
 static const double RANK_TOLERANCE = 1e-13;     /* fast steps may hide slow ones 13 decades below */
+static const double OWN_TOLERANCE = 1e-9;       /* of a balance against its own terms, at a singular root */
 static const double FAR = 100;                  /* e^-100 = 4e-44: on the way to zero or infinity */
 
 /* ---- Workspace -------------------------------------------------------------------- */
@@ -111,20 +118,27 @@ void newton_clear(newton *w)
 
 /* ---- One step ----------------------------------------------------------------------- */
 
-static double largest(int count, const double *a)
-{
-    double value = 0;
-    for (int i = 0; i < count; i++)
-        value = fmax(value, fabs(a[i]));
-    return value;
-}
-
 static double norm2(int count, const double *a)
 {
     double sum = 0;
     for (int i = 0; i < count; i++)
         sum += a[i] * a[i];
     return sqrt(sum);
+}
+
+/* How large a change of an unknown is of the order of the unknown itself. */
+static double scale_of(const equations *eq, const double *u, int i)
+{
+    return eq->is_signed[i] ? 1 + fabs(u[i]) : 1;
+}
+
+/* The largest of the last step against the unknowns. */
+static double relative_step(const newton *w, const double *u)
+{
+    double value = 0;
+    for (int i = 0; i < w->eq->count; i++)
+        value = fmax(value, fabs(w->step[i]) / scale_of(w->eq, u, i));
+    return value;
 }
 
 /* Solve with the rows of a square form; false when they are near singular. */
@@ -143,33 +157,36 @@ static bool solve_square(newton *w, const int *row)
     return isfinite(norm2(count, w->step));
 }
 
-/* step = least-norm solution of A step = -F over all rows.  A row and a column of
- * their own with a one in them make the rank absolute: the rows are sums of terms
- * of size one, and what is left of them below rcond is rounding. */
-static lb_status solve_all(newton *w, double rcond, int *rank, lb_error *err)
+/* step = least-norm solution of A step = -F over all rows, in unknowns scaled to
+ * themselves at u.  A row and a column of their own with a one in them make the rank
+ * absolute: the rows are sums of terms of size one, and what is left of them below
+ * rcond is rounding. */
+static lb_status solve_all(newton *w, const double *u, double rcond, int *rank, lb_error *err)
 {
     int count = w->eq->count, rows = w->eq->rows;
     memset(w->work, 0, (size_t)(rows + 1) * (size_t)(count + 1) * sizeof *w->work);
     for (int j = 0; j < count; j++)
-        memcpy(w->work + (size_t)j * (size_t)(rows + 1), w->A + (size_t)j * (size_t)rows,
-               (size_t)rows * sizeof *w->work);
+        for (int i = 0; i < rows; i++)
+            w->work[i + (size_t)j * (size_t)(rows + 1)] =
+                w->A[i + (size_t)j * (size_t)rows] * scale_of(w->eq, u, j);
     w->work[rows + (size_t)count * (size_t)(rows + 1)] = 1;
     for (int i = 0; i < rows; i++)
         w->right[i] = -w->F[i];
     w->right[rows] = 0;
     lb_status status = linalg_least_squares(rows + 1, count + 1, w->work, w->right, rcond, rank, err);
-    memcpy(w->step, w->right, (size_t)count * sizeof *w->step);
+    for (int j = 0; j < count; j++)
+        w->step[j] = w->right[j] * scale_of(w->eq, u, j);
     *rank -= 1;
     return status;
 }
 
 /* row NULL: by least squares over all rows. */
-static lb_status solve(newton *w, const int *row, lb_error *err)
+static lb_status solve(newton *w, const double *u, const int *row, lb_error *err)
 {
     int rank;
     if (row && solve_square(w, row))
         return LB_OK;
-    return solve_all(w, 1e-12, &rank, err);
+    return solve_all(w, u, 1e-12, &rank, err);
 }
 
 /* Norm of the residuals that the step reduces. */
@@ -271,10 +288,10 @@ static lb_status polish(newton *w, double *u, newton_report *report, lb_error *e
         if (!equations_matrix(w->eq, u, w->F, w->A))
             break;
         int rank;
-        lb_status status = solve_all(w, RANK_TOLERANCE, &rank, err);
+        lb_status status = solve_all(w, u, RANK_TOLERANCE, &rank, err);
         if (status != LB_OK)
             return status == LB_E_NUMERIC ? LB_OK : status;
-        double step = largest(count, w->step);
+        double step = relative_step(w, u);
         if (!(step < 0.9 * report->step))
             break;
         report->step = step;
@@ -288,6 +305,33 @@ static lb_status polish(newton *w, double *u, newton_report *report, lb_error *e
     return LB_OK;
 }
 
+/* Is the singular point u, where polishing ended, a root?  Signed unknowns that are
+ * zero to rounding of their unit count as zero. */
+static lb_status confirm(newton *w, const double *u, bool *is_root, lb_error *err)
+{
+    int rank;
+    equations *eq = w->eq;
+    for (int i = 0; i < eq->count; i++)
+        w->trial[i] = eq->is_signed[i] && fabs(u[i]) < 1e-14 ? 0 : u[i];
+    *is_root = equations_own_error(eq, w->trial) <= OWN_TOLERANCE;
+    if (*is_root || !equations_matrix(eq, u, w->F, w->A))
+        return LB_OK;
+    lb_status status = solve_all(w, u, DBL_MIN, &rank, err);
+    if (status != LB_OK)
+        return status == LB_E_NUMERIC ? LB_OK : status;
+    *is_root = rank == eq->count && relative_step(w, u) <= STEP_TOLERANCE;
+    return LB_OK;
+}
+
+static lb_status finish(newton *w, double *u, newton_report *report, lb_error *err)
+{
+    lb_status status = polish(w, u, report, err);
+    report->converged = status == LB_OK && report->step <= 10 * STEP_TOLERANCE;
+    if (report->converged && report->rank < w->eq->count)
+        status = confirm(w, u, &report->converged, err);
+    return status;
+}
+
 lb_status newton_solve(newton *w, double *u, double *const *known, int known_count, newton_report *report,
                        lb_error *err)
 {
@@ -297,15 +341,13 @@ lb_status newton_solve(newton *w, double *u, double *const *known, int known_cou
         report->iterations = i + 1;
         if (!equations_matrix(eq, u, w->F, w->A))
             return LB_OK;
-        lb_status status = solve(w, w->is_square ? w->row : NULL, err);
+        lb_status status = solve(w, u, w->is_square ? w->row : NULL, err);
         if (status != LB_OK)
             return status == LB_E_NUMERIC ? LB_OK : status;
         report->residual = equations_residual(eq, w->F);
-        report->step = largest(eq->count, w->step);
-        if (report->residual <= RESIDUAL_TOLERANCE && report->step <= STEP_TOLERANCE) {
-            report->converged = true;
-            return polish(w, u, report, err);
-        }
+        report->step = relative_step(w, u);
+        if (report->residual <= RESIDUAL_TOLERANCE && report->step <= STEP_TOLERANCE)
+            return finish(w, u, report, err);
         double factor = deflated_factor(w, u, known, known_count);
         for (int j = 0; j < eq->count; j++)
             w->step[j] *= factor;
@@ -333,7 +375,7 @@ static double farthest_move(const newton *w, const double *u)
 {
     double moved = 0;
     for (int i = 0; i < w->eq->count; i++)
-        moved = fmax(moved, fabs(w->step[i]) / (w->eq->is_signed[i] ? 1 + fabs(u[i]) : 1));
+        moved = fmax(moved, fabs(w->step[i]) / scale_of(w->eq, u, i));
     return moved;
 }
 
@@ -352,7 +394,7 @@ static lb_status relax(newton *w, double *u, int steps, lb_error *err)
         if (equations_residual(w->eq, w->F) < 1e-6 || !(inertia > 0))
             return LB_OK;
         equations_add_inertia(w->eq, inertia, w->F, w->A);
-        lb_status status = solve(w, row, err);
+        lb_status status = solve(w, u, row, err);
         if (status != LB_OK)
             return status == LB_E_NUMERIC ? LB_OK : status;
         double moved = farthest_move(w, u);
@@ -387,7 +429,7 @@ lb_status newton_null_direction(newton *w, const double *u, double *direction, l
         for (int j = 0; j < count; j++)
             w->F[i] -= w->A[i + (size_t)j * (size_t)rows] * direction[j];
     }
-    lb_status status = solve_all(w, RANK_TOLERANCE, &rank, err);
+    lb_status status = solve_all(w, u, RANK_TOLERANCE, &rank, err);
     if (status != LB_OK)
         return status;
     for (int j = 0; j < count; j++)

@@ -24,7 +24,7 @@ typedef struct newton_report {
     bool converged;
     int iterations;
     double residual;        /* equations_residual at the end */
-    double step;            /* max-norm of the last full Newton step: the error of u, for a regular root */
+    double step;            /* the last full Newton step against u (signed: against 1 + |u|): the error of a regular root */
     int rank;               /* numerical rank of the derivatives at a root */
 } newton_report;
 

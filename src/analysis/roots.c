@@ -22,6 +22,7 @@ enum { MOST_ROUNDS = 60 };
 
 static const double CONTINUUM_STEP = 0.2;
 static const double VANISHING = 10;         /* decades below the natural range */
+static const double UNBOUNDED = 8;          /* decades above it */
 
 struct search {
     equations *eq;
@@ -98,13 +99,17 @@ static lb_status test_continuum(struct search *s, const double *u, bool *is_cont
 }
 
 /* Close to zero any power of a species is zero to rounding, and its balance with
- * it.  Where the derivatives are singular there too, that is no state but the way
- * to a face, which has its own turn. */
-static bool is_vanishing(const struct search *s, const double *u)
+ * it; far up a rate that saturates has lost what it still lacks.  Where the
+ * derivatives are singular there too, that is no state but the way to a face, which
+ * has its own turn, or to infinity. */
+static bool is_out_of_range(const struct search *s, const double *u)
 {
-    for (int i = 0; i < s->eq->count; i++)
-        if (!s->eq->is_signed[i] && u[i] < (s->starts.high[i] - VANISHING) * log(10))
+    for (int i = 0; i < s->eq->count; i++) {
+        double decade = s->eq->is_signed[i] ? log10(fabs(u[i]) * s->eq->unit[i]) : u[i] / log(10);
+        if (decade > s->starts.high[i] + UNBOUNDED ||
+            (!s->eq->is_signed[i] && decade < s->starts.high[i] - VANISHING))
             return true;
+    }
     return false;
 }
 
@@ -112,7 +117,7 @@ static lb_status take_root(struct search *s, const double *u, const newton_repor
 {
     bool is_singular = report->rank < s->eq->count, is_continuum = false;
     double tolerance = is_singular ? 1e-3 : fmax(1e-6, 100 * report->step);
-    if (is_singular && is_vanishing(s, u))
+    if (is_singular && is_out_of_range(s, u))
         return LB_OK;
     s->out->converged++;
     if (is_known(s, u, tolerance) || (is_singular && s->out->continuum > 0))

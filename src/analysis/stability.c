@@ -21,7 +21,7 @@
 #include "base/memory.h"
 #include "base/status.h"
 
-enum { ROUTH_LIMIT = 8, MOVES = 4 };
+enum { ROUTH_LIMIT = 8, MOVES = 4, WIDEST_SCALE = 200 };
 
 struct workspace {
     int n, rank;
@@ -110,7 +110,7 @@ static void find_balance(struct workspace *w)
             if (!(row > 0 && column > 0 && isfinite(row) && isfinite(column)))
                 continue;
             double factor = exp2(round(log2(row / column) / 2));
-            if (factor != 1) {
+            if (factor != 1 && fabs(log2(w->scale[i] * factor)) <= WIDEST_SCALE) {
                 w->scale[i] *= factor;
                 changed = true;
             }

@@ -84,6 +84,10 @@ static lb_status add_state(struct search *s, equations *eq, const double *u)
     if (!is_in_class(s, state.x))
         goto done;
     status = stability_classify(s->evaluator, &state, s->err);
+    if (status == LB_E_FINITE) {
+        status = LB_OK;     /* out there where derivatives overflow nothing is a state */
+        goto done;
+    }
     if (status == LB_OK && memory_grow(&out->state, &s->capacity, out->count, sizeof *out->state) != 0)
         status = status_no_memory(s->err);
     if (status == LB_OK) {
