@@ -51,6 +51,7 @@ const char *lower_near(lower *l, const names *table, const char *word, const cha
 static bool start(lower *l)
 {
     l->residence = l->temperature = -1;
+    l->none = form_none();
     l->net = network_new();
     l->memory = arena_new();
     return l->net && l->memory && infer_init(&l->inf) == 0;
@@ -94,6 +95,8 @@ static lb_status read_all(lower *l, lb_error *err)
     for (size_t i = 0; i < sizeof before / sizeof *before && l->status == LB_OK; i++)
         before[i](l);
     lb_status status = l->status == LB_OK ? lower_settings(l, err) : LB_OK;
+    names_clear(&l->label_names);   /* large, and not asked again */
+    names_clear(&l->plain_names);
     if (lb_diagnostics_faults(l->list) > 0)
         status =
             LB_OK; /* the file's faults come first; what a setting did to a value comes before those it caused */

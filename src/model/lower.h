@@ -39,7 +39,7 @@ typedef struct lower_plain {
     span where;
     network_constant_kind kind;
     double written, stored;         /* in stored units: the file's, and a setting's when there is one */
-    form dim;
+    const form *dim;                /* shared by plain numbers of one known dimension */
     int unknown;                    /* of a bare number; -1: its dimension is known */
     int constant;                   /* in the network, -1 for initials */
     const char *sign_why;           /* "rate constant", "concentration", ... */
@@ -121,6 +121,7 @@ typedef struct lower {
     lb_network *net;
     arena *memory;                  /* names made here; lives until the network is done */
     inference inf;
+    form none;                      /* the dimension of a pure number */
     lb_status status;               /* LB_OK, LB_E_NOMEM */
     bool dimensions_given_up;
     size_t searches;                /* for near names so far */
@@ -180,6 +181,7 @@ void lower_plains(lower *l);
 /* Is the expression a plain number? */
 bool lower_read_plain(const lower *l, const syntax_expression *node, double *number, unit *measure,
                       bool *has_unit);
+const form *lower_known_form(lower *l, const dimension *d);  /* in the arena */
 int  lower_add_plain(lower *l, const char *name, network_constant_kind kind, span where);
 int  lower_find_inline(const lower *l, const syntax_expression *node);  /* plain, or -1 */
 void lower_add_constants(lower *l);                  /* to the network, file order */

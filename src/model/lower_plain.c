@@ -133,8 +133,18 @@ int lower_add_plain(lower *l, const char *name, network_constant_kind kind, span
         return -1;
     }
     l->plains[l->plain_count] = (lower_plain){.name = name, .kind = kind, .where = where,
-                                              .dim = form_none(), .unknown = -1, .constant = -1};
+                                              .dim = &l->none, .unknown = -1, .constant = -1};
     return (int)l->plain_count++;
+}
+
+const form *lower_known_form(lower *l, const dimension *d)
+{
+    form *known = arena_alloc(l->memory, sizeof *known);
+    if (known)
+        *known = form_known(d);
+    else
+        lower_no_memory(l);
+    return known ? known : &l->none;
 }
 
 static void set_dimension(lower *l, lower_plain *p, const unit *measure)
@@ -142,12 +152,17 @@ static void set_dimension(lower *l, lower_plain *p, const unit *measure)
     if (l->net->units.none)
         return;
     if (p->has_unit) {
-        p->dim = form_known(&measure->dim);
-    } else {
-        p->unknown = infer_new(&l->inf);
-        if (p->unknown < 0 || !form_unknown(&l->inf, p->unknown, &p->dim))
-            lower_no_memory(l);
+        const lower_plain *before = p > l->plains ? p - 1 : NULL;
+        bool is_same = before && before->has_unit && dimension_equal(&before->dim->known, &measure->dim);
+        p->dim = is_same ? before->dim : lower_known_form(l, &measure->dim);
+        return;
     }
+    form *unknown = arena_alloc(l->memory, sizeof *unknown);
+    p->unknown = infer_new(&l->inf);
+    if (p->unknown < 0 || !unknown || !form_unknown(&l->inf, p->unknown, unknown))
+        lower_no_memory(l);
+    else
+        p->dim = unknown;
 }
 
 static const unit *keep_unit(lower *l, const unit *measure)
@@ -332,7 +347,7 @@ void lower_finish_plains(lower *l)
     for (size_t i = 0; i < l->plain_count && l->status == LB_OK; i++) {
         lower_plain *p = &l->plains[i];
         dimension d;
-        if (infer_resolve(&l->inf, &p->dim, &d))
+        if (infer_resolve(&l->inf, p->dim, &d))
             check_bare(l, p, &d);
         else
             d = dimension_none();

@@ -26,7 +26,7 @@ static bool store_end(lower *l, const lower_plain *p, const syntax_expression *n
     const unit *measure = own->has_unit ? &own->measure : other->has_unit ? &other->measure : p->measure;
     const char *value_text, *end_text;
     form dim = form_known(&measure->dim);
-    if (own->has_unit && !lower_agree(l, &p->dim, &dim, node->where.line, &value_text, &end_text)) {
+    if (own->has_unit && !lower_agree(l, p->dim, &dim, node->where.line, &value_text, &end_text)) {
         diagnostics_fault(l->list, node->where, NULL, "this end is in %s and the value in %s", end_text,
                           value_text);
         return false;

@@ -189,7 +189,7 @@ static lb_status add_concentration(lower *l, const char *name, int species, lowe
     l->plains[*plain].is_initial = kind == DEFINE_INITIAL;
     if (!l->net->units.none) {
         dimension d = lower_dimension(1, 1, 0, 0, 0, 0);
-        l->plains[*plain].dim = form_known(&d);
+        l->plains[*plain].dim = lower_known_form(l, &d);
     }
     if (kind == DEFINE_FEED)
         l->species[species].feed = definition;
@@ -245,7 +245,7 @@ static lb_status check_dimension(lower *l, const lower_plain *p, const lb_settin
 {
     dimension d, kelvin = lower_dimension(0, 1, 0, 0, 0, 1);
     int num, den;
-    if (l->net->units.none || !infer_resolve(&l->inf, &p->dim, &d))
+    if (l->net->units.none || !infer_resolve(&l->inf, p->dim, &d))
         return LB_OK;
     const char *own = lower_dimension_text(l, &d);
     if (p->set->has_unit && !dimension_equal(&d, &p->set->unit))

@@ -121,7 +121,7 @@ lower_value value_of_plain(lower *l, int plain, span where)
     v.number = p->stored;
     v.e = p->constant >= 0 ? expression_constant(&l->net->graph, p->constant)
                            : expression_number(&l->net->graph, p->stored);
-    if (!form_copy(&l->inf, &p->dim, &v.dim) || v.e == EXPRESSION_NONE)
+    if (!form_copy(&l->inf, p->dim, &v.dim) || v.e == EXPRESSION_NONE)
         lower_no_memory(l);
     return v;
 }

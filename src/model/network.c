@@ -25,7 +25,8 @@ lb_network *network_new(void)
     expression_graph_init(&net->graph);
     net->file = memory_text("");
     net->title = memory_text("");
-    if (!net->file || !net->title) {
+    net->texts = arena_new();
+    if (!net->file || !net->title || !net->texts) {
         lb_network_free(net);
         return NULL;
     }
@@ -41,7 +42,6 @@ static void free_species(network_species *species)
 
 static void free_reaction(network_reaction *reaction)
 {
-    memory_free(reaction->label);
     memory_free(reaction->reactants);
     memory_free(reaction->products);
     memory_free(reaction->equation);
@@ -91,10 +91,8 @@ void lb_network_free(lb_network *net)
         return;
     for (int i = 0; i < net->species_count; i++)
         free_species(&net->species[i]);
-    for (int i = 0; i < net->constant_count; i++) {
-        memory_free(net->constants[i].name);
+    for (int i = 0; i < net->constant_count; i++)
         free_unit(net->constants[i].unit);
-    }
     for (int i = 0; i < net->step_count; i++)
         free_step(net, &net->steps[i]);
     for (int i = 0; i < net->reaction_count; i++)
@@ -111,6 +109,7 @@ void lb_network_free(lb_network *net)
     memory_free(net->title);
     memory_free(net->file);
     expression_graph_clear(&net->graph);
+    arena_free(net->texts);
     memory_free(net);
 }
 
@@ -181,7 +180,7 @@ int network_add_constant(lb_network *net, const char *name, network_constant_kin
     net->constants = grown;
     int index = net->constant_count++;
     grown[index] = (network_constant){.kind = kind, .value = value, .low = value, .high = value};
-    grown[index].name = memory_text(name);
+    grown[index].name = arena_text_n(net->texts, name, strlen(name));
     grown[index].unit = no_unit;
     return grown[index].name ? index : -1;
 }
@@ -213,7 +212,7 @@ int network_add_reaction(lb_network *net, const char *label, bool is_reversible)
     net->reactions = grown;
     int index = net->reaction_count++;
     grown[index] = (network_reaction){.is_reversible = is_reversible, .first_step = net->step_count};
-    grown[index].label = memory_text(label);
+    grown[index].label = arena_text_n(net->texts, label, strlen(label));
     return grown[index].label ? index : -1;
 }
 

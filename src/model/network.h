@@ -115,6 +115,7 @@ typedef struct network_reaction {
 
 struct lb_network {
     char *file, *title;
+    struct arena *texts;            /* labels of reactions, names of constants */
     unit_system units;
     expression_graph graph;
     network_species *species;       int species_count;

@@ -33,30 +33,32 @@ void grid_init(grid *g, const char *align, bool has_header)
 
 static void grid_clear(grid *g)
 {
-    for (size_t i = 0; i < g->count; i++)
-        memory_free(g->cell[i]);
+    buffer_clear(&g->text);
     memory_free(g->cell);
     g->cell = NULL;
     g->count = g->capacity = 0;
+}
+
+static const char *cell_text(const grid *g, size_t i)
+{
+    return g->text.data + g->cell[i];
 }
 
 void grid_cell(grid *g, const char *format, ...)
 {
     if (g->status != LB_OK)
         return;
-    buffer text;
-    buffer_init(&text);
+    size_t start = g->text.length;
     va_list list;
     va_start(list, format);
-    buffer_vprintf(&text, format, list);
+    buffer_vprintf(&g->text, format, list);
     va_end(list);
-    char *cell = buffer_take(&text);
-    if (!cell || memory_grow(&g->cell, &g->capacity, g->count, sizeof *g->cell)) {
-        memory_free(cell);
+    buffer_append_n(&g->text, "", 1);   /* the end of the cell */
+    g->status = buffer_status(&g->text);
+    if (g->status == LB_OK && memory_grow(&g->cell, &g->capacity, g->count, sizeof *g->cell))
         g->status = LB_E_NOMEM;
-        return;
-    }
-    g->cell[g->count++] = cell;
+    if (g->status == LB_OK)
+        g->cell[g->count++] = start;
 }
 
 void grid_end(grid *g, buffer *text)
@@ -90,7 +92,7 @@ static int columns_before(const char *cell)
 static bool is_aligned(const grid *g, size_t i)
 {
     bool is_heading = g->has_header && i < (size_t)g->columns;
-    return g->align[i % (size_t)g->columns] == GRID_NUMBER && !is_heading && is_number(g->cell[i]);
+    return g->align[i % (size_t)g->columns] == GRID_NUMBER && !is_heading && is_number(cell_text(g, i));
 }
 
 static void measure_columns(const grid *g, measure *m)
@@ -99,12 +101,12 @@ static void measure_columns(const grid *g, measure *m)
     m->last = -1;
     for (size_t i = 0; i < g->count; i++) {
         int c = (int)(i % (size_t)g->columns);
-        int whole = layout_columns(g->cell[i]);
+        int whole = layout_columns(cell_text(g, i));
         bool is_heading = g->has_header && i < (size_t)g->columns;
         if (whole > 0 && !is_heading && c > m->last)
             m->last = c;
         if (is_aligned(g, i)) {
-            int before = columns_before(g->cell[i]);
+            int before = columns_before(cell_text(g, i));
             m->before[c] = before > m->before[c] ? before : m->before[c];
             m->after[c] = whole - before > m->after[c] ? whole - before : m->after[c];
         } else {
@@ -121,7 +123,7 @@ static bool is_empty_column(const grid *g, int column)
 {
     size_t first = g->has_header ? (size_t)g->columns : 0;
     for (size_t i = first + (size_t)column; i < g->count; i += (size_t)g->columns)
-        if (*g->cell[i])
+        if (*cell_text(g, i))
             return false;
     return true;
 }
@@ -130,10 +132,10 @@ static bool is_empty_column(const grid *g, int column)
 static void write_cell(const grid *g, const measure *m, size_t i, bool is_last, buffer *line)
 {
     int c = (int)(i % (size_t)g->columns);
-    int whole = layout_columns(g->cell[i]);
-    int left = is_aligned(g, i) ? m->before[c] - columns_before(g->cell[i]) : 0;
+    int whole = layout_columns(cell_text(g, i));
+    int left = is_aligned(g, i) ? m->before[c] - columns_before(cell_text(g, i)) : 0;
     buffer_repeat(line, ' ', left);
-    buffer_append(line, g->cell[i]);
+    buffer_append(line, cell_text(g, i));
     if (!is_last)
         buffer_repeat(line, ' ', m->width[c] - left - whole + GAP);
 }
@@ -187,9 +189,9 @@ static void write_row(const grid *g, const measure *m, const bool *is_empty, siz
             continue;
         size_t i = row * (size_t)g->columns + (size_t)c;
         bool is_last = c == m->last;
-        bool fits = start + layout_columns(g->cell[i]) <= layout_width(layout);
+        bool fits = start + layout_columns(cell_text(g, i)) <= layout_width(layout);
         if (is_last && g->align[c] == GRID_LEFT && !fits)
-            write_wrapped(layout, start, indent, g->cell[i], &line);
+            write_wrapped(layout, start, indent, cell_text(g, i), &line);
         else
             write_cell(g, m, i, is_last, &line);
         start += m->width[c] + GAP;

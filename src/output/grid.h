@@ -17,7 +17,8 @@ enum { GRID_COLUMNS = 24 };
 typedef struct grid {
     int columns;
     grid_align align[GRID_COLUMNS];
-    char **cell;            /* [count], row after row; owned */
+    buffer text;            /* of all cells, each terminated */
+    size_t *cell;           /* [count] where each begins in it, row after row */
     size_t count, capacity;
     bool has_header;        /* the first row holds the headings of the columns */
     lb_status status;       /* sticks, and is passed on by grid_write */
