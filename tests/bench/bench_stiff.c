@@ -164,6 +164,8 @@ static bool solve_cvode(problem *p, bool sparse, double tolerance, double below_
     SUNMatrix J = sparse ? SUNSparseMatrix(p->n, p->n, lb_system_nonzeros(p->system), CSC_MAT, context)
                          : SUNDenseMatrix(p->n, p->n, context);
     SUNLinearSolver linear = sparse ? SUNLinSol_KLU(x, J, context) : SUNLinSol_Dense(x, J, context);
+    if (sparse)
+        SUNLinSol_KLUSetOrdering(linear, 0);    /* AMD, as limbeck: less fill here than its default */
     void *cvode = CVodeCreate(CV_BDF, context);
     realtype t = 0;
     memcpy(p->end, p->start, (size_t)p->n * sizeof *p->end);
@@ -354,8 +356,9 @@ static void bench_random(const char *name, int species, int reach, double target
     char *text = exchange_text(species, reach);
     problem p = problem_new(name, text, 10);
     find_reference(&p, species > 500 && reach == 0 ? 1e-8 : 1e-10);
-    solve_cvode_klu(&p, 1e-9, 1e-6);
-    printf("    %s: CVODE at 1e-9 is %.1e from the reference\n", name, error_of(&p));
+    double check = species > 500 ? 1e-7 : 1e-9;
+    solve_cvode_klu(&p, check, 1e-6);
+    printf("    %s: CVODE at %.0e is %.1e from the reference\n", name, check, error_of(&p));
     entry entries[] = {{.name = "limbeck", .solve = solve_limbeck}, {.name = "cvode klu", .solve = solve_cvode_klu},
                        {.name = "cvode", .solve = solve_cvode_dense}, {.name = "msbdf", .solve = solve_msbdf}};
     compare(&p, entries, species <= 100 ? 4 : 2, target, repeats);
