@@ -1,7 +1,7 @@
 /* Steady-state equations in logarithms.
  *
- * The balance of a species that only power laws change is written as
- * ln(gain/loss) = 0: in log concentrations that is linear as soon as one term
+ * The balance of a species whose gains and losses are all positive is written as
+ * ln(gain/loss) = 0: in log concentrations that is linear as soon as one power law
  * dominates on each side, so Newton's method reaches the root from decades
  * away.  Any other balance is f scaled by its size, the sum of its terms'
  * magnitudes and of |df/dx| x, which also sees terms that cancel inside one
@@ -102,16 +102,25 @@ static double slope_of(const equations *eq, int i)
     return eq->is_signed[i] ? eq->unit[i] : eq->x[eq->state[i]];
 }
 
-/* Power laws know their own logarithmic derivatives. */
+/* A row of ln(gain/loss).  Power laws know their own logarithmic derivatives.  Where one
+ * side has other laws too, A holds df/du when it comes in, and they are what that has
+ * beyond the power laws; they count as constant where their side is so small that it
+ * drowns in the rounding of the other. */
 static void ratio_row(const equations *eq, int i, double *A)
 {
-    double gain, loss;
+    double gain, loss, weight = 0;
     gain_and_loss(eq, i, &gain, &loss);
+    if (i < eq->count && eq->is_general_gain[i] && loss < 1e8 * gain)
+        weight = 1 / gain;
+    if (i < eq->count && eq->is_general_loss[i] && gain < 1e8 * loss)
+        weight = 1 / loss;
+    for (int j = 0; j < eq->count; j++)
+        A[i + (size_t)j * (size_t)eq->rows] *= weight;
     for (int t = eq->start[i]; t < eq->start[i + 1]; t++) {
         const network_step *s = &eq->system->network->steps[eq->term[t].step];
         double term = eq->term[t].coefficient * eq->rate[eq->term[t].step];
-        double share = term > 0 ? term / gain : term / loss;
-        for (int o = 0; o < s->order_count; o++) {
+        double share = term * (1 / (term > 0 ? gain : loss) - weight);
+        for (int o = 0; s->is_power_law && o < s->order_count; o++) {
             int j = eq->unknown[s->orders[o].state];
             if (j >= 0)
                 A[i + (size_t)j * (size_t)eq->rows] += share * s->orders[o].order;
@@ -119,13 +128,19 @@ static void ratio_row(const equations *eq, int i, double *A)
     }
 }
 
-/* Plain balances: unscaled rows of the Jacobian in u. */
-static void plain_rows(const equations *eq, double *A)
+/* Is the row of a balance made from the Jacobian? */
+static bool needs_jacobian(const equations *eq, int i)
+{
+    return !is_ratio(eq, i) || eq->is_general_gain[i] || eq->is_general_loss[i];
+}
+
+/* Unscaled rows of the Jacobian in u. */
+static void jacobian_rows(const equations *eq, double *A)
 {
     for (int j = 0; j < eq->count; j++)
         for (int p = eq->system->column_start[eq->state[j]]; p < eq->system->column_start[eq->state[j] + 1]; p++) {
             int i = eq->unknown[eq->system->row[p]];
-            if (i >= 0 && !is_ratio(eq, i))
+            if (i >= 0 && needs_jacobian(eq, i))
                 A[i + (size_t)j * (size_t)eq->rows] = eq->jacobian[p] * slope_of(eq, j);
         }
 }
@@ -184,7 +199,7 @@ bool equations_matrix(equations *eq, const double *u, double *F, double *A)
     if (eq->is_general || eq->is_plain) {
         lb_jacobian_sparse(eq->evaluator, eq->x, eq->jacobian);
         add_reaches(eq, false);
-        plain_rows(eq, A);
+        jacobian_rows(eq, A);
     }
     for (int i = 0; i < eq->balances; i++)
         if (is_ratio(eq, i))

@@ -51,13 +51,14 @@ typedef struct equations {
     int balances;                   /* count + pool_count */
     int rows;                       /* balances + law_count */
     bool *is_alive;                 /* [steps] takes part, and its rate does not vanish on the face */
-    bool *is_positive;              /* [steps] power law of positive rate, unsigned species alone in it */
+    bool *is_positive;              /* [steps] of positive rate wherever the unsigned unknowns are positive */
     int *start;                     /* [balances+1] terms of each balance */
     equations_term *term;
     size_t term_capacity;
-    bool *is_ratio;                 /* [balances] balance of power laws: ln(gain/loss), else (gain - loss)/size */
+    bool *is_ratio;                 /* [balances] positive gains and losses: ln(gain/loss), else (gain - loss)/size */
+    bool *is_general_gain, *is_general_loss; /* [count] some gain, some loss is no power law; not both in a ratio */
     bool is_plain;                  /* set by who asks: no ratios but in the balances of pools */
-    bool is_general;                /* some balance is not of that form: the Jacobian is needed */
+    bool is_general;                /* some balance needs the Jacobian */
     bool is_inconsistent;           /* a total cannot be met on this face */
     double *size;                   /* [count] scale of each plain balance, of the last equations_matrix */
     double *law_size;               /* [law_count] the same for laws with signs */

@@ -75,7 +75,7 @@ static lb_status add_pool(equations *eq, int pool, double *sum, lb_error *err)
             sum[eq->term[t].step] += weight[eq->system->core_index[eq->state[i]]] * eq->term[t].coefficient;
     for (int s = 0; s < eq->system->steps; s++) {
         if (fabs(sum[s]) > 1e-9 && status == LB_OK) {
-            is_positive = is_positive && eq->is_positive[s];
+            is_positive = is_positive && eq->is_positive[s] && eq->system->network->steps[s].is_power_law;
             has_gain = has_gain || sum[s] > 0;
             has_loss = has_loss || sum[s] < 0;
             if (memory_grow(&eq->term, &eq->term_capacity, end, sizeof *eq->term) != 0)
@@ -105,36 +105,129 @@ static lb_status add_pools(equations *eq, lb_error *err)
     return status;
 }
 
+/* ---- Forms ------------------------------------------------------------------------- */
+
+/* What is known of a value when the unknowns that are not signed are positive. */
+enum sign { SIGN_UNKNOWN, SIGN_ZERO, SIGN_NOT_NEGATIVE, SIGN_POSITIVE };
+
+static enum sign sign_of_number(double value)
+{
+    return value > 0 ? SIGN_POSITIVE : value == 0 ? SIGN_ZERO : SIGN_UNKNOWN;
+}
+
+static enum sign sign_of_state(const equations *eq, int state)
+{
+    if (eq->system->core_index[state] < 0 || equations_is_signed(eq->system, state))
+        return SIGN_UNKNOWN;
+    return eq->unknown[state] < 0 ? SIGN_ZERO : SIGN_POSITIVE;
+}
+
+static enum sign sign_of_power(enum sign base, enum sign exponent, double value)
+{
+    if (base == SIGN_POSITIVE)
+        return SIGN_POSITIVE;
+    if (base != SIGN_UNKNOWN)
+        return exponent == SIGN_POSITIVE ? base : SIGN_UNKNOWN;
+    return value > 0 && fmod(value, 2) == 0 ? SIGN_NOT_NEGATIVE : SIGN_UNKNOWN;
+}
+
+static enum sign sign_of_pair(expression_kind kind, enum sign a, enum sign b)
+{
+    if (kind == EXPRESSION_DIVIDE && b != SIGN_POSITIVE)
+        return SIGN_UNKNOWN;
+    if (kind == EXPRESSION_SUBTRACT)
+        return b == SIGN_ZERO ? a : SIGN_UNKNOWN;
+    if (a == SIGN_UNKNOWN || b == SIGN_UNKNOWN)
+        return SIGN_UNKNOWN;
+    if (kind == EXPRESSION_ADD)
+        return a > b ? a : b;
+    return a < b ? a : b;
+}
+
+/* Signs [nodes] of the graph's nodes, operands before users; values [nodes] those of
+ * what has no state in it. */
+static void find_signs(const equations *eq, const double *values, enum sign *sign)
+{
+    const expression_graph *g = &eq->system->network->graph;
+    for (size_t i = 0; i < g->count; i++) {
+        const expression_node *node = &g->nodes[i];
+        if (!node->has_state)
+            sign[i] = sign_of_number(values[i]);
+        else if (node->kind == EXPRESSION_STATE)
+            sign[i] = sign_of_state(eq, node->left);
+        else if (node->kind == EXPRESSION_POWER)
+            sign[i] = sign_of_power(sign[node->left], sign[node->right],
+                                    g->nodes[node->right].has_state ? 0 : values[node->right]);
+        else if (node->kind == EXPRESSION_EXP)
+            sign[i] = SIGN_POSITIVE;
+        else if (node->kind >= EXPRESSION_ADD && node->kind <= EXPRESSION_DIVIDE)
+            sign[i] = sign_of_pair(node->kind, sign[node->left], sign[node->right]);
+        else
+            sign[i] = SIGN_UNKNOWN;
+    }
+}
+
 static bool is_positive_power_law(const equations *eq, int step)
 {
     const network_step *s = &eq->system->network->steps[step];
-    if (!s->is_power_law || !(eq->rate[step] > 0))
-        return false;
     for (int o = 0; o < s->order_count; o++)
         if (equations_is_signed(eq->system, s->orders[o].state))
             return false;
-    return true;
+    return eq->rate[step] > 0;
 }
 
-/* A balance takes the ratio form when every step in it is a power law of
- * positive rate, some of them gains and some losses. */
-static void choose_forms(equations *eq)
+/* Steps whose rates are positive wherever the unknowns are: power laws, and laws whose
+ * expressions say so. */
+static lb_status find_positive(equations *eq, lb_error *err)
 {
+    const lb_network *net = eq->system->network;
+    double *values = memory_array(net->graph.count, sizeof *values);
+    enum sign *sign = memory_array(net->graph.count, sizeof *sign);
+    lb_status status = values && sign ? LB_OK : status_no_memory(err);
     equations_probe(eq->system, 0, eq->x);
     evaluator_step_rates(eq->evaluator, eq->x, eq->rate);
-    for (int s = 0; s < eq->system->steps; s++)
-        eq->is_positive[s] = eq->is_alive[s] && is_positive_power_law(eq, s);
-    for (int i = 0; i < eq->count; i++) {
-        bool is_power = true, has_gain = false, has_loss = false;
-        for (int t = eq->start[i]; t < eq->start[i + 1]; t++) {
-            is_power = is_power && eq->is_positive[eq->term[t].step];
-            has_gain = has_gain || eq->term[t].coefficient > 0;
-            has_loss = has_loss || eq->term[t].coefficient < 0;
-        }
-        eq->is_ratio[i] = is_power && has_gain && has_loss;
-        if (!eq->is_ratio[i] && eq->start[i] < eq->start[i + 1])
-            eq->is_general = true;
+    if (status == LB_OK && net->graph.count > 0) {
+        expression_evaluate(&net->graph, 0, (int)net->graph.count - 1, NULL, evaluator_constants(eq->evaluator),
+                            eq->x, values);
+        find_signs(eq, values, sign);
     }
+    for (int s = 0; status == LB_OK && s < eq->system->steps; s++) {
+        const network_step *step = &net->steps[s];
+        eq->is_positive[s] = eq->is_alive[s] && (step->is_power_law ? is_positive_power_law(eq, s)
+                                                                    : sign[step->rate] == SIGN_POSITIVE);
+    }
+    memory_free(sign);
+    memory_free(values);
+    return status;
+}
+
+/* A balance takes the ratio form when every step in it has a positive rate, some of
+ * them gains and some losses, and all gains or all losses are power laws: what the
+ * others add to the derivatives is then the difference from the Jacobian. */
+static void choose_form(equations *eq, int i)
+{
+    bool is_positive = true, has_gain = false, has_loss = false, is_power = true;
+    for (int t = eq->start[i]; t < eq->start[i + 1]; t++) {
+        bool is_gain = eq->term[t].coefficient > 0;
+        is_positive = is_positive && eq->is_positive[eq->term[t].step];
+        has_gain = has_gain || is_gain;
+        has_loss = has_loss || !is_gain;
+        if (!eq->system->network->steps[eq->term[t].step].is_power_law) {
+            is_power = false;
+            *(is_gain ? &eq->is_general_gain[i] : &eq->is_general_loss[i]) = true;
+        }
+    }
+    eq->is_ratio[i] = is_positive && has_gain && has_loss && !(eq->is_general_gain[i] && eq->is_general_loss[i]);
+    if (!(eq->is_ratio[i] && is_power) && eq->start[i] < eq->start[i + 1])
+        eq->is_general = true;
+}
+
+static lb_status choose_forms(equations *eq, lb_error *err)
+{
+    lb_status status = find_positive(eq, err);
+    for (int i = 0; status == LB_OK && i < eq->count; i++)
+        choose_form(eq, i);
+    return status;
 }
 
 static bool allocate(equations *eq)
@@ -150,13 +243,16 @@ static bool allocate(equations *eq)
     eq->pool = memory_array(pools, sizeof *eq->pool);
     eq->start = memory_zeroed(core + pools + 1, sizeof *eq->start);
     eq->is_ratio = memory_array(core + pools, sizeof *eq->is_ratio);
+    eq->is_general_gain = memory_zeroed(core, sizeof *eq->is_general_gain);
+    eq->is_general_loss = memory_zeroed(core, sizeof *eq->is_general_loss);
     eq->size = memory_array(core, sizeof *eq->size);
     eq->law_size = memory_array((size_t)eq->laws->count, sizeof *eq->law_size);
     eq->x = memory_array(n, sizeof *eq->x);
     eq->rate = memory_array((size_t)eq->system->steps, sizeof *eq->rate);
     eq->jacobian = memory_array((size_t)eq->system->nonzeros, sizeof *eq->jacobian);
     return eq->state && eq->unknown && eq->is_signed && eq->unit && eq->law && eq->is_alive &&
-           eq->is_positive && eq->pool && eq->start && eq->is_ratio && eq->size && eq->law_size && eq->x && eq->rate && eq->jacobian;
+           eq->is_positive && eq->pool && eq->start && eq->is_ratio && eq->is_general_gain &&
+           eq->is_general_loss && eq->size && eq->law_size && eq->x && eq->rate && eq->jacobian;
 }
 
 static void choose_unknowns(equations *eq, const double *x0, const bool *is_zero)
@@ -193,9 +289,10 @@ lb_status equations_new(lb_evaluator *evaluator, const equations_laws *laws, con
         status = make_terms(eq) ? LB_OK : status_no_memory(err);
     }
     if (status == LB_OK) {
-        choose_forms(eq);
-        status = add_pools(eq, err);
+        status = choose_forms(eq, err);
     }
+    if (status == LB_OK)
+        status = add_pools(eq, err);
     if (status != LB_OK) {
         equations_free(eq);
         return status;
@@ -221,6 +318,8 @@ void equations_free(equations *eq)
     memory_free(eq->start);
     memory_free(eq->term);
     memory_free(eq->is_ratio);
+    memory_free(eq->is_general_gain);
+    memory_free(eq->is_general_loss);
     memory_free(eq->size);
     memory_free(eq->law_size);
     memory_free(eq->x);

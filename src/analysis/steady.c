@@ -22,6 +22,8 @@
 #include "limbeck.h"
 #include "system/system.h"
 
+enum { FULL_FACES = 32 };
+
 struct search {
     const lb_system *system;
     const lb_steady_options *options;
@@ -114,12 +116,13 @@ static lb_status add_first_face(struct search *s)
     return status;
 }
 
-static size_t starts_for(const struct search *s, int unknowns, bool is_first)
+/* A quarter on the later ones of many faces. */
+static size_t starts_for(const struct search *s, int unknowns, int face)
 {
     size_t count = s->options->starts, n = (size_t)unknowns;
     if (count == 0)
         count = n <= 15 ? 40 + 20 * n : n <= 60 ? 5100 / n : n <= 270 ? 300000 / (n * n) : 4;
-    return is_first || count <= 6 ? count : count / 4 > 6 ? count / 4 : 6;
+    return face < FULL_FACES || count <= 6 ? count : count / 4 > 6 ? count / 4 : 6;
 }
 
 static bool is_within(int n, const bool *is_zero, const bool *outer)
@@ -186,10 +189,10 @@ static lb_status add_states(struct search *s, const bool *is_zero, equations *eq
     return status;
 }
 
-static lb_status search_roots(struct search *s, const bool *is_zero, bool is_first, equations *eq)
+static lb_status search_roots(struct search *s, const bool *is_zero, int face, equations *eq)
 {
     roots found = {0};
-    roots_options options = {.starts = starts_for(s, eq->count, is_first),
+    roots_options options = {.starts = starts_for(s, eq->count, face),
                              .is_fixed = s->options->starts > 0,
                              .seed = s->options->seed,
                              .x0 = s->x0,
@@ -207,7 +210,7 @@ static lb_status search_roots(struct search *s, const bool *is_zero, bool is_fir
 
 /* The roots of a face, then the faces within it.  Nothing lies within a face that
  * the totals forbid. */
-static lb_status search_face(struct search *s, const bool *is_zero, bool is_first, bool *must_vanish)
+static lb_status search_face(struct search *s, const bool *is_zero, int face, bool *must_vanish)
 {
     equations *eq = NULL;
     bool is_possible = false;
@@ -216,7 +219,7 @@ static lb_status search_face(struct search *s, const bool *is_zero, bool is_firs
         goto done;
     status = flux_check(eq, &is_possible, must_vanish, s->err);
     if (status == LB_OK && is_possible)
-        status = search_roots(s, is_zero, is_first, eq);
+        status = search_roots(s, is_zero, face, eq);
     if (status == LB_OK && !s->options->skip_boundary && !s->out->interrupted)
         status = faces_find(eq, is_zero, is_possible ? NULL : must_vanish, &s->faces, s->err);
 done:
@@ -230,7 +233,7 @@ static lb_status search_faces(struct search *s)
     bool *must_vanish = memory_array((size_t)s->system->steps, sizeof *must_vanish);
     lb_status status = must_vanish ? add_first_face(s) : status_no_memory(s->err);
     for (int i = 0; status == LB_OK && i < s->faces.count && !s->out->interrupted; i++)
-        status = search_face(s, s->faces.is_zero[i], i == 0, must_vanish);
+        status = search_face(s, s->faces.is_zero[i], i, must_vanish);
     memory_free(must_vanish);
     return status;
 }
