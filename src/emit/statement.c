@@ -35,7 +35,13 @@ static void comment_step(const function_file *file, buffer *out, int step)
     statement_comment_name(out, of->name);
     if (of->reaction >= 0) {
         buffer_append(out, ": ");
-        spell_comment(out, file->net->reactions[of->reaction].equation, EQUATION_LIMIT);
+        buffer equation;
+        buffer_init(&equation);
+        network_write_equation(file->net, &file->net->reactions[of->reaction], &equation);
+        spell_comment(out, buffer_get(&equation), EQUATION_LIMIT);
+        if (buffer_status(&equation) != LB_OK)
+            out->status = buffer_status(&equation);
+        buffer_clear(&equation);
     }
 }
 

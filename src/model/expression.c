@@ -29,6 +29,13 @@ void expression_graph_clear(expression_graph *g)
     expression_graph_init(g);
 }
 
+void expression_graph_seal(expression_graph *g)
+{
+    memory_free(g->table);
+    g->table = NULL;
+    g->table_size = 0;
+}
+
 static uint64_t mix(uint64_t h)
 {
     h ^= h >> 32;
@@ -65,6 +72,8 @@ static size_t find_slot(const expression_graph *g, const expression_node *node)
 static bool grow_table(expression_graph *g)
 {
     size_t size = g->table_size ? 2 * g->table_size : 64;
+    while (size < 2 * (g->count + 1))
+        size *= 2;
     int *table = memory_array(size, sizeof *table);
     if (!table)
         return false;

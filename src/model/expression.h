@@ -57,6 +57,8 @@ typedef struct expression_graph {
 
 void expression_graph_init(expression_graph *g);
 void expression_graph_clear(expression_graph *g);
+/* Nothing more is to be added: give up the table (it comes back when something is). */
+void expression_graph_seal(expression_graph *g);
 /* Copy a node of another graph, whose operands are copied already: map [from->count]
  * gives the numbers in g, and gets the new one.  LB_OK or LB_E_NOMEM. */
 lb_status expression_import(expression_graph *g, const expression_graph *from, expression e, int *map);

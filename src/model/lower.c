@@ -110,7 +110,7 @@ static lb_status read_all(lower *l, lb_error *err)
 /* A network without faults: its values, its warnings. */
 static void complete(lower *l)
 {
-    l->status = network_settle(l->net);
+    l->status = network_finish(l->net);
     if (l->status == LB_OK)
         lower_warnings(l);
     if (l->status == LB_OK)

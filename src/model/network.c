@@ -44,8 +44,6 @@ static void free_reaction(network_reaction *reaction)
 {
     memory_free(reaction->reactants);
     memory_free(reaction->products);
-    memory_free(reaction->equation);
-    memory_free(reaction->rate);
 }
 
 /* A step of a one-way reaction is called like its reaction. */
@@ -390,7 +388,7 @@ static lb_status index_definitions(lb_network *net)
     return LB_OK;
 }
 
-lb_status network_settle(lb_network *net)
+lb_status network_finish(lb_network *net)
 {
     for (int i = 0; i < net->species_count; i++) {
         network_species *species = &net->species[i];
@@ -401,11 +399,8 @@ lb_status network_settle(lb_network *net)
     }
     net->is_open = is_open(net);
     lb_status status = evaluate_defaults(net);
-    return status == LB_OK ? index_definitions(net) : status;
-}
-
-lb_status network_finish(lb_network *net)
-{
-    lb_status status = network_settle(net);
-    return status == LB_OK ? network_fill_texts(net) : status;
+    if (status == LB_OK)
+        status = index_definitions(net);
+    expression_graph_seal(&net->graph);
+    return status;
 }

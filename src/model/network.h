@@ -108,8 +108,6 @@ typedef struct network_reaction {
     network_term *reactants, *products;  /* as written, equal species of one side merged */
     int reactant_count, product_count;
     int first_step, step_count;
-    char *equation;             /* "2 X + Y -> 3 X" */
-    char *rate;                 /* "k2*[X]^2*[Y]"; "R3.kf*[B]*[X] - R3.kr*[Y]*[D]" */
     int line;
 } network_reaction;
 
@@ -141,6 +139,10 @@ const char *network_leaf_name(const void *network, expression_kind leaf, int ind
  * of derived constants and readings in place of what they stand for; `expand`: the
  * expression itself is written out even when it has a name. */
 void network_write(const lb_network *net, expression e, bool expand, buffer *out);
+
+/* Append "2 X + Y -> 3 X", "-> X", "X ->"; and "k2*[X]^2*[Y]", "R3.kf*[B]*[X] - R3.kr*[Y]*[D]". */
+void network_write_equation(const lb_network *net, const network_reaction *reaction, buffer *out);
+void network_write_rate(const lb_network *net, const network_reaction *reaction, buffer *out);
 
 /* A species' name in a reaction: quoted when it is no plain name. */
 void network_write_name(const char *name, buffer *out);
@@ -188,10 +190,7 @@ int network_add_mass_action(lb_network *net, int reaction, network_direction dir
 int network_set_tank(lb_network *net, expression residence);
 /* The unit of a constant or definition becomes this text, which is taken. */
 void network_set_unit(char **place, char *text);
-/* Fill default values and is_open; then (a large part of a large network, and nothing to its
- * meaning) the texts of equations and rates.  network_finish does both.  LB_OK or LB_E_NOMEM. */
-lb_status network_settle(lb_network *net);
-lb_status network_fill_texts(lb_network *net);
+/* After all of it: fill default values, is_open.  LB_OK or LB_E_NOMEM. */
 lb_status network_finish(lb_network *net);
 
 #endif

@@ -88,47 +88,28 @@ static void write_side(const lb_network *net, const network_term *terms, int cou
     }
 }
 
-/* "2 X + Y -> 3 X", "-> X", "X ->" */
-static char *equation_text(const lb_network *net, const network_reaction *reaction)
+void network_write_equation(const lb_network *net, const network_reaction *reaction, buffer *out)
 {
-    buffer text;
-    buffer_init(&text);
-    write_side(net, reaction->reactants, reaction->reactant_count, &text);
+    write_side(net, reaction->reactants, reaction->reactant_count, out);
     if (reaction->reactant_count > 0)
-        buffer_char(&text, ' ');
-    buffer_append(&text, reaction->is_reversible ? "<->" : "->");
+        buffer_char(out, ' ');
+    buffer_append(out, reaction->is_reversible ? "<->" : "->");
     if (reaction->product_count > 0)
-        buffer_char(&text, ' ');
-    write_side(net, reaction->products, reaction->product_count, &text);
-    return buffer_take(&text);
+        buffer_char(out, ' ');
+    write_side(net, reaction->products, reaction->product_count, out);
 }
 
 /* Forward minus reverse. */
-static char *rate_text(const lb_network *net, const network_reaction *reaction)
+void network_write_rate(const lb_network *net, const network_reaction *reaction, buffer *out)
 {
-    buffer text;
-    buffer_init(&text);
     for (int i = 0; i < reaction->step_count; i++) {
         const network_step *step = &net->steps[reaction->first_step + i];
         expression_kind kind = net->graph.nodes[step->rate].kind;
         bool is_sum = kind == EXPRESSION_ADD || kind == EXPRESSION_SUBTRACT || kind == EXPRESSION_NEGATE;
         bool in_parentheses = i > 0 && is_sum && !definition_name(net, step->rate);
-        buffer_append(&text, i > 0 ? " - " : "");
-        buffer_append(&text, in_parentheses ? "(" : "");
-        network_write(net, step->rate, false, &text);
-        buffer_append(&text, in_parentheses ? ")" : "");
+        buffer_append(out, i > 0 ? " - " : "");
+        buffer_append(out, in_parentheses ? "(" : "");
+        network_write(net, step->rate, false, out);
+        buffer_append(out, in_parentheses ? ")" : "");
     }
-    return buffer_take(&text);
-}
-
-lb_status network_fill_texts(lb_network *net)
-{
-    for (int i = 0; i < net->reaction_count; i++) {
-        network_reaction *reaction = &net->reactions[i];
-        reaction->equation = equation_text(net, reaction);
-        reaction->rate = rate_text(net, reaction);
-        if (!reaction->equation || !reaction->rate)
-            return LB_E_NOMEM;
-    }
-    return LB_OK;
 }

@@ -39,8 +39,7 @@ static lb_status read_source(lb_diagnostics *list, const lb_setting *settings, s
     if (faults > 0)
         return status_raise(err, LB_E_MECHANISM, NULL, "the mechanism has %zu fault%s", faults,
                             faults == 1 ? "" : "s");
-    status = network_fill_texts(*network);
-    return status == LB_OK ? keep_text(*network, diagnostics_source(list)) : status;
+    return keep_text(*network, diagnostics_source(list));
 }
 
 /* The same; takes the source, and gives the list. */

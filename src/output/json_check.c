@@ -92,12 +92,23 @@ static json_t *balance_value(json_writer *w, const lb_network *net, const networ
     return object;
 }
 
+static json_t *written(const lb_network *net, const network_reaction *reaction,
+                       void (*write)(const lb_network *, const network_reaction *, buffer *))
+{
+    buffer text;
+    buffer_init(&text);
+    write(net, reaction, &text);
+    json_t *value = buffer_status(&text) == LB_OK ? json_text(buffer_get(&text)) : NULL;
+    buffer_clear(&text);
+    return value;
+}
+
 static json_t *reaction_value(json_writer *w, const lb_network *net, const network_reaction *reaction)
 {
     json_t *object = json_object();
     json_put(w, object, "label", json_text(reaction->label));
-    json_put(w, object, "equation", json_text(reaction->equation));
-    json_put(w, object, "rate", json_text(reaction->rate));
+    json_put(w, object, "equation", written(net, reaction, network_write_equation));
+    json_put(w, object, "rate", written(net, reaction, network_write_rate));
     json_put(w, object, "reversible", json_boolean(reaction->is_reversible));
     json_put(w, object, "balance", balance_value(w, net, reaction));
     return object;

@@ -144,13 +144,19 @@ static void write_reactions(const lb_network *net, const lb_layout *layout, buff
     for (int i = 0; i < net->reaction_count; i++) {
         const network_reaction *reaction = &net->reactions[i];
         const network_step *step = &net->steps[reaction->first_step];
-        buffer factors;
+        buffer equation, rate, factors;
+        buffer_init(&equation);
+        buffer_init(&rate);
         buffer_init(&factors);
         for (int e = 0; e < step->entry_count; e++)
             append_factor(&factors, net, &step->entries[e]);
         grid_cell(&g, "%s", reaction->label);
-        grid_cell(&g, "%s", reaction->equation);
-        grid_cell(&g, "v = %s%s%s", reaction->rate, buffer_get(&factors)[0] ? "; " : "", buffer_get(&factors));
+        network_write_equation(net, reaction, &equation);
+        network_write_rate(net, reaction, &rate);
+        grid_cell(&g, "%s", buffer_get(&equation));
+        grid_cell(&g, "v = %s%s%s", buffer_get(&rate), buffer_get(&factors)[0] ? "; " : "", buffer_get(&factors));
+        grid_end(&g, &equation);
+        grid_end(&g, &rate);
         grid_end(&g, &factors);
     }
     layout_heading(out, layout, "Reactions");
