@@ -519,6 +519,26 @@ START_TEST(test_signed_degenerate_root_is_one_state)
 }
 END_TEST
 
+/* ---- Hill laws ------------------------------------------------------------------------------------ */
+
+/* n genes that each make themselves, 3 G^4/(1 + sum G^4), and are lost at rate 1.  With m
+ * of them present at g: 3 g^3 = 1 + m g^4, which has two roots for m = 1 and m = 2 and
+ * none above (m = 2: g = 1 is one of them); so there are 1 + 2*4 + 2*6 states. */
+START_TEST(test_states_on_every_face_are_found)
+{
+    char text[900];
+    int at = snprintf(text, sizeof text, "units none\n");
+    for (int i = 0; i < 4; i++)
+        at += snprintf(text + at, sizeof text - (size_t)at,
+                       "[G%d]0 = %d\n-> G%d, v = 3*[G%d]^4/(1 + [G0]^4 + [G1]^4 + [G2]^4 + [G3]^4)\nG%d ->, k = 1\n", i,
+                       i + 1, i, i, i);
+    lb_steady_options options = {.seed = (uint64_t)_i};
+    struct answer a = ask_with(text, &options);
+    ck_assert_uint_eq(a.steady->count, 21);
+    answer_clear(&a);
+}
+END_TEST
+
 /* ---- Random networks with planted states ------------------------------------------------------------ */
 
 /* Two molecules in, two out. */
@@ -769,6 +789,7 @@ Suite *steady_suite(void)
     tcase_add_test(faces, test_no_start_is_spent_where_rates_cannot_balance);
     tcase_add_test(faces, test_independent_switches_come_in_all_combinations);
     tcase_add_test(faces, test_large_tank_is_solved);
+    tcase_add_loop_test(faces, test_states_on_every_face_are_found, 0, 4);
     suite_add_tcase(suite, faces);
     TCase *degenerate = tcase_create("degenerate");
     tcase_add_test(degenerate, test_continuum_on_a_face_is_one_state);

@@ -66,6 +66,7 @@ void json_put_steady(json_writer *w, const lb_system *system, const lb_steady *s
     json_put(w, w->root, "rank", json_integer(steady->rank));
     json_put(w, w->root, "zero_eigenvalues", json_integer(steady->zero_eigenvalues));
     json_put(w, w->root, "continuum", json_integer(steady->continuum));
+    json_put(w, w->root, "all_faces", json_boolean(steady->all_faces));
     json_put(w, w->root, "effort", effort);
     json_put(w, w->root, "interrupted", json_boolean(steady->interrupted));
 }

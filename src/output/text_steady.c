@@ -27,12 +27,13 @@ static void write_search(buffer *out, const lb_layout *layout, const lb_network 
                   steady->count == 0 ? "that does not exclude one" : "it can miss one");
     if (steady->interrupted)
         buffer_append(&text, " It was interrupted, and is not complete.");
+    else if (!steady->all_faces)
+        buffer_append(&text, " There are more faces than were searched.");
     layout_printf(out, layout, 2, "%s", buffer_get(&text));
     layout_end(&text, out);
     if (steady->continuum > 0)
-        layout_printf(out, layout, 2,
-                      "They are not single points but a continuum, of dimension %d; %s.",
-                      steady->continuum, steady->count == 1 ? "a point of it is shown" : "points of it are shown");
+        layout_printf(out, layout, 2, "They are not single points but a continuum, of dimension %d: one point of it is shown%s.",
+                      steady->continuum, steady->count == 1 ? "" : ", and the states that lie apart");
     buffer_init(&text);
     describe_states(&text, net, steady->accumulating);
     if (*buffer_get(&text))
