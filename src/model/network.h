@@ -47,13 +47,13 @@ typedef enum network_constant_kind {
 
 typedef struct network_constant {
     char *name;                 /* "k2", "[A]", "[X]in", "residence", "temperature", "R3.kf" */
-    network_constant_kind kind;
-    double value;
-    bool has_range, is_logarithmic;
-    double low, high;
     char *unit;                 /* of the stored number; "" when it has none */
-    bool may_be_negative;       /* not a rate constant, concentration, time or temperature */
+    double value;
+    double low, high;
+    network_constant_kind kind;
     int line;
+    bool has_range, is_logarithmic;
+    bool may_be_negative;       /* not a rate constant, concentration, time or temperature */
 } network_constant;
 
 /* A derived constant or a reading: a named expression. */
@@ -88,27 +88,27 @@ typedef struct network_order {
 } network_order;
 
 typedef struct network_step {
-    char *name;                 /* "R1", its reaction's text; of a reversible reaction "R3.forward", "R3.reverse"; flows "[X] inflow" */
+    char *name;                 /* "R1", its reaction's text; of a reversible reaction "R3.forward", "R3.reverse";
+                                 * flows "[X] inflow" */
+    network_order *orders;      /* [order_count], by state, no zero orders */
+    network_entry *entries;     /* [entry_count] net changes, by state, no zero entries */
+    int order_count, entry_count;
     int reaction;               /* -1 for a flow */
     network_direction direction;
-    bool is_power_law;          /* v = factor * prod x^order: mass action and recognised power laws, and flows */
-    bool is_mass_action;        /* the orders are the reactant coefficients of the dynamic species */
     expression factor;          /* of constants alone; power laws only: rate constant times held concentrations */
     expression rate_constant;   /* of a step by network_add_mass_action; else EXPRESSION_NONE */
-    network_order *orders;      /* [order_count], by state, no zero orders */
-    int order_count;
     expression rate;            /* the whole rate: always there */
-    network_entry *entries;     /* [entry_count] net changes, by state, no zero entries */
-    int entry_count;
+    bool is_power_law;          /* v = factor * prod x^order: mass action and recognised power laws, and flows */
+    bool is_mass_action;        /* the orders are the reactant coefficients of the dynamic species */
 } network_step;
 
 typedef struct network_reaction {
     char *label;
-    bool is_reversible;
     network_term *reactants, *products;  /* as written, equal species of one side merged */
     int reactant_count, product_count;
     int first_step, step_count;
     int line;
+    bool is_reversible;
 } network_reaction;
 
 struct lb_network {

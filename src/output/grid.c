@@ -58,7 +58,7 @@ void grid_cell(grid *g, const char *format, ...)
     if (g->status == LB_OK && memory_grow(&g->cell, &g->capacity, g->count, sizeof *g->cell))
         g->status = LB_E_NOMEM;
     if (g->status == LB_OK)
-        g->cell[g->count++] = start;
+        g->cell[g->count++] = (uint32_t)start;  /* BUFFER_LIMIT is not beyond it */
 }
 
 void grid_end(grid *g, buffer *text)

@@ -3,6 +3,7 @@
 #define LIMBECK_OUTPUT_GRID_H
 
 #include <stdbool.h>
+#include <stdint.h>
 
 #include "base/buffer.h"
 #include "limbeck.h"
@@ -18,7 +19,7 @@ typedef struct grid {
     int columns;
     grid_align align[GRID_COLUMNS];
     buffer text;            /* of all cells, each terminated */
-    size_t *cell;           /* [count] where each begins in it, row after row */
+    uint32_t *cell;         /* [count] where each begins in it, row after row */
     size_t count, capacity;
     bool has_header;        /* the first row holds the headings of the columns */
     lb_status status;       /* sticks, and is passed on by grid_write */
