@@ -99,10 +99,10 @@ void explicit_free(explicit_method *method)
 
 static bool all_finite(size_t count, const double *a)
 {
+    double sum = 0;             /* 0 times what is not finite is not a number */
     for (size_t i = 0; i < count; i++)
-        if (!isfinite(a[i]))
-            return false;
-    return true;
+        sum += 0.0 * a[i];
+    return sum == 0;
 }
 
 stepper_outcome explicit_advance(explicit_method *method, double h, const double *x, const double *f, double *x_new)

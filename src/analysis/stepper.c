@@ -7,8 +7,11 @@
 int stepper_rhs(lb_evaluator *evaluator, const double *x, double *f)
 {
     int n = evaluator_system(evaluator)->n;
+    double sum = 0;             /* 0 times what is not finite is not a number */
     lb_rhs(evaluator, x, f);
     for (int i = 0; i < n; i++)
+        sum += 0.0 * f[i];
+    for (int i = 0; sum != 0 && i < n; i++)
         if (!isfinite(f[i]))
             return i;
     return -1;
