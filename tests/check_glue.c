@@ -285,8 +285,7 @@ static lb_network *hostile_network(uint64_t *state)
         network_add_species(net, text, ROLE_DYNAMIC);
         hostile_text(state, text);
         network_add_constant(net, text, CONSTANT_NAMED, i + 1);
-        memory_free(net->constants[i].unit);
-        net->constants[i].unit = memory_text(text);
+        network_set_unit(&net->constants[i].unit, memory_text(text));
     }
     for (int i = 0; i < SPECIES; i++) {
         expression_graph *g = &net->graph;

@@ -1,17 +1,20 @@
 /* Loops over tables.
  *
- * For each batch of 64 products: fill an array with the factors that every product
- * has, multiply the others in, add the terms to their sums.  Sums get their terms in
- * the order of the network, as in straight lines.  The tables are static and constant:
+ * For each batch of 64 products: fill an array with the factors that every product has,
+ * multiply the others in, put negatives and multiples behind the products, add each term
+ * to its sum.  Sums get their terms in the order of the network, as in straight lines.
+ * The tables are static and constant:
  *
- *   VERB_first_k, VERB_first_x          a factor of every product, padded to whole batches
- *   VERB_k, VERB_k_slot, VERB_k_end     further factors: index, product in its batch, end of each batch
- *   VERB_target, VERB_slot, VERB_weight the terms, ended for each batch by VERB_term_end
+ *   VERB_k1, VERB_x1, VERB_x2           factors that every product has, padded to whole batches
+ *   VERB_k, VERB_k_slot, VERB_k_end     further factors: index, slot, end of each batch
+ *   VERB_multiple, VERB_multiple_slot   multiples: factor, slot, with VERB_multiple_end
+ *   VERB_target, VERB_slot              the terms: output, slot, with VERB_term_end
  *
- * and the same with x and c. */
+ * and the same with x and c in place of k. */
 #include "emit/loops.h"
 
 #include <limits.h>
+#include <stdio.h>
 
 #include "emit/parts.h"
 #include "emit/spell.h"
@@ -63,16 +66,17 @@ static void append_ends(const function *f, const char *what, const size_t *end, 
     end_table(f);
 }
 
-/* The first factors; the last batch is filled up with the first index, whose product is not used. */
-static void append_first(const function *f, const products *p, products_kind kind)
+/* One factor of every product; the last batch is filled up with the first index, whose product
+ * is not used. */
+static void append_round(const function *f, const products *p, products_kind kind, int round)
 {
-    char what[] = "first_k";
-    what[6] = letters[kind];
+    char what[8];
+    snprintf(what, sizeof what, "%c%d", letters[kind], round + 1);
     size_t line = f->file->code.length, count = p->batches * PRODUCTS_BATCH;
-    const int *first = p->factors[kind].first;
+    const int *index = p->factors[kind].round[round];
     begin_table(f, "int", what, count);
     for (size_t i = 0; i < count; i++)
-        append_element(&f->file->code, &line, index_of(f, kind, first[i < p->items ? i : 0]));
+        append_element(&f->file->code, &line, index_of(f, kind, index[i < p->items ? i : 0]));
     end_table(f);
 }
 
@@ -96,68 +100,46 @@ static void append_others(const function *f, const products *p, products_kind ki
 
 /* ---- Terms --------------------------------------------------------------------------- */
 
-static bool has_weights(const products *p)
-{
-    for (size_t i = 0; i < p->term_count; i++)
-        if (p->terms[i].weight != 1)
-            return true;
-    return false;
-}
-
-/* Product number i is output number i: no tables of terms. */
-static bool is_direct(const products *p)
-{
-    for (size_t i = 0; i < p->term_count; i++)
-        if (p->terms[i].target != i || p->terms[i].slot != i % PRODUCTS_BATCH)
-            return false;
-    return p->term_count == p->items && !has_weights(p);
-}
-
-/* Are all weights whole and small?  Then a byte holds one. */
-static bool are_small(const products *p)
-{
-    for (size_t i = 0; i < p->term_count; i++) {
-        double weight = p->terms[i].weight;
-        if (!(weight >= SCHAR_MIN && weight <= SCHAR_MAX) || weight != (double)(int)weight)
-            return false;
-    }
-    return true;
-}
-
-static void append_weights(const function *f, const products *p)
+static void append_multiples(const function *f, const products *p)
 {
     buffer *code = &f->file->code;
-    bool is_small = are_small(p);
     size_t line = code->length;
-    begin_table(f, is_small ? "signed char" : "double", "weight", p->term_count);
-    for (size_t i = 0; i < p->term_count; i++) {
+    begin_table(f, "double", "multiple", p->multiple_count);
+    for (size_t i = 0; i < p->multiple_count; i++) {
         begin_element(code, &line);
-        if (is_small)
-            buffer_printf(code, "%d", (int)p->terms[i].weight);
-        else
-            spell_number(code, p->terms[i].weight);
+        spell_number(code, p->multiples[i].weight);
         buffer_char(code, ',');
     }
     end_table(f);
+    line = code->length;
+    begin_table(f, "unsigned char", "multiple_slot", p->multiple_count);
+    for (size_t i = 0; i < p->multiple_count; i++)
+        append_element(code, &line, p->multiples[i].slot);
+    end_table(f);
+    append_ends(f, "multiple_end", p->multiple_end, p->batches);
+}
+
+static const char *type_of_target(const products *p)
+{
+    for (size_t i = 0; i < p->term_count; i++)
+        if (p->terms[i].target > INT_MAX)
+            return "size_t";
+    return "int";
 }
 
 static void append_terms(const function *f, const products *p)
 {
     buffer *code = &f->file->code;
-    size_t line = code->length, largest = 0;
-    for (size_t i = 0; i < p->term_count; i++)
-        largest = p->terms[i].target > largest ? p->terms[i].target : largest;
-    begin_table(f, largest > INT_MAX ? "size_t" : "int", "target", p->term_count);
+    size_t line = code->length;
+    begin_table(f, type_of_target(p), "target", p->term_count);
     for (size_t i = 0; i < p->term_count; i++)
         append_element(code, &line, p->terms[i].target);
     end_table(f);
     line = code->length;
-    begin_table(f, "unsigned char", "slot", p->term_count);
+    begin_table(f, p->slots <= 256 ? "unsigned char" : "int", "slot", p->term_count);
     for (size_t i = 0; i < p->term_count; i++)
         append_element(code, &line, p->terms[i].slot);
     end_table(f);
-    if (has_weights(p))
-        append_weights(f, p);
     append_ends(f, "term_end", p->term_end, p->batches);
 }
 
@@ -166,26 +148,28 @@ static void append_tables(const function *f, const products *p)
     buffer_printf(&f->file->code, "/* Tables of %s_%s, for batches of %d products. */\n", f->file->name, f->verb,
                   PRODUCTS_BATCH);
     for (products_kind kind = 0; kind < PRODUCTS_KINDS; kind++) {
-        if (p->factors[kind].is_dense)
-            append_first(f, p, kind);
+        for (int round = 0; round < p->factors[kind].rounds; round++)
+            append_round(f, p, kind, round);
         if (p->factors[kind].count > 0)
             append_others(f, p, kind);
     }
-    if (!is_direct(p))
+    if (p->multiple_count > 0)
+        append_multiples(f, p);
+    if (!p->is_direct)
         append_terms(f, p);
     buffer_char(&f->file->code, '\n');
 }
 
 /* ---- The function ------------------------------------------------------------------------ */
 
-/* `product[i] = k[...]*x[...];`: what every product has. */
+/* `value[i] = k[...]*x[...];`: what every product has. */
 static void append_start(const function *f, const products *p, buffer *body)
 {
     const char *times = "";
-    buffer_printf(body, "        for (int i = 0; i < %d; i++)\n            product[i] = ", PRODUCTS_BATCH);
+    buffer_printf(body, "        for (int i = 0; i < %d; i++)\n            value[i] = ", PRODUCTS_BATCH);
     for (products_kind kind = 0; kind < PRODUCTS_KINDS; kind++)
-        if (p->factors[kind].is_dense) {
-            buffer_printf(body, "%s%c[%s_first_%c[%d*b + i]]", times, letters[kind], f->verb, letters[kind],
+        for (int round = 0; round < p->factors[kind].rounds; round++) {
+            buffer_printf(body, "%s%c[%s_%c%d[%d*b + i]]", times, letters[kind], f->verb, letters[kind], round + 1,
                           PRODUCTS_BATCH);
             times = "*";
         }
@@ -197,38 +181,58 @@ static void append_cursors(const products *p, buffer *body)
     for (products_kind kind = 0; kind < PRODUCTS_KINDS; kind++)
         if (p->factors[kind].count > 0)
             buffer_printf(body, "    int %c_next = 0;\n", letters[kind]);
-    if (!is_direct(p))
+    if (p->multiple_count > 0)
+        buffer_append(body, "    int multiple_next = 0;\n");
+    if (!p->is_direct)
         buffer_append(body, "    int next = 0;\n");
+}
+
+static void append_factors(const function *f, products_kind kind, buffer *body)
+{
+    char c = letters[kind];
+    buffer_printf(body, "        for (; %c_next < %s_%c_end[b]; %c_next++)\n"
+                        "            value[%s_%c_slot[%c_next]] *= %c[%s_%c[%c_next]];\n",
+                  c, f->verb, c, c, f->verb, c, c, c, f->verb, c, c);
+}
+
+static void append_variants(const function *f, const products *p, buffer *body)
+{
+    const char *verb = f->verb;
+    if (p->has_negatives)
+        buffer_printf(body, "        for (int i = 0; i < %d; i++)\n            value[%d + i] = -value[i];\n",
+                      PRODUCTS_BATCH, PRODUCTS_BATCH);
+    if (p->multiple_count > 0)
+        buffer_printf(body, "        for (int i = %d; multiple_next < %s_multiple_end[b]; multiple_next++)\n"
+                            "            value[i++] = %s_multiple[multiple_next]*value[%s_multiple_slot[multiple_next]];\n",
+                      2 * PRODUCTS_BATCH, verb, verb, verb);
 }
 
 static void append_loops(const function *f, const products *p, buffer *body)
 {
-    const char *verb = f->verb;
     append_start(f, p, body);
-    for (products_kind kind = 0; kind < PRODUCTS_KINDS; kind++) {
-        char c = letters[kind];
+    for (products_kind kind = 0; kind < PRODUCTS_KINDS; kind++)
         if (p->factors[kind].count > 0)
-            buffer_printf(body, "        for (; %c_next < %s_%c_end[b]; %c_next++)\n"
-                                "            product[%s_%c_slot[%c_next]] *= %c[%s_%c[%c_next]];\n",
-                          c, verb, c, c, verb, c, c, c, verb, c, c);
-    }
-    if (is_direct(p)) {
-        buffer_printf(body, "        for (int i = 0; i < %d && %d*b + i < %zu; i++)\n            %s[%d*b + i] = product[i];\n",
+            append_factors(f, kind, body);
+    append_variants(f, p, body);
+    if (p->is_direct)
+        buffer_printf(body, "        for (int i = 0; i < %d && %d*b + i < %zu; i++)\n            %s[%d*b + i] = value[i];\n",
                       PRODUCTS_BATCH, PRODUCTS_BATCH, p->items, f->out, PRODUCTS_BATCH);
-        return;
-    }
-    buffer_printf(body, "        for (; next < %s_term_end[b]; next++)\n            %s[%s_target[next]] += ", verb,
-                  f->out, verb);
-    if (has_weights(p))
-        buffer_printf(body, "%s_weight[next]*", verb);
-    buffer_printf(body, "product[%s_slot[next]];\n", verb);
+    else
+        buffer_printf(body, "        for (; next < %s_term_end[b]; next++)\n"
+                            "            %s[%s_target[next]] += value[%s_slot[next]];\n",
+                      f->verb, f->out, f->verb, f->verb);
+}
+
+static bool has_factors(const products_factors *f)
+{
+    return f->rounds > 0 || f->count > 0;
 }
 
 static void mark_arguments(const function *f, const products *p)
 {
     writer *w = &f->file->writer;
-    w->uses_k = w->uses_k || p->factors[PRODUCTS_K].is_dense || p->factors[PRODUCTS_K].count > 0;
-    w->uses_x = w->uses_x || p->factors[PRODUCTS_X].is_dense || p->factors[PRODUCTS_X].count > 0;
+    w->uses_k = w->uses_k || has_factors(&p->factors[PRODUCTS_K]);
+    w->uses_x = w->uses_x || has_factors(&p->factors[PRODUCTS_X]);
 }
 
 lb_status loops_append(const function *f, const products *p)
@@ -236,13 +240,13 @@ lb_status loops_append(const function *f, const products *p)
     buffer body;
     int shared = parts_shared(f);
     function g = *f;
-    if (is_direct(p))
+    if (p->is_direct)
         g.zero_size = NULL;
     append_tables(f, p);
     parts_begin(f, &body);
     parts_prologue(&g, shared, &body);
     append_cursors(p, &body);
-    buffer_printf(&body, "    for (int b = 0; b < %zu; b++) {\n        double product[%d];\n", p->batches, PRODUCTS_BATCH);
+    buffer_printf(&body, "    for (int b = 0; b < %zu; b++) {\n        double value[%zu];\n", p->batches, p->slots);
     append_loops(f, p, &body);
     buffer_append(&body, "    }\n");
     mark_arguments(f, p);

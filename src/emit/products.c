@@ -4,7 +4,8 @@
  * concentrations; whatever else stands in a product is an expression computed
  * before the loops, as one more factor.  A coefficient that is an expression
  * becomes part of the product, the numbers of a product part of the weights of its
- * terms.  Products keep the order of the network, and so do the terms of each sum.
+ * terms, and a weight makes a slot of its own of the product's multiple, so that adding
+ * a term is one addition.  Products keep the order of the network, and so do the terms of each sum.
  *
  * Products come in batches.  The factors of a batch are flat lists of (slot, index),
  * so that the loops over them do not depend on how many factors a product has. */
@@ -37,13 +38,16 @@ struct work {
 void products_clear(products *p)
 {
     for (int kind = 0; kind < PRODUCTS_KINDS; kind++) {
-        memory_free(p->factors[kind].first);
+        for (int round = 0; round < p->factors[kind].rounds; round++)
+            memory_free(p->factors[kind].round[round]);
         memory_free(p->factors[kind].index);
         memory_free(p->factors[kind].slot);
         memory_free(p->factors[kind].end);
     }
     memory_free(p->terms);
     memory_free(p->term_end);
+    memory_free(p->multiples);
+    memory_free(p->multiple_end);
     sums_clear(&p->shared);
     memset(p, 0, sizeof *p);
 }
@@ -168,12 +172,37 @@ static lb_status append_product(products *p, const struct parts *parts)
     return status;
 }
 
+/* Slot of a multiple of the last product. */
+static lb_status find_multiple(products *p, double weight, unsigned *slot)
+{
+    size_t batch = (p->items - 1) / PRODUCTS_BATCH, first = batch > 0 ? p->multiple_end[batch - 1] : 0;
+    products_multiple wanted = {(unsigned char)((p->items - 1) % PRODUCTS_BATCH), weight};
+    size_t at = p->multiple_count;
+    while (at > first && p->multiples[at - 1].slot == wanted.slot && p->multiples[at - 1].weight != weight)
+        at--;
+    bool is_known = at > first && p->multiples[at - 1].slot == wanted.slot;
+    if (!is_known) {
+        if (memory_grow(&p->multiples, &p->multiple_capacity, p->multiple_count, sizeof wanted) != 0)
+            return LB_E_NOMEM;
+        p->multiples[p->multiple_count++] = wanted;
+        at = p->multiple_count;
+    }
+    *slot = (unsigned)(2 * PRODUCTS_BATCH + (at - 1 - first));
+    return LB_OK;
+}
+
 static lb_status append_term(products *p, size_t target, double weight)
 {
+    unsigned slot = (unsigned)((p->items - 1) % PRODUCTS_BATCH);
+    if (weight == -1)
+        slot += PRODUCTS_BATCH;
+    else if (weight != 1 && find_multiple(p, weight, &slot) != LB_OK)
+        return LB_E_NOMEM;
     if (memory_grow(&p->terms, &p->term_capacity, p->term_count, sizeof *p->terms) != 0)
         return LB_E_NOMEM;
-    unsigned char slot = (unsigned char)((p->items - 1) % PRODUCTS_BATCH);
-    p->terms[p->term_count++] = (products_term){target, weight, slot};
+    p->has_negatives = p->has_negatives || weight == -1;
+    p->slots = slot >= p->slots ? slot + 1 : p->slots;
+    p->terms[p->term_count++] = (products_term){target, slot};
     return LB_OK;
 }
 
@@ -183,6 +212,7 @@ static void end_batch(products *p)
     for (int kind = 0; kind < PRODUCTS_KINDS; kind++)
         p->factors[kind].end[batch] = p->factors[kind].count;
     p->term_end[batch] = p->term_count;
+    p->multiple_end[batch] = p->multiple_count;
 }
 
 /* Each term at most makes one product. */
@@ -190,7 +220,8 @@ static lb_status allocate(products *p, size_t terms)
 {
     size_t batches = terms / PRODUCTS_BATCH + 1;
     p->term_end = memory_zeroed(batches, sizeof *p->term_end);
-    bool ok = p->term_end != NULL;
+    p->multiple_end = memory_zeroed(batches, sizeof *p->multiple_end);
+    bool ok = p->term_end && p->multiple_end;
     for (int kind = 0; kind < PRODUCTS_KINDS; kind++) {
         p->factors[kind].end = memory_zeroed(batches, sizeof(size_t));
         ok = ok && p->factors[kind].end;
@@ -243,19 +274,18 @@ static bool is_in_each(const products *p, const products_factors *f)
     return next == p->items;
 }
 
-static lb_status set_first_apart(products *p, products_factors *f)
+/* Take the first factor of each product out of the list. */
+static lb_status take_round(products *p, products_factors *f)
 {
-    f->is_dense = p->items > 0 && is_in_each(p, f);
-    if (!f->is_dense)
-        return LB_OK;
-    f->first = memory_array(p->items, sizeof *f->first);
-    if (!f->first)
+    int *round = memory_array(p->items, sizeof *round);
+    if (!round)
         return LB_E_NOMEM;
+    f->round[f->rounds++] = round;
     size_t kept = 0, next = 0, at = 0;
     for (size_t b = 0; b < p->batches; b++) {
         for (; at < f->end[b]; at++) {
             if (b * PRODUCTS_BATCH + f->slot[at] == next) {
-                f->first[next++] = f->index[at];
+                round[next++] = f->index[at];
             } else {
                 f->index[kept] = f->index[at];
                 f->slot[kept++] = f->slot[at];
@@ -265,6 +295,31 @@ static lb_status set_first_apart(products *p, products_factors *f)
     }
     f->count = kept;
     return LB_OK;
+}
+
+static lb_status take_rounds(products *p, products_factors *f)
+{
+    lb_status status = LB_OK;
+    while (status == LB_OK && p->items > 0 && f->rounds < PRODUCTS_ROUNDS && is_in_each(p, f))
+        status = take_round(p, f);
+    return status;
+}
+
+/* ---- Terms ---------------------------------------------------------------------------------- */
+
+static bool is_direct(const products *p)
+{
+    for (size_t i = 0; i < p->term_count; i++)
+        if (p->terms[i].target != i || p->terms[i].slot != i % PRODUCTS_BATCH)
+            return false;
+    return p->term_count == p->items;
+}
+
+static void finish_terms(products *p)
+{
+    size_t least = p->has_negatives ? 2 * PRODUCTS_BATCH : PRODUCTS_BATCH;
+    p->is_direct = is_direct(p);
+    p->slots = p->slots > least ? p->slots : least;
 }
 
 lb_status products_make(const sums *s, expression_graph *graph,
@@ -279,6 +334,7 @@ lb_status products_make(const sums *s, expression_graph *graph,
         status = append_all(s, graph, &w, p);
     p->batches = (p->items + PRODUCTS_BATCH - 1) / PRODUCTS_BATCH;
     for (int kind = 0; status == LB_OK && kind < PRODUCTS_KINDS; kind++)
-        status = set_first_apart(p, &p->factors[kind]);
+        status = take_rounds(p, &p->factors[kind]);
+    finish_terms(p);
     return status;
 }
