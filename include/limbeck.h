@@ -318,6 +318,9 @@ typedef struct lb_steady_state {
     bool is_boundary;        /* some core species is zero */
     double residual;         /* max_i |f_i| / (sum of |terms of f_i| + sum_j |df_i/dx_j| |x_j|) */
     bool routh_hurwitz_agrees; /* the count of unstable eigenvalues by the Routh array is the same (or not asked: rank above 8) */
+    double *sensitivity;     /* [n*m] d ln x_i / d ln k_j at i + j*n, the totals moving with the initial state; NAN where x_i
+                              * is 0 or the state is degenerate; NULL: not asked */
+    lb_complex *leading_sensitivity; /* [m] d eigenvalues[0] / d ln k_j; NULL: not asked */
 } lb_steady_state;
 
 typedef struct lb_steady_options {
@@ -326,6 +329,7 @@ typedef struct lb_steady_options {
     const double *x0;        /* [n] state whose totals define the class; NULL: the file's initial state */
     const double *k;         /* [m] constants; NULL: the file's */
     bool skip_boundary;
+    bool sensitivities;      /* by all constants, of every state */
     const lb_monitor *monitor;
 } lb_steady_options;
 

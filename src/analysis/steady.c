@@ -15,6 +15,7 @@
 #include "analysis/faces.h"
 #include "analysis/flux.h"
 #include "analysis/roots.h"
+#include "analysis/sensitivity.h"
 #include "analysis/stability.h"
 #include "analysis/starts.h"
 #include "base/memory.h"
@@ -47,6 +48,8 @@ static void state_clear(lb_steady_state *state)
     memory_free(state->x);
     memory_free(state->eigenvalues);
     memory_free(state->modes);
+    memory_free(state->sensitivity);
+    memory_free(state->leading_sensitivity);
 }
 
 /* A species set aside that comes out negative: the class ends before this state. */
@@ -342,6 +345,8 @@ lb_status lb_steady_solve(const lb_system *system, const lb_steady_options *opti
         status = describe_class(&s);
     if (status == LB_OK)
         status = search_faces(&s);
+    for (size_t i = 0; status == LB_OK && s.options->sensitivities && i < s.out->count; i++)
+        status = sensitivity_find(s.evaluator, &s.out->state[i], s.options->x0, err);
     if (status == LB_OK) {
         sort_states(s.out);
         s.out->all_faces = s.faces.is_complete && !s.out->interrupted;

@@ -6,7 +6,8 @@
 static int solve(session *s)
 {
     lb_error error = {.code = LB_OK};
-    lb_steady_options steady_options = {.seed = s->given->seed, .monitor = &s->monitor};
+    lb_steady_options steady_options = {
+        .seed = s->given->seed, .sensitivities = s->given->sensitivities, .monitor = &s->monitor};
     lb_steady *steady = NULL;
     if (lb_steady_solve(s->system, &steady_options, &steady, &error) != LB_OK)
         return session_fail(s, &error);
@@ -33,7 +34,10 @@ static int run(const options *given)
     return result;
 }
 
-static const option_spec own[] = {OPTION_NATIVE_SPEC};
+static const option_spec own[] = {
+    {OPTION_SENSITIVITIES, "--sensitivities", 0, NULL, "how each state and its leading eigenvalue move with each constant"},
+    OPTION_NATIVE_SPEC,
+};
 
 const command command_steady = {
     .name = "steady",
@@ -44,6 +48,7 @@ const command command_steady = {
              "those of the reaction space. A search can miss a state; none is claimed missing.\n",
     .examples = "  limbeck steady bath.mech\n"
                 "  limbeck steady bath.mech --set '[B]=1.7'\n"
+                "  limbeck steady bath.mech --sensitivities\n"
                 "  limbeck steady bath.mech --json\n",
     .own = own,
     .own_count = sizeof own / sizeof *own,

@@ -14,6 +14,21 @@ static json_t *mode_value(json_writer *w, const lb_mode *mode)
     return object;
 }
 
+/* {constant: {x: {species: slope}, eigenvalue: [re, im]}} */
+static json_t *sensitivities_value(json_writer *w, const lb_network *net, const lb_steady_state *state)
+{
+    if (!state->sensitivity)
+        return json_null();
+    json_t *all = json_object();
+    for (int j = 0; j < lb_network_constants(net); j++) {
+        json_t *one = json_object();
+        json_put(w, one, "x", json_states(w, net, state->sensitivity + (size_t)j * (size_t)lb_network_states(net)));
+        json_put(w, one, "eigenvalue", json_complex(state->leading_sensitivity[j]));
+        json_put(w, all, lb_network_constant_name(net, j), one);
+    }
+    return all;
+}
+
 static json_t *state_value(json_writer *w, const lb_network *net, const lb_steady *steady, const lb_steady_state *state)
 {
     json_t *eigenvalues = json_array(), *modes = json_array();
@@ -32,6 +47,7 @@ static json_t *state_value(json_writer *w, const lb_network *net, const lb_stead
     json_put(w, object, "real_part_error", json_number(state->real_part_error));
     json_put(w, object, "routh_hurwitz_agrees", json_boolean(state->routh_hurwitz_agrees));
     json_put(w, object, "modes", modes);
+    json_put(w, object, "sensitivities", sensitivities_value(w, net, state));
     return object;
 }
 

@@ -4,6 +4,7 @@
 
 #include <math.h>
 
+#include "base/memory.h"
 #include "output/describe.h"
 #include "output/grid.h"
 #include "output/layout.h"
@@ -175,6 +176,74 @@ static void write_state(buffer *out, const lb_layout *layout, const lb_network *
     write_modes(out, layout, net, state);
 }
 
+/* ---- Sensitivities -------------------------------------------------------------------- */
+
+enum { STRONGEST = 4 };
+
+/* The largest few of values [m] by magnitude, as "k2 -1.02, k3 0.5"; what is below a
+ * hundredth of the largest is left out.  Each is set to zero when it is taken. */
+static void strongest_cell(grid *g, const lb_network *net, double *values, int m)
+{
+    buffer text;
+    buffer_init(&text);
+    double largest = 0;
+    for (int j = 0; j < m; j++)
+        largest = isfinite(values[j]) ? fmax(largest, fabs(values[j])) : largest;
+    for (int shown = 0; shown < STRONGEST; shown++) {
+        int best = -1;
+        for (int j = 0; j < m; j++)
+            if (fabs(values[j]) > 0.01 * largest && (best < 0 || fabs(values[j]) > fabs(values[best])))
+                best = j;
+        if (best < 0)
+            break;
+        char number[LAYOUT_NUMBER];
+        layout_number(values[best], 3, number);
+        buffer_printf(&text, "%s%s %s", shown > 0 ? ", " : "", lb_network_constant_name(net, best), number);
+        values[best] = 0;
+    }
+    grid_cell(g, "%s", *buffer_get(&text) ? buffer_get(&text) : "none");
+    grid_end(g, &text);
+}
+
+static lb_status write_sensitivities(buffer *out, const lb_layout *layout, const lb_network *net,
+                                     const lb_steady_state *state, size_t number)
+{
+    int n = lb_network_states(net), m = lb_network_constants(net);
+    double *values = memory_array((size_t)m, sizeof *values);
+    if (!values)
+        return LB_E_NOMEM;
+    grid g;
+    grid_init(&g, "ll", false);
+    for (int i = 0; i < n; i++) {
+        if (!(state->x[i] != 0) || isnan(state->x[i]))
+            continue;
+        for (int j = 0; j < m; j++)
+            values[j] = state->sensitivity[i + (size_t)j * (size_t)n];
+        grid_cell(&g, "[%s]", lb_network_state_name(net, i));
+        strongest_cell(&g, net, values, m);
+    }
+    for (int j = 0; j < m; j++)
+        values[j] = state->leading_sensitivity[j].re;
+    grid_cell(&g, "eigenvalue");
+    strongest_cell(&g, net, values, m);
+    layout_printf(out, layout, 2, "%zu: %s", number, lb_kind_text(state->kind));
+    grid_write(&g, layout, 4, out);
+    memory_free(values);
+    return LB_OK;
+}
+
+static lb_status write_all_sensitivities(buffer *out, const lb_layout *layout, const lb_network *net,
+                                         const lb_steady *steady)
+{
+    lb_status status = LB_OK;
+    layout_heading(out, layout, "Sensitivities");
+    layout_printf(out, layout, 2, "Relative change of each concentration per relative change of a constant, d ln x / d ln k, "
+                                  "and the change of the leading eigenvalue's real part, d Re / d ln k: the strongest ones.");
+    for (size_t s = 0; status == LB_OK && s < steady->count; s++)
+        status = write_sensitivities(out, layout, net, &steady->state[s], s + 1);
+    return status;
+}
+
 lb_status lb_text_steady(const lb_system *system, const lb_steady *steady, const lb_layout *layout, lb_text *out)
 {
     const lb_network *net = system->network;
@@ -188,5 +257,8 @@ lb_status lb_text_steady(const lb_system *system, const lb_steady *steady, const
                       steady->zero_eigenvalues, steady->zero_eigenvalues == 1 ? "" : "s");
     for (size_t s = 0; s < steady->count; s++)
         write_state(out, layout, net, &steady->state[s], s + 1);
+    if (steady->count > 0 && steady->state[0].sensitivity &&
+        write_all_sensitivities(out, layout, net, steady) != LB_OK)
+        return LB_E_NOMEM;
     return buffer_status(out);
 }
