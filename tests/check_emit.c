@@ -78,7 +78,7 @@ static void compare_golden(const char *name, const char *extension, const char *
     free(want);
 }
 
-static const char *const golden[] = {"brusselator", "tank", "source"};
+static const char *const golden[] = {"brusselator", "tank", "source", "laws"};
 
 START_TEST(test_golden_mechanisms_are_emitted_byte_for_byte)
 {
@@ -550,7 +550,7 @@ Suite *emit_suite(void)
 {
     Suite *suite = suite_create("emit");
     TCase *bytes = new_case(suite, "bytes");
-    tcase_add_loop_test(bytes, test_golden_mechanisms_are_emitted_byte_for_byte, 0, 3);
+    tcase_add_loop_test(bytes, test_golden_mechanisms_are_emitted_byte_for_byte, 0, 4);
     tcase_add_test(bytes, test_same_network_gives_same_bytes);
     TCase *compiling = new_case(suite, "compilers");
     tcase_add_loop_test(compiling, test_strict_compilers_have_nothing_to_say, 0, 2);

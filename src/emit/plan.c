@@ -1,9 +1,10 @@
 /* Layout of one emitted function.
  *
  * A node becomes a local when it is a definition of the file, when it is used
- * more than once and costs more than one operation, or when the text of its user
- * would nest or grow beyond what compilers and readers like.  Everything else is
- * written where it is used, so the text is linear in the size of the graph.
+ * more than once and costs more than one operation, when a power repeats it, or when
+ * the text of its user would nest or grow beyond what compilers and readers like.
+ * Everything else is written where it is used, so the text is linear in the size of
+ * the graph.
  *
  * Terms are taken in network order and cut at the boundary of a step before a
  * block gets more than PLAN_STATEMENTS statements (items, sums and the locals
@@ -26,6 +27,7 @@ struct work {
     const expression_graph *graph;
     const unsigned char *is_defined;
     int *uses;               /* [nodes] places where the node is written */
+    unsigned char *is_base;  /* [nodes] of a power that repeats it: (1 + x)*(1 + x) */
     int *first;              /* [nodes] first item that needs the node */
     unsigned char *cost, *depth, *size; /* [nodes] of its text */
     int *item_locals;        /* [items] locals that this item is first to need */
@@ -48,6 +50,7 @@ void plan_clear(plan *p)
 static void work_clear(struct work *w)
 {
     memory_free(w->uses);
+    memory_free(w->is_base);
     memory_free(w->first);
     memory_free(w->cost);
     memory_free(w->depth);
@@ -74,6 +77,7 @@ static lb_status allocate(plan *p, struct work *w)
     p->block_start = memory_zeroed(terms + 2, sizeof(size_t));
     p->target_id = memory_zeroed(terms, sizeof(size_t));
     w->uses = memory_zeroed(p->nodes, sizeof(int));
+    w->is_base = memory_zeroed(p->nodes, 1);
     w->first = filled(p->nodes, INT_MAX);
     w->cost = memory_zeroed(p->nodes, 1);
     w->depth = memory_zeroed(p->nodes, 1);
@@ -81,7 +85,7 @@ static lb_status allocate(plan *p, struct work *w)
     w->item_locals = memory_zeroed(items, sizeof(int));
     w->item_block = filled(items, -1);
     w->target_block = filled(terms, -1);
-    bool ok = p->is_local && p->home && p->number && p->block_start && p->target_id && w->uses && w->first &&
+    bool ok = p->is_local && p->home && p->number && p->block_start && p->target_id && w->uses && w->is_base && w->first &&
               w->cost && w->depth && w->size && w->item_locals && w->item_block && w->target_block;
     return ok ? LB_OK : LB_E_NOMEM;
 }
@@ -103,6 +107,15 @@ static void use(struct work *w, expression e, int item)
         w->first[e] = item;
 }
 
+/* How often the text of a power repeats its base: x^3 is x*x*x. */
+static int repeats(const expression_graph *g, const expression_node *node)
+{
+    double order;
+    bool is_whole = node->kind == EXPRESSION_POWER && expression_is_number(g, node->right, &order) &&
+                    order == floor(order) && order != 0 && fabs(order) <= PLAN_POWER_IN_PLACE;
+    return is_whole ? (int)fabs(order) : 1;
+}
+
 static void count_uses(const plan *p, struct work *w)
 {
     const sums *s = p->sums;
@@ -117,6 +130,7 @@ static void count_uses(const plan *p, struct work *w)
         use(w, node->left, w->first[e]);
         if (node->right >= 0)
             use(w, node->right, w->first[e]);
+        w->is_base[node->left] |= repeats(w->graph, node) > 1;
     }
 }
 
@@ -140,15 +154,6 @@ static int own_cost(const expression_graph *g, const expression_node *node)
     }
 }
 
-/* How often the text of a power repeats its base: x^3 is x*x*x. */
-static int repeats(const expression_graph *g, const expression_node *node)
-{
-    double order;
-    if (node->kind == EXPRESSION_POWER && expression_is_number(g, node->right, &order) && fabs(order) <= 4)
-        return 4;
-    return 1;
-}
-
 static unsigned char at_most_255(int value)
 {
     return (unsigned char)(value < 255 ? value : 255);
@@ -165,7 +170,8 @@ static void choose_locals(const plan *p, struct work *w)
         int depth = 1 + (w->depth[node->left] > w->depth[right] ? w->depth[node->left] : w->depth[right]);
         int size = repeats(w->graph, node) * w->size[node->left] + (node->right >= 0 ? w->size[right] : 0);
         int cost = own_cost(w->graph, node) + w->cost[node->left] + (node->right >= 0 ? w->cost[right] : 0);
-        bool is_worth_it = (w->uses[e] > 1 && cost > 1) || depth > DEEPEST || size > LONGEST;
+        bool is_again = (w->uses[e] > 1 && cost > 1) || (w->is_base[e] && cost > 0);
+        bool is_worth_it = is_again || depth > DEEPEST || size > LONGEST;
         if (is_worth_it || w->is_defined[e]) {
             p->is_local[e] = 1;
             w->item_locals[w->first[e]]++;

@@ -8,6 +8,7 @@
 
 enum {
     PLAN_STATEMENTS = 48,    /* in one block */
+    PLAN_POWER_IN_PLACE = 4, /* powers up to this one are written as x*x*x*x */
     PLAN_NOWHERE = -1,       /* home of what is not needed */
     PLAN_SHARED = -2         /* home of what several blocks need: an array computed before them */
 };

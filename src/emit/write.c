@@ -11,8 +11,6 @@
 
 #include "emit/spell.h"
 
-enum { HIGHEST_IN_PLACE = 4 }; /* powers written as x*x*x*x */
-
 static bool is_local(const writer *w, expression e)
 {
     return w->plan->is_local[e];
@@ -65,7 +63,7 @@ static void write_call(writer *w, const char *function, expression a, expression
 /* base^order, order > 0 */
 static void write_whole_power(writer *w, expression base, int order)
 {
-    if (order > HIGHEST_IN_PLACE) {
+    if (order > PLAN_POWER_IN_PLACE) {
         w->uses_whole_power[order] = true;
         buffer_printf(w->out, "power_%d(", order);
         write_expression(w, base, WRITE_SUM);
@@ -90,7 +88,7 @@ static bool is_whole_power(const writer *w, const expression_node *node, int *or
 
 static void write_divisor(writer *w, expression base, int order)
 {
-    bool is_enclosed = order > 1 && order <= HIGHEST_IN_PLACE;
+    bool is_enclosed = order > 1 && order <= PLAN_POWER_IN_PLACE;
     if (order == 1) {
         write_expression(w, base, WRITE_OPERAND);
         return;
@@ -137,7 +135,7 @@ static write_place binding(const writer *w, const expression_node *node)
         return WRITE_TERM;
     case EXPRESSION_POWER:
         if (is_whole_power(w, node, &order))
-            return order < 0 ? WRITE_TERM : order <= HIGHEST_IN_PLACE ? WRITE_FACTOR : WRITE_OPERAND;
+            return order < 0 ? WRITE_TERM : order <= PLAN_POWER_IN_PLACE ? WRITE_FACTOR : WRITE_OPERAND;
         return WRITE_OPERAND;
     default:
         return WRITE_OPERAND;
@@ -209,6 +207,19 @@ static void write_binary(writer *w, const expression_node *node)
     }
 }
 
+static void write_slope(writer *w, const expression_node *node)
+{
+    double n;
+    w->uses_math = true;
+    if (expression_is_number(w->graph, node->right, &n) && n == 0.5) {
+        w->uses_root_slope = true;
+        write_call(w, "root_slope", node->left, EXPRESSION_NONE);
+    } else {
+        w->uses_slope = true;
+        write_call(w, "real_slope", node->left, node->right);
+    }
+}
+
 static void write_node(writer *w, const expression_node *node)
 {
     switch (node->kind) {
@@ -233,8 +244,7 @@ static void write_node(writer *w, const expression_node *node)
         write_power(w, node);
         break;
     case EXPRESSION_SLOPE:
-        w->uses_slope = w->uses_math = true;
-        write_call(w, "real_slope", node->left, node->right);
+        write_slope(w, node);
         break;
     case EXPRESSION_POWER_LOG:
         w->uses_power_log = w->uses_math = true;
@@ -311,6 +321,10 @@ void write_helpers(const writer *w, buffer *out)
         buffer_append(out, "/* The square root of x, 0 below zero. */\n"
                            "static double real_root(double x)\n{\n"
                            "    return x < 0.0 ? 0.0 : sqrt(x);\n}\n\n");
+    if (w->uses_root_slope)
+        buffer_append(out, "/* The derivative of the square root of x, 0 where it is infinite or undefined. */\n"
+                           "static double root_slope(double x)\n{\n"
+                           "    return x <= 0.0 ? 0.0 : 0.5/sqrt(x);\n}\n\n");
     if (w->uses_power)
         buffer_append(out, "/* x^n, 0 where x is negative and n not whole. */\n"
                            "static double real_power(double x, double n)\n{\n"

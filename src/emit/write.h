@@ -19,7 +19,7 @@ typedef struct writer {
     /* Used by the function being written. */
     bool uses_x, uses_k, uses_shared;
     /* Used by anything so far. */
-    bool uses_math, uses_root, uses_power, uses_slope, uses_power_log;
+    bool uses_math, uses_root, uses_root_slope, uses_power, uses_slope, uses_power_log;
     bool uses_whole_power[WRITE_HIGHEST_POWER + 1];
 } writer;
 

@@ -89,6 +89,12 @@ static double real_root(double x)
     return x < 0.0 ? 0.0 : sqrt(x);
 }
 
+/* The derivative of the square root of x, 0 where it is infinite or undefined. */
+static double root_slope(double x)
+{
+    return x <= 0.0 ? 0.0 : 0.5/sqrt(x);
+}
+
 /* x^n, 0 where x is negative and n not whole. */
 static double real_power(double x, double n)
 {
@@ -162,15 +168,15 @@ void tank_jacobian_sparse(double t, const double x[], const double k[], double v
     const double c8 = 1.0/k[1];
     const double s9 = real_slope(x[3], k[7]);
 
-    const double dv0_dx0 = (k[4] - s4)/s3;             /* R1 by [S] */
-    const double dv0_dx2 = -s4*k[5]/k[6]/s3;           /* R1 by [I] */
-    const double dv1_dx1 = 2.0*k[9]*x[1];              /* R2.forward by [P] */
-    const double dv2_dx2 = k[9]/k[10];                 /* R2.reverse by [I] */
+    const double dv0_dx0 = (k[4] - s4)/s3;        /* R1 by [S] */
+    const double dv0_dx2 = -s4*k[5]/k[6]/s3;      /* R1 by [I] */
+    const double dv1_dx1 = 2.0*k[9]*x[1];         /* R2.forward by [P] */
+    const double dv2_dx2 = k[9]/k[10];            /* R2.reverse by [I] */
     const double dv3_dx0 = k[11]*real_power(k[0], k[12])*exp(-k[13]/(8.31446261815324*k[0]))*k[2];  /* R3 by [S] */
-    const double dv4_dx0 = d_kcat*x[4];                /* R4 by [S] */
-    const double dv4_dx4 = d_kcat*x[0];                /* R4 by [E] */
+    const double dv4_dx0 = d_kcat*x[4];           /* R4 by [S] */
+    const double dv4_dx4 = d_kcat*x[0];           /* R4 by [E] */
     const double dv5_dx3 = (d_kcat*s9 - d_kcat*s6/s7*s9)/s7;  /* R5 by [Br-] */
-    const double dv6_dx2 = 0.1*real_slope(x[2], 0.5);  /* R6 by [I] */
+    const double dv6_dx2 = 0.1*root_slope(x[2]);  /* R6 by [I] */
 
     values[0] = -dv0_dx0 - dv3_dx0 - dv4_dx0 - c8;  /* [S] by [S] */
     values[1] = dv0_dx0;                            /* [P] by [S] */
@@ -202,15 +208,15 @@ void tank_jacobian(double t, const double x[], const double k[], double J[])
     const double c8 = 1.0/k[1];
     const double s9 = real_slope(x[3], k[7]);
 
-    const double dv0_dx0 = (k[4] - s4)/s3;             /* R1 by [S] */
-    const double dv0_dx2 = -s4*k[5]/k[6]/s3;           /* R1 by [I] */
-    const double dv1_dx1 = 2.0*k[9]*x[1];              /* R2.forward by [P] */
-    const double dv2_dx2 = k[9]/k[10];                 /* R2.reverse by [I] */
+    const double dv0_dx0 = (k[4] - s4)/s3;        /* R1 by [S] */
+    const double dv0_dx2 = -s4*k[5]/k[6]/s3;      /* R1 by [I] */
+    const double dv1_dx1 = 2.0*k[9]*x[1];         /* R2.forward by [P] */
+    const double dv2_dx2 = k[9]/k[10];            /* R2.reverse by [I] */
     const double dv3_dx0 = k[11]*real_power(k[0], k[12])*exp(-k[13]/(8.31446261815324*k[0]))*k[2];  /* R3 by [S] */
-    const double dv4_dx0 = d_kcat*x[4];                /* R4 by [S] */
-    const double dv4_dx4 = d_kcat*x[0];                /* R4 by [E] */
+    const double dv4_dx0 = d_kcat*x[4];           /* R4 by [S] */
+    const double dv4_dx4 = d_kcat*x[0];           /* R4 by [E] */
     const double dv5_dx3 = (d_kcat*s9 - d_kcat*s6/s7*s9)/s7;  /* R5 by [Br-] */
-    const double dv6_dx2 = 0.1*real_slope(x[2], 0.5);  /* R6 by [I] */
+    const double dv6_dx2 = 0.1*root_slope(x[2]);  /* R6 by [I] */
 
     J[0] = -dv0_dx0 - dv3_dx0 - dv4_dx0 - c8;  /* [S] by [S] */
     J[1] = dv0_dx0;                            /* [P] by [S] */
