@@ -477,15 +477,42 @@ START_TEST(test_harmonic_oscillator_is_a_centre)
 END_TEST
 
 /* Damping that falls with the square of the amplitude has closed orbits, to any
- * tolerance, where the amplitude is small enough; damping by 1e-10 has them nowhere. */
+ * tolerance, where the amplitude is small enough; damping by 1e-10 has them nowhere, and
+ * by 1e-12 neither (growth, there).  The third follows a species besides, so that the start does
+ * not lie in the plane of the motion. */
 START_TEST(test_weak_damping_is_no_centre)
 {
     static const char *const texts[] = {
         "units none\nsigned X, Y\n[X]0 = 1\n-> X, v = [Y]\n-> Y, v = -[X] - 1e-5*[X]^2*[Y]\n",
         "units none\nsigned X, Y\n[X]0 = 1\n-> X, v = [Y]\n-> Y, v = -[X] - 1e-10*[Y]\n",
+        "units none\nsigned X, Y, W\n[X]0 = 1\n-> X, v = [Y]\n-> Y, v = -[X] - 1e-5*[X]^2*[Y]\n"
+        "-> W, v = [X]^2 - [W]\n",
+        LOTKA_VOLTERRA "2 X -> X, k = 1e-11\n",
+        "units none\nsigned X, Y\n[X]0 = 1\n-> X, v = [Y]\n-> Y, v = -[X] + 1e-12*[Y]\n",
     };
     bench b;
     find_in(&b, texts[_i], CYCLE_UNDECIDED);
+    bench_close(&b);
+}
+END_TEST
+
+START_TEST(test_method_says_what_was_done)
+{
+    bench b;
+    lb_cycle *cycle = NULL;
+    find_in(&b, LOTKA_VOLTERRA, CYCLE_CENTRE);
+    ck_assert(strstr(b.report.cycle->method, "without a drift") && strstr(b.report.cycle->method, "closed again"));
+    bench_close(&b);
+    find_in(&b, BRUSSELATOR("3"), CYCLE_CLOSED);
+    ck_assert(strstr(b.report.cycle->method, "confirmed") && !strstr(b.report.cycle->method, "drift"));
+    bench_close(&b);
+    /* Closed on demand, and confirmed or not: the words go with the number. */
+    bench_open(&b, LOTKA_VOLTERRA);
+    ck_assert_int_eq(cycle_close(b.ev, b.x, 6.6, NULL, &cycle, NULL), LB_OK);
+    ck_assert_ptr_nonnull(cycle);
+    ck_assert_int_eq(strstr(cycle->method, "confirmed") != NULL, isfinite(cycle->confirmed) != 0);
+    ck_assert(!strstr(cycle->method, "drift"));
+    lb_cycle_free(cycle);
     bench_close(&b);
 }
 END_TEST
@@ -600,7 +627,7 @@ START_TEST(test_repelling_cycle_is_closed_but_not_stable)
 END_TEST
 
 /* A cycle so weak that its multiplier is one within error stands alone all the same. */
-START_TEST(test_lone_neutral_orbit_is_no_centre)
+START_TEST(test_lone_otherorbit_is_no_centre)
 {
     bench b;
     find_in(&b, "units none\nsigned X, Y\n[X]0 = 1\n-> X, v = -[Y] + 5e-9*[X]*(1 - [X]^2 - [Y]^2)\n"
@@ -712,14 +739,15 @@ Suite *cycle_suite(void)
     tcase_set_timeout(other, 60);
     tcase_add_test(other, test_lotka_volterra_is_a_centre_with_the_period_of_its_start);
     tcase_add_test(other, test_harmonic_oscillator_is_a_centre);
-    tcase_add_loop_test(other, test_weak_damping_is_no_centre, 0, 2);
+    tcase_add_test(other, test_method_says_what_was_done);
+    tcase_add_loop_test(other, test_weak_damping_is_no_centre, 0, 5);
     tcase_add_test(other, test_centre_with_a_driven_species_is_a_centre);
     tcase_add_loop_test(other, test_growth_is_unbounded, 0, 3);
     tcase_add_loop_test(other, test_chaos_is_undecided, 0, 2);
     tcase_add_test(other, test_torus_is_undecided);
     tcase_add_test(other, test_heteroclinic_cycle_is_undecided);
     tcase_add_test(other, test_rest_on_an_invariant_face);
-    tcase_add_test(other, test_lone_neutral_orbit_is_no_centre);
+    tcase_add_test(other, test_lone_otherorbit_is_no_centre);
     suite_add_tcase(suite, other);
     TCase *demand = tcase_create("on demand");
     tcase_set_timeout(demand, 120);

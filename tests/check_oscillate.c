@@ -151,6 +151,17 @@ START_TEST(test_lotka_volterra_is_a_centre)
 }
 END_TEST
 
+/* An orbit that comes close to the axes: what lies a tenth of its size further out would be
+ * below zero, and run away. */
+START_TEST(test_wide_centre_is_a_centre)
+{
+    bench b;
+    solve(&b, "units none\n[A] = 1\n[X]0 = 20\n[Y]0 = 1\nA + X -> 2 X, k = 1\nX + Y -> 2 Y, k = 1\nY -> P, k = 1\n", &given);
+    assert_verdict(&b, LB_IS_CENTRE);
+    close_bench(&b);
+}
+END_TEST
+
 /* Without prey the start is on an invariant face; the centre is beside it. */
 START_TEST(test_centre_is_found_from_a_start_without_prey)
 {
@@ -417,6 +428,7 @@ Suite *oscillate_suite(void)
     tcase_add_test(at, test_start_at_the_unstable_state_is_no_excuse);
     tcase_add_loop_test(at, test_hard_excitation_is_found_from_the_spread, 0, 2);
     tcase_add_test(at, test_lotka_volterra_is_a_centre);
+    tcase_add_test(at, test_wide_centre_is_a_centre);
     tcase_add_test(at, test_centre_is_found_from_a_start_without_prey);
     tcase_add_loop_test(at, test_what_has_no_cycle_is_not_found, 0, 6);
     tcase_add_test(at, test_cycle_in_a_class_with_a_conservation_law);

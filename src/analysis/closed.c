@@ -227,7 +227,27 @@ static lb_status fill(const closed_orbit *c, lb_cycle *cycle, lb_error *err)
     return LB_OK;
 }
 
-lb_status closed_record(const closed_orbit *c, double confirmed, lb_cycle **out, lb_error *err)
+/* What was done, in words. */
+static const char *method_text(bool is_stiff, bool is_family, bool is_confirmed)
+{
+    if (is_family && is_confirmed)
+        return is_stiff ? "Newton shooting with a stiff Rosenbrock method, from the start and to both sides of its "
+                          "orbit, each followed for several turns without a drift; closed again at another tolerance"
+                        : "Newton shooting with an explicit Runge-Kutta method, from the start and to both sides of "
+                          "its orbit, each followed for many turns without a drift; closed again with a stiff one";
+    if (is_family)
+        return is_stiff ? "Newton shooting with a stiff Rosenbrock method, from the start and to both sides of its "
+                          "orbit, each followed for several turns without a drift"
+                        : "Newton shooting with an explicit Runge-Kutta method, from the start and to both sides of "
+                          "its orbit, each followed for many turns without a drift";
+    if (!is_confirmed)
+        return is_stiff ? "Newton shooting with a stiff Rosenbrock method"
+                        : "Newton shooting with an explicit Runge-Kutta method";
+    return is_stiff ? "Newton shooting with a stiff Rosenbrock method, confirmed at another tolerance"
+                    : "Newton shooting with an explicit Runge-Kutta method, confirmed with a stiff one";
+}
+
+lb_status closed_record(const closed_orbit *c, bool is_family, double confirmed, lb_cycle **out, lb_error *err)
 {
     lb_cycle *cycle = memory_zeroed(1, sizeof *cycle);
     *out = NULL;
@@ -238,9 +258,7 @@ lb_status closed_record(const closed_orbit *c, double confirmed, lb_cycle **out,
     cycle->closure = c->closure;
     cycle->confirmed = confirmed;
     cycle->steps = c->steps;
-    cycle->method = c->method == LB_METHOD_EXPLICIT
-                        ? "Newton shooting with an explicit Runge-Kutta method, confirmed with a stiff one"
-                        : "Newton shooting with a stiff Rosenbrock method, confirmed at another tolerance";
+    cycle->method = method_text(c->method == LB_METHOD_STIFF, is_family, isfinite(confirmed));
     lb_status status = fill(c, cycle, err);
     if (status == LB_OK)
         *out = cycle;

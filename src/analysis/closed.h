@@ -43,7 +43,8 @@ bool closed_is_fatal(lb_status status);
 /* Options to integrate along the orbit with its own method. */
 orbit_options closed_options(const closed_orbit *c, double tolerance, const lb_monitor *monitor);
 
-/* A public record of the orbit. */
-lb_status closed_record(const closed_orbit *c, double confirmed, lb_cycle **out, lb_error *err);
+/* A public record of the orbit, with what was done for it in words: is_family, it was found to
+ * be one of many; confirmed, see lb_cycle. */
+lb_status closed_record(const closed_orbit *c, bool is_family, double confirmed, lb_cycle **out, lb_error *err);
 
 #endif

@@ -3,23 +3,28 @@
  * A second path to the period: another tolerance, another method unless the orbit is
  * stiff, and a start pushed off the orbit.  And the question whether it stands alone:
  * where a multiplier is one within its error, closed orbits are sought on both sides
- * of it, at a distance that is held. */
+ * of it, at a distance that is held, and all three must hold their amplitude from turn
+ * to turn (drift.c). */
 #include "analysis/confirm.h"
 
 #include <float.h>
 #include <math.h>
 #include <string.h>
 
+#include "analysis/drift.h"
 #include "base/memory.h"
 #include "base/status.h"
+
+enum { MOST_STEPS = 20 };         /* of those that the closing took: an orbit beside it does not take many more */
 
 #define PUSH 0.02                 /* in amplitudes */
 #define WRONG_PERIOD 1e-3         /* relative */
 #define FEW_PERIODS 6             /* to wait for a trajectory to fall back, in a small system */
 #define OTHER_TOLERANCE 100       /* times the first one */
 #define FAMILY_STEP 0.1           /* in amplitudes */
+#define LEAST_FAMILY_STEP 1e-4
 #define FAMILY_TOLERANCE 1e-12
-#define FAMILY_CLOSURE 1e-11      /* in amplitudes: less damping than that per turn is not seen */
+#define FAMILY_CLOSURE 1e-11      /* in amplitudes */
 
 /* ---- A second path ------------------------------------------------------------------ */
 
@@ -161,25 +166,39 @@ static double family_closure(const closed_orbit *c)
     return fmax(FAMILY_CLOSURE, 1000 * DBL_EPSILON * worst);
 }
 
+/* x [n], y [rank]: the place `step` amplitudes along the neutral direction, or half as far and
+ * so on until it is inside. */
+static void step_aside(const closed_orbit *c, const double *direction, double step, double *y, double *x)
+{
+    do {
+        space_take(&c->s, c->x, y);
+        for (int i = 0; i < c->s.rank; i++)
+            y[i] += step * direction[i] * c->scale[space_state(&c->s, i)];
+        space_place(&c->s, y, x);
+        step *= 0.5;
+    } while (!space_is_inside(&c->s, x) && fabs(step) > LEAST_FAMILY_STEP);
+}
+
 /* Is there a closed orbit through the place `step` amplitudes along the neutral
- * direction?  The point is held there while it is closed: an orbit that stands
- * alone then leaves a residual. */
+ * direction, and does it hold its amplitude?  The point is held there while it is
+ * closed: an orbit that stands alone then leaves a residual. */
 static lb_status closes_beside(const closed_orbit *c, const double *direction, double step,
                                const lb_monitor *monitor, bool *closes, lb_error *err)
 {
     double *y = memory_array((size_t)(c->s.rank + c->s.n), sizeof *y), period = c->period;
     shooting shot = {.converged = false};
+    lb_answer holds = LB_UNDECIDED;
     *closes = false;
     if (!y)
         return status_no_memory(err);
     double *x = y + c->s.rank;
-    space_take(&c->s, c->x, y);
-    for (int i = 0; i < c->s.rank; i++)
-        y[i] += step * direction[i] * c->scale[space_state(&c->s, i)];
-    space_place(&c->s, y, x);
+    step_aside(c, direction, step, y, x);
     orbit_options options = closed_options(c, FAMILY_TOLERANCE, monitor);
+    options.max_steps = MOST_STEPS * (c->steps + 100);
     lb_status status = shooting_close(&c->s, x, &period, c->scale, direction, family_closure(c), &options, &shot, err);
-    *closes = status == LB_OK && shot.converged;
+    if (status == LB_OK && shot.converged)
+        status = drift_judge(c, x, period, monitor, &holds, err);
+    *closes = status == LB_OK && holds == LB_YES;
     shooting_clear(&shot);
     memory_free(y);
     return status;
@@ -197,8 +216,11 @@ lb_status confirm_is_family(const closed_orbit *c, const lb_monitor *monitor, bo
     if (!direction)
         return status_no_memory(err);
     bool closes = false;
+    lb_answer holds = LB_UNDECIDED;
     lb_status status = shooting_neutral(&c->shot, c->s.rank, direction, err);
     if (status == LB_OK)
+        status = drift_judge(c, c->x, c->period, monitor, &holds, err);
+    if (status == LB_OK && holds == LB_YES)
         status = closes_beside(c, direction, FAMILY_STEP, monitor, &closes, err);
     if (status == LB_OK && closes)
         status = closes_beside(c, direction, -FAMILY_STEP, monitor, &closes, err);

@@ -12,7 +12,8 @@ lb_status confirm_period(const closed_orbit *c, bool is_family, const lb_monitor
                          lb_error *err);
 
 /* Closed orbits on both sides of this one, held at a distance of a tenth of its
- * amplitude: it belongs to a family (a centre). */
+ * amplitude (less where that is outside), and no amplitude of the three that drifts:
+ * it belongs to a family (a centre). */
 lb_status confirm_is_family(const closed_orbit *c, const lb_monitor *monitor, bool *is_family, lb_error *err);
 
 #endif

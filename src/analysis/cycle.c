@@ -34,6 +34,9 @@ enum {
 #define LEAST_REPEAT 1e-7
 #define PERIOD_AGREES 1e-6        /* relative, between the two paths */
 #define IN_PLACE 1.5              /* factor by which the amplitudes of a neutral orbit may differ from the loop's */
+#define NEUTRAL 1e-5              /* a multiplier nearer to one does not fade */
+#define FADED 1e-12
+#define MOST_TURNS 200.0          /* to wait for it */
 #define FAR_FUTURE 1e100
 
 /* ---- Setting up ---------------------------------------------------------------------- */
@@ -136,7 +139,7 @@ static void complete(const explorer *e, double *x)
 static lb_status report_orbit(explorer *e, const closed_orbit *orbit, double confirmed, cycle_outcome outcome,
                               const char *why, lb_error *err)
 {
-    lb_status status = closed_record(orbit, confirmed, &e->report->cycle, err);
+    lb_status status = closed_record(orbit, outcome == CYCLE_CENTRE, confirmed, &e->report->cycle, err);
     if (status != LB_OK)
         return status;
     complete(e, e->report->cycle->x);
@@ -155,20 +158,69 @@ static bool is_in_place(const closed_orbit *orbit)
     return orbit->converged && orbit->growth > 1 / IN_PLACE && orbit->growth < IN_PLACE;
 }
 
-/* The orbit through x0 of a family.  In the plane there must be one; in more dimensions
- * x0 may lead to the family without lying on it, and the orbit at hand serves. */
-static lb_status report_centre(explorer *e, const closed_orbit *orbit, lb_error *err)
+/* Turns until what leads to the family, and does not lie on it, has faded. */
+static double turns_to_fade(const closed_orbit *orbit)
+{
+    double slowest = 0;
+    for (int i = 0; i < orbit->s.rank - 1; i++) {
+        double size = hypot(orbit->multipliers[i].re, orbit->multipliers[i].im);
+        if (size < 1 - NEUTRAL)
+            slowest = fmax(slowest, size);
+    }
+    return slowest > 0 ? fmin(ceil(log(FADED) / log(slowest)), MOST_TURNS) : 0;
+}
+
+/* Where x0 leads after that time, into x [n]: in the plane x0 itself. */
+static lb_status follow_start(explorer *e, const closed_orbit *orbit, double *x, lb_error *err)
+{
+    size_t n = (size_t)e->s.n;
+    double turns = orbit->s.rank > 2 ? fmax(1, turns_to_fade(orbit)) : 0;
+    memcpy(x, e->x0, n * sizeof *x);
+    if (turns == 0)
+        return LB_OK;
+    double *range = memory_array(2 * n, sizeof *range);
+    if (!range)
+        return status_no_memory(err);
+    orbit_options options = closed_options(orbit, e->closing_tolerance, e->options->monitor);
+    lb_status status = orbit_measure(&e->s, e->x0, turns * orbit->period, &options, range, range + n, x, NULL, err);
+    memory_free(range);
+    return status;
+}
+
+/* A steady state within the range of the orbit that attracts: what turns around it is on
+ * its way there, however slowly. */
+static lb_status turns_around_rest(explorer *e, const closed_orbit *orbit, bool *does, lb_error *err)
+{
+    rest *r = &e->rest;
+    for (int i = 0; i < e->s.n; i++)
+        e->scale[i] = e->s.system->core_index[i] < 0 ? e->s.base[i] : 0.5 * (orbit->low[i] + orbit->high[i]);
+    lb_status status = rest_near(r, &e->s, e->scale, e->reach, INFINITY, err);
+    *does = status == LB_OK && r->found && r->stable == LB_YES;
+    for (int k = 0; k < e->s.core && *does; k++) {
+        int i = e->s.system->core_state[k];
+        *does = r->x[i] >= orbit->low[i] && r->x[i] <= orbit->high[i];
+    }
+    return status;
+}
+
+/* The orbit through x0 of a family (in more than two dimensions: the one that x0 leads to
+ * first).  It must be there, of that size: a motion that has sunk to where its damping is
+ * no longer seen is not neutral. */
+static lb_status report_centre(explorer *e, double period, const double *x, lb_error *err)
 {
     const lb_monitor *monitor = e->options->monitor;
     double difference;
+    bool is_centre = false, sinks = false;
     closed_orbit own;
-    lb_status status = closed_find(&own, e->s.evaluator, e->x0, orbit->period, true, e->closing_tolerance, monitor,
-                                   err);
-    const closed_orbit *best = is_in_place(&own) ? &own : orbit;
-    if (status == LB_OK && (best == &own || e->s.rank > 2)) {
-        status = confirm_period(best, true, monitor, &difference, err);
+    lb_status status = closed_find(&own, e->s.evaluator, x, period, true, e->closing_tolerance, monitor, err);
+    if (status == LB_OK && is_in_place(&own))
+        status = confirm_is_family(&own, monitor, &is_centre, err);
+    if (status == LB_OK && is_centre)
+        status = turns_around_rest(e, &own, &sinks, err);
+    if (status == LB_OK && is_centre && !sinks) {
+        status = confirm_period(&own, true, monitor, &difference, err);
         if (status == LB_OK)
-            status = report_orbit(e, best, difference, CYCLE_CENTRE,
+            status = report_orbit(e, &own, difference, CYCLE_CENTRE,
                                   "closed orbits of several amplitudes: a centre", err);
     }
     closed_clear(&own);
@@ -189,7 +241,16 @@ static lb_status judge_orbit(explorer *e, const closed_orbit *orbit, lb_error *e
     if (!is_in_place(orbit))
         return LB_OK;
     lb_status status = confirm_is_family(orbit, monitor, &is_family, err);
-    return status == LB_OK && is_family ? report_centre(e, orbit, err) : status;
+    if (status != LB_OK || !is_family)
+        return status;
+    double *x = memory_array((size_t)e->s.n, sizeof *x);
+    if (!x)
+        return status_no_memory(err);
+    status = follow_start(e, orbit, x, err);
+    if (status == LB_OK)
+        status = report_centre(e, orbit->period, x, err);
+    memory_free(x);
+    return closed_is_fatal(status) ? status : LB_OK;
 }
 
 static lb_status try_to_close(explorer *e, int loops, lb_error *err)
@@ -349,7 +410,7 @@ lb_status cycle_close(lb_evaluator *evaluator, const double *x0, double period, 
     if (status == LB_OK && orbit.converged)
         status = confirm_period(&orbit, orbit.stable == LB_UNDECIDED, monitor, &confirmed, err);
     if (status == LB_OK && orbit.converged)
-        status = closed_record(&orbit, confirmed, out, err);
+        status = closed_record(&orbit, false, confirmed, out, err);
     closed_clear(&orbit);
     return status;
 }
