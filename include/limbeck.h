@@ -355,6 +355,40 @@ lb_status lb_steady_solve(const lb_system *system, const lb_steady_options *opti
                           lb_steady **out, lb_error *err);
 void lb_steady_free(lb_steady *steady);
 
+/* Where the steady states change in kind as one constant turns through its range. */
+typedef enum lb_special_kind { LB_FOLD, LB_HOPF } lb_special_kind;
+const char *lb_special_text(lb_special_kind kind);   /* "fold", "Hopf" */
+
+typedef struct lb_special {
+    lb_special_kind kind;
+    double value;            /* of the constant */
+    double *x;               /* [n] the state there; NAN where a species accumulates */
+    double omega;            /* of a Hopf point: the imaginary part of the pair; else 0 */
+} lb_special;
+
+typedef struct lb_along_options {
+    int constant;            /* it must have a range */
+    uint64_t seed;
+    const double *k;         /* [m] the other constants; NULL: the file's */
+    const lb_monitor *monitor;
+} lb_along_options;
+
+typedef struct lb_along {
+    int states;              /* n */
+    int constant;
+    double low, high;        /* its range */
+    size_t count;
+    lb_special *special;     /* [count] by rising value */
+    size_t branches, points; /* followed */
+    bool interrupted;
+} lb_along;
+
+/* Folds and Hopf points within the range, on the branches through the states that searches
+ * at several values find, each located to rounding.  Totals are those of the initial state
+ * at the constants.  LB_E_ARG when the constant has no range; LB_E_NOMEM. */
+lb_status lb_along_solve(const lb_system *system, const lb_along_options *options, lb_along **out, lb_error *err);
+void lb_along_free(lb_along *along);
+
 /* ---- Cycles and oscillation ---------------------------------------------- */
 
 typedef struct lb_cycle {
@@ -429,6 +463,7 @@ typedef struct lb_layout {
 /* Text for a person.  Each appends to out. */
 lb_status lb_text_check(const lb_network *network, const lb_layout *layout, lb_text *out);
 lb_status lb_text_steady(const lb_system *system, const lb_steady *steady, const lb_layout *layout, lb_text *out);
+lb_status lb_text_along(const lb_system *system, const lb_along *along, const lb_layout *layout, lb_text *out);
 lb_status lb_text_oscillate(const lb_system *system, const lb_oscillate *oscillate, const lb_layout *layout, lb_text *out);
 /* The one-page answer: what the mechanism is, what it conserves, where it rests, whether it oscillates. */
 lb_status lb_text_page(const lb_system *system, const lb_oscillate *oscillate, const lb_layout *layout, lb_text *out);
@@ -439,7 +474,9 @@ lb_status lb_csv_run(const lb_system *system, const lb_run *run, lb_text *out);
 lb_status lb_json_check(const lb_network *network, const lb_diagnostics *diagnostics, lb_text *out);
 /* error: why the run ended early, beside the rows so far; NULL when it did not. */
 lb_status lb_json_run(const lb_system *system, const lb_diagnostics *diagnostics, const lb_run *run, const lb_error *error, lb_text *out);
-lb_status lb_json_steady(const lb_system *system, const lb_diagnostics *diagnostics, const lb_steady *steady, lb_text *out);
+/* along: NULL where it was not asked. */
+lb_status lb_json_steady(const lb_system *system, const lb_diagnostics *diagnostics, const lb_steady *steady,
+                         const lb_along *along, lb_text *out);
 lb_status lb_json_oscillate(const lb_system *system, const lb_diagnostics *diagnostics, const lb_oscillate *oscillate, lb_text *out);
 /* The keys of check, steady and oscillate in one object. */
 lb_status lb_json_page(const lb_system *system, const lb_diagnostics *diagnostics, const lb_oscillate *oscillate, lb_text *out);

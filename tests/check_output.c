@@ -330,7 +330,7 @@ START_TEST(test_json_of_steady_has_the_promised_keys)
     static const char *const state_keys[] = {"x", "eigenvalues", "stable", "kind", "certified", NULL};
     solved s = solve_brusselator();
     lb_text *out = lb_text_new();
-    ck_assert_int_eq(lb_json_steady(s.system, NULL, s.oscillate->steady, out), LB_OK);
+    ck_assert_int_eq(lb_json_steady(s.system, NULL, s.oscillate->steady, NULL, out), LB_OK);
     json_t *root = parsed(out);
     assert_keys(root, common_keys);
     assert_keys(root, keys);

@@ -221,6 +221,7 @@ static bool apply(options *o, const option_spec *spec, const char *value)
         o->samples = (size_t)number;
         return true;
     case OPTION_NATIVE: o->native = true; return true;
+    case OPTION_ALONG: o->along = value; return true;
     case OPTION_SENSITIVITIES: o->sensitivities = true; return true;
     case OPTION_SECONDS: return read_positive(o, spec, value, most_seconds, &o->seconds);
     }

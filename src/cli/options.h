@@ -13,7 +13,7 @@ typedef struct command command;
 typedef enum option_id {
     OPTION_JSON, OPTION_SET, OPTION_SEED, OPTION_QUIET, OPTION_HELP, OPTION_VERSION,
     OPTION_UNTIL, OPTION_EVERY, OPTION_TOLERANCE, OPTION_OUTPUT, OPTION_NAME, OPTION_FOR,
-    OPTION_SCOPE, OPTION_SAMPLES, OPTION_SECONDS, OPTION_NATIVE, OPTION_SENSITIVITIES
+    OPTION_SCOPE, OPTION_SAMPLES, OPTION_SECONDS, OPTION_NATIVE, OPTION_SENSITIVITIES, OPTION_ALONG
 } option_id;
 
 typedef struct option_spec {
@@ -40,6 +40,7 @@ typedef struct options {
     size_t samples;                     /* 0: not given */
     double seconds;                     /* 0: not given */
     bool sensitivities;                 /* of steady states */
+    const char *along;                  /* name of a constant; NULL: not given */
     bool native;                        /* compile the model and load it */
     lb_error problem;                   /* what is wrong with the command line */
 } options;

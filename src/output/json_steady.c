@@ -87,11 +87,39 @@ void json_put_steady(json_writer *w, const lb_system *system, const lb_steady *s
     json_put(w, w->root, "interrupted", json_boolean(steady->interrupted));
 }
 
-lb_status lb_json_steady(const lb_system *system, const lb_diagnostics *diagnostics, const lb_steady *steady, lb_text *out)
+static json_t *special_value(json_writer *w, const lb_network *net, const lb_special *special)
+{
+    json_t *object = json_object();
+    json_put(w, object, "kind", json_text(lb_special_text(special->kind)));
+    json_put(w, object, "value", json_number(special->value));
+    json_put(w, object, "x", json_states(w, net, special->x));
+    json_put(w, object, "omega", special->kind == LB_HOPF ? json_number(special->omega) : json_null());
+    return object;
+}
+
+static void put_along(json_writer *w, const lb_network *net, const lb_along *along)
+{
+    json_t *list = json_array(), *object = json_object();
+    for (size_t i = 0; i < along->count; i++)
+        json_add(w, list, special_value(w, net, &along->special[i]));
+    json_put(w, object, "constant", json_text(lb_network_constant_name(net, along->constant)));
+    json_put(w, object, "low", json_number(along->low));
+    json_put(w, object, "high", json_number(along->high));
+    json_put(w, object, "branches", json_count(along->branches));
+    json_put(w, object, "points", json_count(along->points));
+    json_put(w, object, "interrupted", json_boolean(along->interrupted));
+    json_put(w, w->root, "special", list);
+    json_put(w, w->root, "along", object);
+}
+
+lb_status lb_json_steady(const lb_system *system, const lb_diagnostics *diagnostics, const lb_steady *steady,
+                         const lb_along *along, lb_text *out)
 {
     json_writer w;
     json_begin(&w, "steady", system->network->file, diagnostics);
     json_put_steady(&w, system, steady);
+    if (along)
+        put_along(&w, system->network, along);
     json_put_engine(&w, system);
     return json_finish(&w, out);
 }
