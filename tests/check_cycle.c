@@ -404,6 +404,21 @@ START_TEST(test_slow_focus_is_rest)
 }
 END_TEST
 
+/* Prey alone grow to what they can, a saddle once there are predators; so large a state is
+ * held to the tolerance only, and never still. */
+START_TEST(test_rest_at_a_saddle_that_attracts_its_face_is_rest)
+{
+    bench b;
+    bench_open(&b, LOTKA_VOLTERRA "2 X -> X, k = 1e-3\n");
+    b.x[lb_network_find_state(b.net, "X")] = 2e-5;
+    b.x[lb_network_find_state(b.net, "Y")] = 0;
+    bench_find(&b, NULL);
+    assert_outcome(&b, CYCLE_SETTLED);
+    assert_close(b.report.rest[lb_network_find_state(b.net, "X")], 1000, 1e-6, 0);
+    bench_close(&b);
+}
+END_TEST
+
 START_TEST(test_relaxation_to_a_node_has_no_swings)
 {
     bench b;
@@ -731,6 +746,7 @@ Suite *cycle_suite(void)
     tcase_add_test(rest, test_noise_is_no_swing);
     tcase_add_test(rest, test_slow_focus_is_rest);
     tcase_add_test(rest, test_relaxation_to_a_node_has_no_swings);
+    tcase_add_test(rest, test_rest_at_a_saddle_that_attracts_its_face_is_rest);
     tcase_add_test(rest, test_degenerate_rest_is_rest);
     tcase_add_test(rest, test_degenerate_start_at_rest_is_rest);
     tcase_add_test(rest, test_transient_oscillation_of_a_closed_mechanism);

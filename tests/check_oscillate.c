@@ -126,7 +126,7 @@ END_TEST
  * unstable one, or far. */
 START_TEST(test_hard_excitation_is_found_from_the_spread)
 {
-    static const char *const starts[] = {"0.1", "0.01"};
+    static const char *const starts[] = {"0.1", "0.01", "1e-5", "1e4"};
     char text[400];
     bench b;
     snprintf(text, sizeof text,
@@ -147,6 +147,40 @@ START_TEST(test_lotka_volterra_is_a_centre)
     solve(&b, "units none\n[A] = 1\n[X]0 = 2\n[Y]0 = 1\nA + X -> 2 X, k = 1\nX + Y -> 2 Y, k = 1\nY -> P, k = 1\n", &given);
     assert_verdict(&b, LB_IS_CENTRE);
     assert_close(b.answer->cycle->period, 6.608482671235056, 1e-8, 0);
+    close_bench(&b);
+}
+END_TEST
+
+/* Radii sqrt(1 -+ sqrt(1/2)): the unstable cycle is wide. */
+START_TEST(test_harder_excitation_is_found)
+{
+    bench b;
+    solve(&b, "units none\nsigned x, y\n[x]0 = 0.01\n"
+          "-> x, v = -0.5*[x] - [y] + 2*[x]*([x]^2 + [y]^2) - [x]*([x]^2 + [y]^2)^2\n"
+          "-> y, v = -0.5*[y] + [x] + 2*[y]*([x]^2 + [y]^2) - [y]*([x]^2 + [y]^2)^2\n", &given);
+    assert_verdict(&b, LB_OSCILLATES);
+    assert_close(b.answer->cycle->high[0], sqrt(1 + sqrt(0.5)), 1e-8, 0);
+    close_bench(&b);
+}
+END_TEST
+
+/* Damping too weak to wait for: the swings are reported, and nothing is said to move on,
+ * neither from the start nor from any other.  By the real part of the eigenvalues each swing
+ * loses a share of 1e-4 pi (linear; Brusselator) or 1e-3 pi (Lotka), more where it is wide. */
+START_TEST(test_slow_ringing_is_a_transient)
+{
+    static const struct { const char *text; double loss; } cases[] = {
+        {"units none\nsigned x, y\n[x]0 = 1\n-> x, v = [y]\n-> y, v = -[x] - 1e-4*[y]\n", 1e-4},
+        {"units none\n[A] = 1\n[X]0 = 2\n[Y]0 = 1\nA + X -> 2 X, k = 1\nX + Y -> 2 Y, k = 1\nY -> P, k = 1\n"
+         "2 X -> X, k = 1e-3\n", 1e-3},
+        {BRUSSELATOR("1.9999", ""), 1e-4},
+    };
+    bench b;
+    solve(&b, cases[_i].text, &given);
+    assert_verdict(&b, LB_NOT_FOUND);
+    ck_assert(!b.answer->keeps_moving);
+    ck_assert_int_ge(b.answer->swings, 1000);
+    ck_assert(b.answer->swing_decay < 1 - 0.9 * cases[_i].loss * 3.14159265358979 && b.answer->swing_decay > 0.99);
     close_bench(&b);
 }
 END_TEST
@@ -426,9 +460,11 @@ Suite *oscillate_suite(void)
     tcase_add_test(at, test_brusselator_oscillates_beyond_its_hopf_point);
     tcase_add_test(at, test_brusselator_below_its_hopf_point_only_rings);
     tcase_add_test(at, test_start_at_the_unstable_state_is_no_excuse);
-    tcase_add_loop_test(at, test_hard_excitation_is_found_from_the_spread, 0, 2);
+    tcase_add_loop_test(at, test_hard_excitation_is_found_from_the_spread, 0, 4);
     tcase_add_test(at, test_lotka_volterra_is_a_centre);
     tcase_add_test(at, test_wide_centre_is_a_centre);
+    tcase_add_test(at, test_harder_excitation_is_found);
+    tcase_add_loop_test(at, test_slow_ringing_is_a_transient, 0, 3);
     tcase_add_test(at, test_centre_is_found_from_a_start_without_prey);
     tcase_add_loop_test(at, test_what_has_no_cycle_is_not_found, 0, 6);
     tcase_add_test(at, test_cycle_in_a_class_with_a_conservation_law);

@@ -93,6 +93,13 @@ lb_status ending_by_rest(explorer *e, lb_error *err)
         return status;
     if (r->found && r->distance < AT_REST && r->stable == LB_YES)
         return settle(e, r->x, false, "it comes to rest at a stable steady state", err);
+    if (r->found && r->distance < AT_REST && r->stable == LB_NO) {
+        bool holds;
+        status = rest_holds_on_face(r, &e->s, x, &holds, err);
+        if (status != LB_OK || holds)
+            return status == LB_OK ? settle(e, r->x, false, "it comes to rest on a face that it cannot leave", err)
+                                   : status;
+    }
     return look_for_stillness(e, err);
 }
 

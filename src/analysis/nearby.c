@@ -15,7 +15,12 @@
 #include "base/memory.h"
 #include "base/status.h"
 
-enum { SPREAD_SCALES = 3 };       /* starts lie within one, two and three decades in turn */
+enum { SPREAD_SCALES = 3, WIDE_SCALES = 6 };
+
+/* Decades that starts lie within, in turn; those of the second row are for signed variables
+ * only, whose size at a steady state says little about where a cycle may be. */
+static const int spread_decades[SPREAD_SCALES] = {1, 2, 3};
+static const int wide_decades[WIDE_SCALES] = {4, -1, 5, -2, 6, -3};
 
 #define PUSH 0.01                 /* relative to the species' size, along an unstable direction */
 #define PUSH_NEUTRAL 0.1
@@ -125,6 +130,15 @@ done:
     return status;
 }
 
+uint64_t nearby_starts(const lb_system *system)
+{
+    const lb_network *net = system->network;
+    for (int k = 0; k < system->core; k++)
+        if (net->species[net->state_species[system->core_state[k]]].is_signed)
+            return NEARBY_SPREAD + WIDE_SCALES;
+    return NEARBY_SPREAD;
+}
+
 lb_status nearby_spread(lb_evaluator *evaluator, const double *x, const double *x0, uint64_t seed, uint64_t i,
                         double *start, lb_error *err)
 {
@@ -132,14 +146,15 @@ lb_status nearby_spread(lb_evaluator *evaluator, const double *x, const double *
     lb_status status = pusher_init(&p, evaluator, x, x0, err);
     if (status == LB_OK) {
         const lb_network *net = p.s.system->network;
-        double decades = (double)(1 + i % SPREAD_SCALES);
+        int decades = i < NEARBY_SPREAD ? spread_decades[i % SPREAD_SCALES]
+                                        : wide_decades[(i - NEARBY_SPREAD) % WIDE_SCALES];
         sample_point(seed, i, p.s.rank, p.direction);
         for (int j = 0; j < p.s.rank; j++) {
             int state = space_state(&p.s, j);
             double u = 2 * p.direction[j] - 1;
             bool is_signed = net->species[net->state_species[state]].is_signed;
             p.direction[j] = is_signed ? u * pow(10, decades) * p.size[state]
-                                       : p.size[state] * pow(10, u * decades) - p.x[state];
+                                       : p.size[state] * pow(10, u * (i < NEARBY_SPREAD ? decades : 1)) - p.x[state];
         }
         space_lift(&p.s, p.direction, p.change);
         double fraction = 1;

@@ -21,8 +21,7 @@
 #include "limbeck.h"
 
 enum {
-    SPREAD = 9,                   /* starts around the steady states */
-    SPREAD_FEW = 3,               /* the same from LARGE states up, and where some trajectory never rests */
+    SPREAD_FEW = 3,               /* starts around the steady states from LARGE states up, and where some trajectory never rests */
     LARGE = 40,
     SPREAD_RETURNS = 500,
     SPREAD_STEPS = 40000
@@ -127,14 +126,15 @@ static lb_status finish(const hunt *h, lb_error *err)
 /* Around the steady states in turn, or around x0 where there is none. */
 static lb_status hunt_spread(hunt *h, const lb_steady *steady, const double *x0, uint64_t seed, lb_error *err)
 {
-    size_t starts = steady->states < LARGE && !h->answer->keeps_moving ? SPREAD : SPREAD_FEW;
+    bool is_cheap = steady->states < LARGE && !h->answer->keeps_moving;
+    uint64_t starts = is_cheap ? nearby_starts(evaluator_system(h->evaluator)) : SPREAD_FEW;
     double *x = memory_array((size_t)steady->states, sizeof *x);
     if (!x)
         return status_no_memory(err);
     h->options.max_returns = h->answer->keeps_moving ? h->options.max_returns : SPREAD_RETURNS;
     h->options.max_steps = SPREAD_STEPS;
     lb_status status = LB_OK;
-    for (size_t i = 0; i < starts && status == LB_OK && h->answer->verdict == LB_NOT_FOUND; i++) {
+    for (uint64_t i = 0; i < starts && status == LB_OK && h->answer->verdict == LB_NOT_FOUND; i++) {
         const double *around = steady->count ? steady->state[i % steady->count].x : x0;
         status = nearby_spread(h->evaluator, around, x0, seed, i, x, err);
         if (status == LB_OK)

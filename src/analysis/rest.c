@@ -164,6 +164,23 @@ static lb_status growth_rate(rest *r, const space *s, const double *x, const dou
     return status;
 }
 
+lb_status rest_holds_on_face(rest *r, const space *s, const double *x, bool *holds, lb_error *err)
+{
+    double *f = r->work + matrices(s), rate;
+    bool is_on_face = false;
+    *holds = false;
+    lb_rhs(s->evaluator, x, f);
+    for (int k = 0; k < s->core; k++) {
+        int i = s->system->core_state[k];
+        is_on_face = is_on_face || (x[i] == 0 && f[i] == 0 && s->base[i] == 0);
+    }
+    if (!is_on_face)
+        return LB_OK;
+    lb_status status = growth_rate(r, s, x, f, &rate, err);
+    *holds = status == LB_OK && rate <= 0;
+    return status;
+}
+
 lb_status rest_is_still(rest *r, const space *s, const double *x, const double *reach, double elapsed,
                         double fraction, bool *is_still, double *rate, lb_error *err)
 {

@@ -37,4 +37,8 @@ bool rest_is_balanced(rest *r, const space *s, const double *x);
 lb_status rest_is_still(rest *r, const space *s, const double *x, const double *reach, double elapsed,
                         double fraction, bool *is_still, double *rate, lb_error *err);
 
+/* Does x [n], next to a steady state that is not stable, lie on a face that it cannot leave
+ * (species that were zero from the start), with nothing on the face that grows? */
+lb_status rest_holds_on_face(rest *r, const space *s, const double *x, bool *holds, lb_error *err);
+
 #endif
