@@ -1,11 +1,11 @@
 # Files are replaced whole, links and permissions stay, folders are made.
 mkdir "$SCRATCH/real"
-echo old >"$SCRATCH/real/course.csv"
-chmod 640 "$SCRATCH/real/course.csv"
-ln -s real/course.csv "$SCRATCH/course.csv"
-try run networks/brusselator.mech --until 1 --every 0.5 -o "$SCRATCH/course.csv"
-ls -l "$SCRATCH/real/course.csv" | cut -c 1-10
-[ -L "$SCRATCH/course.csv" ] && head -n 1 "$SCRATCH/course.csv"
+echo old >"$SCRATCH/real/rows.csv"
+chmod 640 "$SCRATCH/real/rows.csv"
+ln -s real/rows.csv "$SCRATCH/rows.csv"
+try run networks/brusselator.mech --until 1 --every 0.5 -o "$SCRATCH/rows.csv"
+ls -l "$SCRATCH/real/rows.csv" | cut -c 1-10
+[ -L "$SCRATCH/rows.csv" ] && head -n 1 "$SCRATCH/rows.csv"
 try emit networks/brusselator.mech -o "$SCRATCH/new/model"
 try emit networks/brusselator.mech -o "$SCRATCH/new/model/" --name other --quiet
 try emit networks/brusselator.mech -o "$SCRATCH/new/model" --json
