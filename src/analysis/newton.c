@@ -25,6 +25,7 @@
 #include <string.h>
 
 #include "analysis/linalg.h"
+#include "analysis/sparse.h"
 #include "base/memory.h"
 #include "base/status.h"
 
@@ -98,6 +99,12 @@ lb_status newton_init(newton *w, equations *eq, lb_error *err)
     w->is_square = (eq->rows == eq->count || eq->count > ALL_ROWS_LIMIT) && choose_rows(w);
     if (w->is_square)
         place_pools(w);
+    w->is_sparse = w->is_square && eq->count > ALL_ROWS_LIMIT;
+    w->start = w->is_sparse ? memory_zeroed(count + 1, sizeof *w->start) : NULL;
+    if (w->is_sparse && !w->start) {
+        newton_clear(w);
+        return status_no_memory(err);
+    }
     return LB_OK;
 }
 
@@ -113,6 +120,9 @@ void newton_clear(newton *w)
     memory_free(w->step);
     memory_free(w->trial);
     memory_free(w->pivot);
+    memory_free(w->start);
+    memory_free(w->entry_row);
+    memory_free(w->entry);
     memset(w, 0, sizeof *w);
 }
 
@@ -157,6 +167,52 @@ static bool solve_square(newton *w, const int *row)
     return isfinite(norm2(count, w->step));
 }
 
+/* The rows of a square form without their zeros.  False: no memory. */
+static bool compress(newton *w, const int *row)
+{
+    int count = w->eq->count;
+    size_t entries = 0;
+    for (int j = 0; j < count; j++) {
+        const double *column = w->A + (size_t)j * (size_t)w->eq->rows;
+        for (int i = 0; i < count; i++) {
+            if (column[row[i]] == 0)
+                continue;
+            size_t before = w->entry_capacity;
+            if (memory_grow(&w->entry, &w->entry_capacity, entries, sizeof *w->entry) != 0)
+                return false;
+            if (w->entry_capacity != before) {
+                int *rows = memory_resize(w->entry_row, w->entry_capacity, sizeof *rows);
+                if (!rows)
+                    return false;
+                w->entry_row = rows;
+            }
+            w->entry[entries] = column[row[i]];
+            w->entry_row[entries++] = i;
+        }
+        w->start[j + 1] = (int)entries;
+    }
+    return true;
+}
+
+/* The same as solve_square for a large system; LB_E_NUMERIC when it is singular. */
+static lb_status solve_sparse(newton *w, const int *row, lb_error *err)
+{
+    sparse_lu *lu = NULL;
+    if (!compress(w, row))
+        return status_no_memory(err);
+    for (int i = 0; i < w->eq->count; i++)
+        w->step[i] = -w->F[row[i]];
+    lb_status status = sparse_new(w->eq->count, w->start, w->entry_row, &lu);
+    if (status == LB_OK)
+        status = sparse_factor(lu, w->entry);
+    if (status == LB_OK) {
+        sparse_solve(lu, 1, w->step);
+        status = isfinite(norm2(w->eq->count, w->step)) ? LB_OK : LB_E_NUMERIC;
+    }
+    sparse_free(lu);
+    return status == LB_E_NOMEM ? status_no_memory(err) : status;
+}
+
 /* step = least-norm solution of A step = -F over all rows, in unknowns scaled to
  * themselves at u.  A row and a column of their own with a one in them make the rank
  * absolute: the rows are sums of terms of size one, and what is left of them below
@@ -184,6 +240,8 @@ static lb_status solve_all(newton *w, const double *u, double rcond, int *rank, 
 static lb_status solve(newton *w, const double *u, const int *row, lb_error *err)
 {
     int rank;
+    if (w->is_sparse)
+        return solve_sparse(w, row, err);
     if (row && solve_square(w, row))
         return LB_OK;
     return solve_all(w, u, 1e-12, &rank, err);
@@ -287,8 +345,8 @@ static lb_status polish(newton *w, double *u, newton_report *report, lb_error *e
     for (int i = 0; i < MOST_POLISHING; i++) {
         if (!equations_matrix(w->eq, u, w->F, w->A))
             break;
-        int rank;
-        lb_status status = solve_all(w, u, RANK_TOLERANCE, &rank, err);
+        int rank = count;
+        lb_status status = w->is_sparse ? solve_sparse(w, w->row, err) : solve_all(w, u, RANK_TOLERANCE, &rank, err);
         if (status != LB_OK)
             return status == LB_E_NUMERIC ? LB_OK : status;
         double step = relative_step(w, u);

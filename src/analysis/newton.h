@@ -18,6 +18,10 @@ typedef struct newton {
     double *work, *right;   /* [(rows+1)*(count+1)], [rows+1] */
     double *step, *trial;   /* [count] */
     int *pivot;             /* [count] */
+    bool is_sparse;         /* square and large: solved by sparse LU, without singular steps */
+    int *start, *entry_row; /* [count+1], [entry_capacity] the matrix of a sparse solve in compressed columns */
+    double *entry;          /* [entry_capacity] */
+    size_t entry_capacity;
 } newton;
 
 typedef struct newton_report {

@@ -124,7 +124,7 @@ static size_t starts_for(const struct search *s, int unknowns, int face)
 {
     size_t count = s->options->starts, n = (size_t)unknowns;
     if (count == 0)
-        count = n <= 15 ? 40 + 20 * n : n <= 60 ? 5100 / n : n <= 270 ? 300000 / (n * n) : 4;
+        count = n <= 15 ? 40 + 20 * n : n <= 640 ? 5100 / n : 8;
     return face < FULL_FACES || count <= 6 ? count : count / 4 > 6 ? count / 4 : 6;
 }
 
