@@ -406,6 +406,22 @@ START_TEST(test_continuum_inside_is_one_state)
 }
 END_TEST
 
+/* 2 P <-> D is all that is left in the end: D = K P^2, which ends where both are gone.  One
+ * state, in whatever units the same numbers are written. */
+START_TEST(test_end_of_a_continuum_is_none_of_its_own)
+{
+    static const double units[] = {1, 1e3, 1e-3, 6e20, 1e12};
+    char text[500];
+    double c = units[_i];
+    snprintf(text, sizeof text, "units none\n[A]0 = %.17g\nA -> P + Q, k = 1\n2 P <-> D, kf = %.17g, kr = 100\nD + Q -> A, k = %.17g\n"
+             "Q ->, k = 0.3\nA ->, k = 0.1\n", 1e-4 * c, 1e6 / c, 1e3 / c);
+    struct answer a = ask(text);
+    ck_assert_int_eq(a.steady->continuum, 1);
+    ck_assert_uint_eq(a.steady->count, 1);
+    answer_clear(&a);
+}
+END_TEST
+
 /* Schloegl's second model at its fold, B = 6 + 2/(3 sqrt 3) (exact): a double root
  * at X = 2 - 1/sqrt 3 is one state, undecided, and no continuum. */
 START_TEST(test_fold_is_one_undecided_state)
@@ -798,6 +814,7 @@ Suite *steady_suite(void)
     TCase *degenerate = tcase_create("degenerate");
     tcase_add_test(degenerate, test_continuum_on_a_face_is_one_state);
     tcase_add_test(degenerate, test_continuum_inside_is_one_state);
+    tcase_add_loop_test(degenerate, test_end_of_a_continuum_is_none_of_its_own, 0, 5);
     tcase_add_test(degenerate, test_fold_is_one_undecided_state);
     tcase_add_test(degenerate, test_transcritical_point_is_the_boundary_state_alone);
     tcase_add_test(degenerate, test_rate_constant_of_zero_conserves_more);

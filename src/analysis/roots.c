@@ -225,32 +225,41 @@ done:
     return status;
 }
 
+/* Has u stayed beside x: what is present there within a factor e, the rest far below? */
+static bool is_beside(const equations *eq, const double *u, const double *x, double scale)
+{
+    for (int i = 0; i < eq->count; i++) {
+        double value = x[eq->state[i]];
+        if (eq->is_signed[i] ? fabs(u[i] - value / eq->unit[i]) > 1 + fabs(u[i])
+                             : value > 0 ? fabs(u[i] - log(value)) > 1 : u[i] > log(1e-2 * scale))
+            return false;
+    }
+    return true;
+}
+
 /* Beside an end the species that vanish are tiny and the rest is as at x: a
  * singular root is then within reach of such a point, and stays beside it. */
-lb_status roots_end_at(equations *eq, const double *x, bool *is_end, lb_error *err)
+lb_status roots_end_at(equations *eq, const double *x, double scale, bool *is_end, lb_error *err)
 {
-    const double near = 1e-5;
+    const double tiny = 1e-8;
     newton w;
     newton_report report;
     *is_end = false;
     lb_status status = newton_init(&w, eq, err);
     if (status != LB_OK)
         return status;
-    double *u = memory_array(2 * (size_t)eq->count, sizeof *u), *start = u ? u + eq->count : NULL, largest = 0;
+    double *u = memory_array((size_t)eq->count, sizeof *u);
     if (!u) {
         status = status_no_memory(err);
         goto done;
     }
-    for (int i = 0; i < eq->count; i++)
-        largest = fmax(largest, fabs(x[eq->state[i]]));
     for (int i = 0; i < eq->count; i++) {
         double value = x[eq->state[i]];
-        u[i] = eq->is_signed[i] ? value / eq->unit[i] : log(value > 0 ? value : near * (largest > 0 ? largest : 1));
-        start[i] = u[i];
+        u[i] = eq->is_signed[i] ? value / eq->unit[i] : log(value > 0 ? value : tiny * scale);
     }
     status = newton_solve(&w, u, NULL, 0, &report, err);
     if (status == LB_OK && report.converged && report.rank < eq->count)
-        *is_end = distance(eq, u, start) < 1;
+        *is_end = is_beside(eq, u, x, scale);
 done:
     memory_free(u);
     newton_clear(&w);

@@ -30,7 +30,8 @@ lb_status roots_find(equations *eq, const roots_options *options, roots *out, lb
 void roots_clear(roots *r);
 
 /* Is x [n], which has zeros among the unknowns of eq, the end of a continuum of
- * roots of eq?  Asked of faces within a face that has one. */
-lb_status roots_end_at(equations *eq, const double *x, bool *is_end, lb_error *err);
+ * roots of eq?  Asked of faces within a face that has one.  scale: of the concentrations
+ * along it. */
+lb_status roots_end_at(equations *eq, const double *x, double scale, bool *is_end, lb_error *err);
 
 #endif

@@ -136,6 +136,16 @@ static bool is_within(int n, const bool *is_zero, const bool *outer)
     return true;
 }
 
+/* The largest concentration of the state that stands for the continua. */
+static double continuum_scale(const struct search *s)
+{
+    double scale = 0;
+    const double *x = s->out->continuum > 0 ? s->out->state[s->continuum_state].x : NULL;
+    for (int c = 0; x && c < s->system->core; c++)
+        scale = fmax(scale, fabs(x[s->system->core_state[c]]));
+    return scale > 0 ? scale : 1;
+}
+
 /* A state on a face within a face that has a continuum may be the end of that. */
 static lb_status ends_continuum(struct search *s, const bool *is_zero, equations *eq, const double *u, bool *is_end)
 {
@@ -148,7 +158,7 @@ static lb_status ends_continuum(struct search *s, const bool *is_zero, equations
         status = equations_new(s->evaluator, &s->laws, s->x0, s->continua.is_zero[c], &outer, s->err);
         equations_place(eq, u);
         if (status == LB_OK)
-            status = roots_end_at(outer, eq->x, is_end, s->err);
+            status = roots_end_at(outer, eq->x, continuum_scale(s), is_end, s->err);
         equations_free(outer);
     }
     return status;
