@@ -70,7 +70,7 @@ static void append_ends(const function *f, const char *what, const size_t *end, 
  * is not used. */
 static void append_round(const function *f, const products *p, products_kind kind, int round)
 {
-    char what[8];
+    char what[16];
     snprintf(what, sizeof what, "%c%d", letters[kind], round + 1);
     size_t line = f->file->code.length, count = p->batches * PRODUCTS_BATCH;
     const int *index = p->factors[kind].round[round];
