@@ -185,7 +185,7 @@ START_TEST(test_options_outside_their_domain_are_refused)
 END_TEST
 
 /* The Oregonator over many pulses at the loosest tolerance: what comes out is within 5 %
- * of the course at 1e-10 in every row, and the result says that it was tightened. */
+ * of the time course at 1e-10 in every row, and the result says that it was tightened. */
 START_TEST(test_a_loose_tolerance_is_found_out)
 {
     rig r = rig_new(OREGO_TEXT), tight = rig_new(OREGO_TEXT);

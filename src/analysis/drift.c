@@ -89,7 +89,7 @@ static bool all_finite(const double *x, size_t n)
     return true;
 }
 
-/* Rounding in the course of one turn, in amplitudes. */
+/* Rounding over one turn, in amplitudes. */
 static double rounding(const closed_orbit *c)
 {
     double worst = 1;

@@ -12,7 +12,7 @@
 #define ALLOWED_DIFFERENCE 0.05
 
 const char *const run_failed_text = "with a looser tolerance the integration failed";
-const char *const run_differed_text = "a looser tolerance changed the course";
+const char *const run_differed_text = "a looser tolerance changed the time course";
 
 bool run_agree(const lb_run *loose, const lb_run *tight)
 {
