@@ -34,9 +34,8 @@ static void check_expression(const syntax_expression *e)
     }
 }
 
-static void check_statement(const syntax_statement *s)
+static void check_reaction(const syntax_statement *s)
 {
-    check_expression(s->value);
     for (const syntax_argument *a = s->settings; a; a = a->next) {
         assert(a->name && a->value);
         check_expression(a->value);
@@ -47,6 +46,14 @@ static void check_statement(const syntax_statement *s)
         assert(t->species.text);
         check_expression(t->coefficient ? t->coefficient->expression : NULL);
     }
+}
+
+static void check_statement(const syntax_statement *s)
+{
+    if (s->kind == SYNTAX_REACTION)
+        check_reaction(s);
+    else
+        check_expression(s->value);
 }
 
 static void check_tree(const syntax_tree *tree, size_t faults)
