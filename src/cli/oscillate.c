@@ -78,14 +78,7 @@ static int solve(session *s)
 
 static int run(const options *given)
 {
-    session s;
-    int result = session_open_system(&s, given);
-    if (result == EXIT_ANSWERED) {
-        session_warn(&s);
-        result = solve(&s);
-    }
-    session_close(&s);
-    return result;
+    return session_answer(given, solve);
 }
 
 static const option_spec own[] = {

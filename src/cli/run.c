@@ -118,14 +118,7 @@ static int run_command(const options *given)
                           .remedy = "write it in the file's unit, or with one: --until 3600, --until \"1 h\""};
         return session_report(given, &error, NULL, EXIT_USAGE);
     }
-    session s;
-    int result = session_open_system(&s, given);
-    if (result == EXIT_ANSWERED) {
-        session_warn(&s);
-        result = solve(&s);
-    }
-    session_close(&s);
-    return result;
+    return session_answer(given, solve);
 }
 
 static const option_spec own[] = {

@@ -194,3 +194,15 @@ bool session_has_range(const session *s)
             return true;
     return false;
 }
+
+int session_answer(const options *given, int (*solve)(session *s))
+{
+    session s;
+    int result = session_open_system(&s, given);
+    if (result == EXIT_ANSWERED) {
+        session_warn(&s);
+        result = solve(&s);
+    }
+    session_close(&s);
+    return result;
+}

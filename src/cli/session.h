@@ -44,4 +44,7 @@ bool session_has_range(const session *s);
 int session_report(const options *given, const lb_error *error, const lb_diagnostics *diagnostics, int exit_status);
 void session_note_interrupted(const session *s);
 
+/* Open, warn, solve, close: a command whose question is `solve`; the exit status. */
+int session_answer(const options *given, int (*solve)(session *s));
+
 #endif

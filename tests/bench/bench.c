@@ -15,29 +15,9 @@
 #include <time.h>
 
 #include "limbeck.h"
+#include "timing.h"
 
 enum { REPEATS = 15 };
-
-static double now(void)
-{
-    struct timespec t;
-    clock_gettime(CLOCK_MONOTONIC, &t);
-    return (double)t.tv_sec + 1e-9 * (double)t.tv_nsec;
-}
-
-static void fail(const char *what)
-{
-    fprintf(stderr, "bench: %s\n", what);
-    exit(1);
-}
-
-static void row(const char *what, double ours, double theirs, const char *unit, double target)
-{
-    printf("%-52s %10.3g %10.3g %-3s ratio %6.2f", what, ours, theirs, unit, ours / theirs);
-    if (target > 0)
-        printf("   target %.2f %s", target, ours <= target * theirs ? "met" : "MISSED");
-    printf("\n");
-}
 
 static unsigned long long random_state = 12345;
 

@@ -17,38 +17,11 @@
 
 #include "handwritten.h"
 #include "limbeck.h"
+#include "timing.h"
 
 enum { REPEATS = 25 };
 
 typedef void function(double t, const double *x, const double *k, double *out);
-
-static double now(void)
-{
-    struct timespec t;
-    clock_gettime(CLOCK_MONOTONIC, &t);
-    return (double)t.tv_sec + 1e-9 * (double)t.tv_nsec;
-}
-
-static void fail(const char *what)
-{
-    fprintf(stderr, "bench_emit: %s\n", what);
-    exit(1);
-}
-
-static void *must(void *block)
-{
-    if (!block)
-        fail("no memory");
-    return block;
-}
-
-static void row(const char *what, double ours, double theirs, const char *unit, double target)
-{
-    printf("%-58s %10.4g %10.4g %-3s ratio %6.2f", what, ours, theirs, unit, ours / theirs);
-    if (target > 0)
-        printf("   target %.2f %s", target, ours <= target * theirs ? "met" : "MISSED");
-    printf("\n");
-}
 
 /* ---- Emitted C ---------------------------------------------------------------------- */
 
